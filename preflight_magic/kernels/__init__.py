@@ -1,0 +1,1 @@
+"""Numbers only: arrays in, arrays and small frozen results out."""

@@ -1,0 +1,1 @@
+"""One file a rung: examine a series, judge the evidence."""

@@ -1,0 +1,260 @@
+"""Tests of a unit root and of its absence.
+
+A series that cannot carry a test (too short, constant, fitted without error, regressors that depend on each other)
+gives None; input that no series should bring here (missing or infinite values, unknown terms) raises ValueError.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from math import sqrt
+from typing import Literal
+
+import numpy as np
+
+from preflight_magic.kernels.distributions import (
+    Bound,
+    Terms,
+    dickey_fuller_critical_values,
+    dickey_fuller_p_value,
+    kpss_p_value,
+)
+from preflight_magic.kernels.lag_length import Criterion, schwert, smallest_criterion
+from preflight_magic.kernels.least_squares import (
+    FloatArray,
+    detrend,
+    last_t_ratio,
+    leading_rank,
+    polynomial,
+    residual_sums,
+    triangle,
+)
+from preflight_magic.kernels.long_run_variance import does_not_vary, newey_west_bandwidth, weighted_sum
+
+_DEGREE: Mapping[Terms, int] = {"n": -1, "c": 0, "ct": 1, "ctt": 2}
+_EPSILON = float(np.finfo(np.float64).eps)
+
+
+@dataclass(frozen=True)
+class AdfResult:
+    """Augmented Dickey-Fuller test; the null hypothesis is a unit root.
+
+    Attributes
+    ----------
+    statistic : float
+        t-ratio of the lagged level.
+    p_value : float
+        Read it with `p_bound`.
+    p_bound : {"exact", "at most", "at least"}
+    lags : int
+        Lagged differences in the regression.
+    nobs : int
+        Observations in the regression.
+    terms : {"n", "c", "ct", "ctt"}
+    critical_values : Mapping[str, float]
+        By level, for `nobs` observations.
+    """
+
+    statistic: float
+    p_value: float
+    p_bound: Bound
+    lags: int
+    nobs: int
+    terms: Terms
+    critical_values: Mapping[str, float] = field(default_factory=dict)
+
+
+@dataclass(frozen=True)
+class KpssResult:
+    """KPSS test; the null hypothesis is stationarity about a constant or a straight line.
+
+    Attributes
+    ----------
+    statistic : float
+    p_value : float
+        In the limiting distribution.
+    bandwidth : int
+        Last autocovariance in the Bartlett estimate of the long-run variance.
+    nobs : int
+    terms : {"c", "ct"}
+    """
+
+    statistic: float
+    p_value: float
+    bandwidth: int
+    nobs: int
+    terms: Literal["c", "ct"]
+
+
+def adf(
+    y: FloatArray,
+    terms: Terms = "c",
+    lags: int | None = None,
+    max_lags: int | None = None,
+    criterion: Criterion | None = "AIC",
+) -> AdfResult | None:
+    """Augmented Dickey-Fuller test.
+
+    The lag length is searched on one common sample, all lengths read from one triangular factor; then the few
+    observations that the chosen length frees are added to that factor.
+
+    Parameters
+    ----------
+    y : ndarray, shape (n,)
+        No missing values. Null hypothesis: a unit root.
+    terms : {"n", "c", "ct", "ctt"}
+        None, constant, linear trend, quadratic trend.
+    lags : int, optional
+        Lagged differences, where they are not to be searched.
+    max_lags : int, optional
+        Longest length in the search, by default that of Schwert (1989), shortened for a short series.
+    criterion : {"AIC", "BIC"} or None
+        None takes `max_lags` itself.
+
+    Returns
+    -------
+    AdfResult or None
+        None where the series is too short for the lags, does not vary, or is fitted without error.
+
+    Raises
+    ------
+    ValueError
+        For missing or infinite values, unknown terms or negative lags.
+
+    References
+    ----------
+    Said and Dickey (1984), Biometrika 71. P-values: MacKinnon (1994); critical values: MacKinnon (2010).
+    """
+    degree = _degree(terms)
+    _check_finite(y)
+    n = y.size
+    room = min(n // 2 - degree - 2, (n - 4 - degree) // 2)  # leaves more observations than coefficients
+    longest = lags if lags is not None else max_lags
+    if longest is None:
+        longest = min(schwert(n), room)
+    elif longest < 0:
+        raise ValueError(f"the lag length is {longest}; it must not be negative")
+    if room < 0 or longest > room or does_not_vary(y):
+        return None
+    columns = _dickey_fuller_columns(y, degree, longest)
+    common = triangle(columns[longest:].copy(order="F"))
+    chosen = longest
+    if lags is None and criterion is not None:
+        independent = leading_rank(common)
+        if independent < degree + 2:
+            return None
+        rss = residual_sums(common)[degree + 2 : independent + 1]
+        chosen = smallest_criterion(rss, n - 1 - longest, degree + 2, criterion)
+    nobs = n - 1 - chosen
+    factor = _with_level_last(common, columns[chosen:longest], degree, chosen)
+    noise = 4.0 * _EPSILON * max(abs(float(y.min())), abs(float(y.max())))
+    if abs(factor[-1, -1]) <= noise * nobs**0.5 or leading_rank(factor) < degree + 2 + chosen:
+        return None
+    statistic = last_t_ratio(factor, nobs)
+    p_value, bound = dickey_fuller_p_value(statistic, terms)
+    return AdfResult(statistic, p_value, bound, chosen, nobs, terms, dickey_fuller_critical_values(terms, nobs))
+
+
+def kpss(
+    y: FloatArray,
+    terms: Literal["c", "ct"] = "c",
+    bandwidth: int | Literal["auto", "legacy"] | None = None,
+) -> KpssResult | None:
+    """KPSS test.
+
+    Parameters
+    ----------
+    y : ndarray, shape (n,)
+        No missing values. Null hypothesis: stationary about a constant (``c``) or a straight line (``ct``).
+    terms : {"c", "ct"}
+    bandwidth : int, {"auto", "legacy"} or None
+        Last lag of the Bartlett kernel. ``auto``, the same as None, is the rule of Hobijn, Franses and Ooms (2004),
+        ``legacy`` that of Schwert (1989), which the authors of the test used.
+
+    Returns
+    -------
+    KpssResult or None
+        None where the series has fewer than 4 values, does not vary, or is a straight line under ``ct``.
+
+    Raises
+    ------
+    ValueError
+        For missing or infinite values, unknown terms, or a bandwidth below 0 or not below n.
+
+    References
+    ----------
+    Kwiatkowski, Phillips, Schmidt and Shin (1992), Journal of Econometrics 54.
+    Hobijn, Franses and Ooms (2004), Statistica Neerlandica 58.
+    """
+    if terms not in ("c", "ct"):
+        raise ValueError(f"the KPSS test has no terms {terms!r}; use 'c' or 'ct'")
+    _check_finite(y)
+    n = y.size
+    if n < 4 or does_not_vary(y):
+        return None
+    residual = detrend(y, _DEGREE[terms])
+    if float(np.abs(residual).max()) <= n * _EPSILON * float(np.abs(y).max()):
+        return None
+    if bandwidth is None or bandwidth == "auto":
+        lags = int(newey_west_bandwidth(residual, "bartlett", pilot=int(n ** (2.0 / 9.0))))
+    elif bandwidth == "legacy":
+        lags = min(schwert(n), n - 1)
+    elif 0 <= bandwidth < n:
+        lags = bandwidth
+    else:
+        raise ValueError(f"the bandwidth is {bandwidth}; it must be from 0 to {n - 1}")
+    partial_sums = residual.cumsum()
+    statistic = float(partial_sums @ partial_sums) / n**2 / weighted_sum(residual, "bartlett", lags)
+    return KpssResult(statistic, kpss_p_value(statistic, terms), lags, n, terms)
+
+
+def _dickey_fuller_columns(y: FloatArray, degree: int, lags: int) -> FloatArray:
+    """Deterministic terms, level, lagged differences and difference, shape (n - 1, degree + 3 + lags).
+
+    The first `lags` rows hold unset values where a lagged difference does not exist.
+    """
+    difference = y[1:] - y[:-1]
+    columns = np.empty((difference.size, degree + 3 + lags), order="F")
+    columns[:, : degree + 1] = polynomial(difference.size, degree)
+    # With a constant the mean of the level is free; without it the sum of squares stays exact far from zero.
+    columns[:, degree + 1] = y[:-1] - y.sum() / y.size if degree >= 0 else y[:-1]
+    for lag in range(1, lags + 1):
+        columns[lag:, degree + 1 + lag] = difference[:-lag]
+    columns[:, -1] = difference
+    return columns
+
+
+def _with_level_last(common: FloatArray, freed: FloatArray, degree: int, lags: int) -> FloatArray:
+    """Factor of the regression with `lags` lags on all its rows, the level as last regressor.
+
+    Parameters
+    ----------
+    common : ndarray, shape (k + 1, k + 1)
+        Factor of the longest regression on the common sample.
+    freed : ndarray, shape (rows, k + 1)
+        Rows of the same columns that only the shorter regression can use.
+    degree, lags : int
+    """
+    level = degree + 1
+    order = [*range(level), *range(level + 1, level + 1 + lags), level, common.shape[1] - 1]
+    size = len(order)
+    stacked = np.empty((size + freed.shape[0], size), order="F")
+    stacked[: size - 1] = common[: size - 1, order]
+    # Below its first rows the response is all residual: one row with its norm stands for them.
+    stacked[size - 1] = 0.0
+    unexplained = common[size - 1 :, -1]
+    stacked[size - 1, -1] = sqrt(unexplained @ unexplained)
+    stacked[size:] = freed[:, order]
+    return triangle(stacked)
+
+
+def _degree(terms: Terms) -> int:
+    if terms not in _DEGREE:
+        raise ValueError(f"there are no deterministic terms {terms!r}; use one of {', '.join(_DEGREE)}")
+    return _DEGREE[terms]
+
+
+def _check_finite(y: FloatArray) -> None:
+    if not np.isfinite(y).all():
+        raise ValueError("a unit-root test needs finite values; it got missing or infinite ones")

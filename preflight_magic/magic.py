@@ -1,0 +1,301 @@
+"""`%%checkseries`, `%checkseries` and `%seriescode`: find the frame, call the plain functions, hand back the report."""
+
+from __future__ import annotations
+
+import ast
+import inspect
+from collections.abc import Hashable, Sequence
+from types import CodeType
+from typing import Any
+
+from IPython.core.displayhook import DisplayHook
+from IPython.core.error import UsageError
+from IPython.core.magic import no_var_expand
+
+from preflight_magic.command_line import (
+    OPTIONS,
+    Line,
+    did_you_mean,
+    is_executor,
+    is_frame,
+    is_report,
+    label_of,
+    read_line,
+    split_outside,
+    unquoted,
+)
+from preflight_magic.completion import IDENTIFIER, matcher
+from preflight_magic.model import CheckError
+
+Shell = Any
+"""An InteractiveShell; most of its methods carry no types."""
+
+_CHECK_HELP = """Check series before forecasting: which transforms, why, and the code that applies and undoes them.
+
+    %%checkseries [options]          the value of the cell's last expression is the frame
+    %checkseries EXPRESSION [options]
+
+The frame is a DataFrame with a column a series, a long table with --series and --value, or a Series. The report is
+shown and returned, so that `_` holds it.
+
+Options, each written out in full; a name with spaces stands in quotes:
+
+{options}
+
+Examples:
+
+    %%checkseries --season 12 --horizon 12 --into report
+    monthly = pd.read_csv("ferry.csv", parse_dates=["month"], index_col="month")
+    monthly[["passengers", "freight"]]
+
+    %checkseries monthly --only passengers,"crew overtime" --exclude 2020-03..2020-06
+"""
+_CODE_HELP = """Put the code of a report in a new cell below.
+
+    %seriescode REPORT [SERIES ...]  all series, or those named; a name with spaces stands in quotes
+
+Example:
+
+    %seriescode report passengers
+"""
+
+
+def load(shell: Shell) -> None:
+    """Register the magics and the completion of their options."""
+    unload(shell)
+
+    # Nothing in the line is expanded: it holds a Python expression, whose braces and dollar signs are its own.
+    @no_var_expand
+    def checkseries(line: str, cell: str | None = None) -> Any:
+        __tracebackhide__ = True
+        return check_series(shell, line, cell)
+
+    @no_var_expand
+    def seriescode(line: str) -> None:
+        __tracebackhide__ = True
+        series_code(shell, line)
+
+    width = max(len(f"{option.name} {option.form}") for option in OPTIONS)
+    rows = [f"    {f'{option.name} {option.form}':<{width}}  {option.about}" for option in OPTIONS]
+    checkseries.__doc__ = _CHECK_HELP.format(options="\n".join(rows))
+    seriescode.__doc__ = _CODE_HELP
+    shell.register_magic_function(checkseries, "line_cell", "checkseries")
+    shell.register_magic_function(seriescode, "line", "seriescode")
+    if shell.Completer is not None:
+        shell.Completer.custom_matchers.append(matcher(shell))
+
+
+def unload(shell: Shell) -> None:
+    """Leave the shell as it was before `load`; does nothing where nothing is loaded."""
+    manager = shell.magics_manager
+    for name in ("checkseries", "seriescode"):
+        for kind in ("line", "cell"):
+            manager.magics[kind].pop(name, None)
+        if name in vars(manager.user_magics):
+            delattr(manager.user_magics, name)
+    if shell.Completer is not None:
+        kept = [one for one in shell.Completer.custom_matchers if getattr(one, "matcher_identifier", "") != IDENTIFIER]
+        shell.Completer.custom_matchers[:] = kept
+
+
+def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
+    """Check the frame that a line or a cell gives.
+
+    Parameters
+    ----------
+    shell : InteractiveShell
+    line : str
+        What follows the name of the magic.
+    cell : str, optional
+        Body of the cell, None for the line magic.
+
+    Returns
+    -------
+    Report or None
+        None with ``--quiet`` or where a semicolon ends the expression.
+
+    Raises
+    ------
+    UsageError
+        One sentence that says what to change.
+    """
+    __tracebackhide__ = True
+    given = read_line(line)
+    quiet = "--quiet" in given.options
+    pool = _executor(shell, given)
+    if cell is None:
+        silent = given.expression.endswith(";")
+        frame = _value_of_line(shell, given.expression.rstrip("; "))
+    else:
+        silent, frame = _value_of_cell(shell, cell, given)
+    options = _options(given, frame)
+    if pool is not None:
+        options["pool"] = pool
+    if quiet:
+        options["progress"] = False
+
+    from preflight_magic.report import check
+
+    try:
+        report = check(frame, **options)
+    except CheckError as error:
+        raise UsageError(_one_line(error)) from None
+    into = given.options.get("--into")
+    if into is not None:
+        shell.user_ns[str(into)] = report
+    return None if quiet or silent else report
+
+
+def series_code(shell: Shell, line: str) -> None:
+    """Put the code of a report in the next input.
+
+    Parameters
+    ----------
+    shell : InteractiveShell
+    line : str
+        Name of a variable with a report, then names of series.
+
+    Raises
+    ------
+    UsageError
+        One sentence that says what to change.
+    """
+    __tracebackhide__ = True
+    name, *series = [unquoted(word) for word in split_outside(line, " \t\n,")] or [""]
+    reports = [known for known, value in shell.user_ns.items() if is_report(value) and not known.startswith("_")]
+    if not name:
+        raise UsageError("name a report; write %seriescode REPORT, or %seriescode REPORT SERIES.")
+    if name not in shell.user_ns:
+        near = f"; {did_you_mean(name, reports)}" if reports else "; make one with %checkseries FRAME --into NAME."
+        raise UsageError(f"there is no variable {name}{near}")
+    report: Any = shell.user_ns[name]
+    if not is_report(report):
+        raise UsageError(f"{name} is a {type(report).__name__}, not a report; make one with --into NAME.")
+    labels: list[Hashable] = [label_of(one, tuple(report.names)) for one in series]
+    for label in labels:
+        if label not in report.names:
+            raise UsageError(f"{name} has no series {label!s}; {did_you_mean(str(label), report.names)}")
+    try:
+        code = report.code(labels) if labels else report.code()
+    except CheckError as error:
+        raise UsageError(_one_line(error)) from None
+    shell.set_next_input(code)
+
+
+# --------------------------------------------------------------------------------------------- value of line and cell
+def _value_of_line(shell: Shell, expression: str) -> object:
+    __tracebackhide__ = True
+    if not expression:
+        raise UsageError("name a frame; write %checkseries FRAME, or %%checkseries above a cell that ends with one.")
+    filename = shell.compile.cache(expression, shell.execution_count)
+    try:
+        code = compile(expression, filename, "eval", shell.compile.flags)
+    except SyntaxError as error:
+        raise UsageError(f"{expression} is not a Python expression: {error.msg}.") from None
+    try:
+        value = eval(code, shell.user_ns)
+    except NameError as error:
+        # A name missing in the line itself is a slip of the hand; inside a function it deserves its traceback.
+        here = error.__traceback__
+        if here and here.tb_next and here.tb_next.tb_next:
+            raise
+        frames = [name for name, one in shell.user_ns.items() if is_frame(one) and not name.startswith("_")]
+        raise UsageError(f"there is no variable {error.name}; {_frames_known(str(error.name), frames)}") from None
+    return _frame(value, f"{expression} is")
+
+
+def _frames_known(name: str, frames: Sequence[str]) -> str:
+    return did_you_mean(name, frames) if frames else "no variable holds a DataFrame or Series yet."
+
+
+def _value_of_cell(shell: Shell, cell: str, given: Line) -> tuple[bool, object]:
+    """Run the cell in the person's namespace; whether a semicolon ends it, and the value of its last expression."""
+    __tracebackhide__ = True
+    if given.expression:
+        raise UsageError(
+            f"{given.expression} is no option; under %%checkseries the frame is the last expression of the cell."
+        )
+    if not cell.strip():
+        raise UsageError("the cell is empty; its last expression gives the frame, or write %checkseries FRAME.")
+    # An empty first line stands for the line of the magic, so that line numbers are those that the person sees.
+    source = "\n" + shell.transform_cell(cell)
+    filename = shell.compile.cache(source, shell.execution_count)
+    tree = shell.transform_ast(ast.parse(source, filename))
+    last = tree.body[-1] if tree.body else None
+    if not isinstance(last, ast.Expr):
+        raise UsageError(
+            "the cell does not end with an expression; write the DataFrame or Series to check on its last line."
+        )
+    statements = _compiled(shell, ast.Module(tree.body[:-1], tree.type_ignores), filename)
+    expression = _compiled(shell, ast.Expression(last.value), filename)
+    exec(statements, shell.user_ns)
+    value = eval(expression, shell.user_ns)
+    semicolon_at_end: Any = DisplayHook.semicolon_at_end_of_expression
+    return bool(semicolon_at_end(source)), _frame(value, "the last expression of the cell is")
+
+
+def _compiled(shell: Shell, tree: ast.Module | ast.Expression, filename: str) -> CodeType:
+    mode = "exec" if isinstance(tree, ast.Module) else "eval"
+    flags = shell.compile.flags | ast.PyCF_ALLOW_TOP_LEVEL_AWAIT
+    code: CodeType = compile(tree, filename, mode, flags)
+    if code.co_flags & inspect.CO_COROUTINE:
+        raise UsageError("a %%checkseries cell cannot await; await in a cell above and use its result here.")
+    return code
+
+
+def _frame(value: object, subject: str) -> object:
+    if not is_frame(value):
+        seen = "None" if value is None else f"a {type(value).__name__}"
+        raise UsageError(f"{subject} {seen}, not a DataFrame or Series.")
+    return value
+
+
+# --------------------------------------------------------------------------------------------- options of the check
+def _options(given: Line, frame: Any) -> dict[str, Any]:
+    """Arguments of the check: those that were given, names of columns as the frame has them."""
+    columns = tuple(getattr(frame, "columns", ()))
+    options: dict[str, Any] = {}
+    for option in OPTIONS:
+        if option.name in given.options and option.name not in ("--into", "--pool", "--quiet"):
+            options[option.name.removeprefix("--")] = given.options[option.name]
+    for key in ("time", "series", "value"):
+        if key in options:
+            options[key] = label_of(options[key], columns)
+    if "only" in options:
+        long = options.get("series") in columns
+        names = tuple(frame[options["series"]].unique()) if long else columns
+        options["only"] = [label_of(name, names) for name in options["only"]]
+    if "exclude" in options:
+        stamps = frame[options["time"]] if options.get("time") in columns else getattr(frame, "index", None)
+        options["exclude"] = [_span(span, stamps) for span in options["exclude"]]
+    return options
+
+
+def _span(span: tuple[str, str], stamps: Any) -> tuple[str, str] | tuple[int, int]:
+    """Ends of a span, as numbers where the rows are numbered."""
+    if getattr(getattr(stamps, "dtype", None), "kind", "") in ("i", "u"):
+        try:
+            return int(span[0]), int(span[1])
+        except ValueError:
+            pass
+    return span
+
+
+def _executor(shell: Shell, given: Line) -> object:
+    name = given.options.get("--pool")
+    if name is None:
+        return None
+    pools = [known for known, value in shell.user_ns.items() if is_executor(value) and not known.startswith("_")]
+    if name not in shell.user_ns:
+        raise UsageError(
+            f"--pool {name}: there is no such variable; "
+            + (did_you_mean(str(name), pools) if pools else "make an executor of concurrent.futures first.")
+        )
+    pool: object = shell.user_ns[str(name)]
+    if not is_executor(pool):
+        raise UsageError(f"--pool {name} is a {type(pool).__name__}, not an executor of concurrent.futures.")
+    return pool
+
+
+def _one_line(error: CheckError) -> str:
+    return " ".join(str(error).split())

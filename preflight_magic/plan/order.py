@@ -1,0 +1,102 @@
+"""Which steps may stand together, and in which order."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from typing import assert_never
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.model import (
+    CheckError,
+    Difference,
+    FillGaps,
+    Log,
+    Logit,
+    PerDay,
+    Power,
+    RemovePattern,
+    RemoveShift,
+    RemoveTrend,
+    Repair,
+    Step,
+)
+from preflight_magic.plan.words import describe
+
+STEP_TYPES = (PerDay, Log, Power, Logit, Difference, RemoveTrend, RemoveShift, RemovePattern)
+
+
+def canonical(steps: Iterable[Step]) -> tuple[Step, ...]:
+    """Steps in canonical order.
+
+    Per-day values; log, power or logit; differences, the longest lag first; then trend, shifts and patterns, which are
+    removed together, so that their order among themselves is only a convention. Equal ranks keep their order.
+    """
+    return tuple(sorted(steps, key=_rank))
+
+
+def _rank(step: Step) -> tuple[int, int]:
+    match step:
+        case PerDay():
+            return 0, 0
+        case Log() | Power() | Logit():
+            return 1, 0
+        case Difference(lag=lag):
+            return 2, -lag
+        case RemoveTrend():
+            return 3, 0
+        case RemoveShift():
+            return 4, 0
+        case RemovePattern(period=period):
+            return 5, period
+        case _:
+            assert_never(step)
+
+
+def validate(repairs: tuple[Repair, ...], steps: tuple[Step, ...]) -> None:
+    """Raise a CheckError unless the repairs and steps can stand together in one plan."""
+    for repair in repairs:
+        if not isinstance(repair, FillGaps):
+            raise CheckError(f"A plan repairs with FillGaps alone, not with {repair!r}.")
+        if not _count(repair.period, 1):
+            raise CheckError(f"FillGaps needs a whole period of at least 1, not {repair.period}; 1 means no season.")
+    if len(repairs) > 1:
+        raise CheckError("A plan fills gaps once; keep one FillGaps.")
+    for step in steps:
+        _validate_step(step)
+    bends = [step for step in steps if isinstance(step, Log | Power | Logit)]
+    if len(bends) > 1:
+        texts = " and ".join(describe(step) for step in bends)
+        raise CheckError(f"A plan has one of Log, Power and Logit at most, not {texts} together; leave one out.")
+    once = [step for step in steps if not isinstance(step, Difference)]
+    for position, step in enumerate(once):
+        if step in once[:position]:
+            raise CheckError(f"The step '{describe(step)}' stands twice in the plan; leave one out.")
+    if sum(isinstance(step, PerDay) for step in steps) > 1:
+        raise CheckError("A plan divides by days or by workdays, not by both; leave one PerDay out.")
+
+
+def _count(value: object, least: int) -> bool:
+    return isinstance(value, int | np.integer) and int(value) >= least
+
+
+def _validate_step(step: Step) -> None:
+    if not isinstance(step, STEP_TYPES):
+        raise CheckError(f"{step!r} is not a step of a plan; use one of {', '.join(t.__name__ for t in STEP_TYPES)}.")
+    match step:
+        case PerDay(unit=unit) if unit not in ("days", "workdays"):
+            raise CheckError(f"PerDay counts 'days' or 'workdays', not {unit!r}.")
+        case Power(exponent=exponent, offset=offset) if not (math.isfinite(exponent) and math.isfinite(offset)):
+            raise CheckError(f"Power needs a finite exponent and offset, not {exponent} and {offset}.")
+        case Logit(lower=lower, upper=upper) if not (math.isfinite(lower) and math.isfinite(upper) and lower < upper):
+            raise CheckError(f"Logit needs a lower bound below a finite upper one, not {lower} and {upper}.")
+        case Difference(lag=lag) if not _count(lag, 1):
+            raise CheckError(f"Difference needs a whole lag of at least 1, not {lag}.")
+        case RemovePattern(period=period) if not _count(period, 2):
+            raise CheckError(f"RemovePattern needs a whole period of at least 2, not {period}.")
+        case RemoveShift(at=at) if not isinstance(at, pd.Period | pd.Timestamp | int | np.integer):
+            raise CheckError(f"RemoveShift needs a period, a timestamp or an integer, not {at!r}.")
+        case _:
+            pass

@@ -1,0 +1,74 @@
+"""What the pictures show, in numbers, for those who do not see them."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.present import words
+
+if TYPE_CHECKING:
+    from preflight_magic.present.cards import OverviewRow, Picture, RootsPicture
+
+
+def before_after_alt(picture: Picture) -> str:
+    """Range of both series, and the largest autocorrelation before and after."""
+    noun, before = picture.noun, picture.before
+    ends = f"{words.stamp(before.index[0], noun)} to {words.stamp(before.index[-1], noun)}"
+    parts = [f"Series as given, {words.count_of(len(before), noun)} from {ends}: {_range(before)}."]
+    missing = int(before.isna().sum())
+    if missing:
+        parts.append(f"{words.count_of(missing, 'value')} missing.")
+    if picture.after is not None:
+        parts.append(f"After {picture.plan}, {words.count_of(len(picture.after), 'value')}: {_range(picture.after)}.")
+    if len(picture.correlogram_before):
+        parts.append(_correlograms(picture))
+    return " ".join(parts)
+
+
+def _range(series: pd.Series) -> str:
+    values = series.dropna()
+    low, high = words.number(float(values.min())), words.number(float(values.max()))
+    return f"least {low}, greatest {high}, mean {words.number(float(values.mean()))}"
+
+
+def _correlograms(picture: Picture) -> str:
+    lags = len(picture.correlogram_before)
+    text = f"Correlogram to lag {lags}: as given largest {_largest(picture.correlogram_before)}"
+    if picture.correlogram_after is not None:
+        outside = int(np.sum(np.abs(picture.correlogram_after) > picture.band))
+        text += f"; after, largest {_largest(picture.correlogram_after)}, {outside} of {lags} lags outside the band"
+    return text + (f" of \u00b1{words.number(picture.band, 2)}." if math.isfinite(picture.band) else ".")
+
+
+def _largest(correlogram: np.ndarray) -> str:
+    if not np.isfinite(correlogram).any():
+        return words.NONE
+    place = int(np.nanargmax(np.abs(correlogram)))
+    return f"{words.number(float(correlogram[place]), 2)} at lag {place + 1}"
+
+
+def roots_alt(picture: RootsPicture) -> str:
+    """Number of AR and MA roots, and the largest of each with its uncertainty and cycle."""
+    parts = [f"Inverse roots of {picture.order}."]
+    for part in ("AR", "MA"):
+        roots = [root for root in picture.roots if root.part == part]
+        if not roots:
+            parts.append(f"No {part} roots.")
+            continue
+        largest = max(roots, key=lambda root: root.modulus)
+        told = words.root_text(largest, picture.noun).removeprefix(f"{part} ")
+        parts.append(f"{words.count_of(len(roots), f'{part} root')}, largest modulus {told}.")
+    return " ".join(parts)
+
+
+def spark_alt(row: OverviewRow) -> str:
+    """Range of a small picture."""
+    values = row.values[np.isfinite(row.values)]
+    if len(values) < 2:
+        return "no picture"
+    low, high = words.number(float(values.min())), words.number(float(values.max()))
+    return f"{row.span}: from {words.number(float(values[0]))} to {words.number(float(values[-1]))}, between {low} and {high}"

@@ -1,0 +1,105 @@
+"""What this layer asks of a report: two protocols, so that cards can be built from anything that answers them."""
+
+from __future__ import annotations
+
+from collections.abc import Hashable, Mapping, Sequence
+from typing import TYPE_CHECKING, Protocol, runtime_checkable
+
+if TYPE_CHECKING:
+    import numpy as np
+    import pandas as pd
+
+    from preflight_magic.model import Finding, Repair, Step, Verdict
+
+
+class PlanView(Protocol):
+    """Repairs and steps in canonical order; ``str(plan)`` is short text."""
+
+    @property
+    def repairs(self) -> tuple[Repair, ...]:
+        """What makes the data a regular series."""
+
+    @property
+    def steps(self) -> tuple[Step, ...]:
+        """Transforms that can be undone."""
+
+
+class SeriesView(Protocol):
+    """One checked series."""
+
+    @property
+    def name(self) -> Hashable:
+        """The column, or the group of a long table."""
+
+    @property
+    def series(self) -> pd.Series:
+        """Values as given on a regular index, NaN where one is missing; shape (n,)."""
+
+    @property
+    def transformed(self) -> pd.Series:
+        """Values after the plan, without NaN; shape (m,), m <= n."""
+
+    @property
+    def findings(self) -> Mapping[str, Finding]:
+        """Rung name -> finding, in the order of the ladder."""
+
+    @property
+    def verdict(self) -> Verdict:
+        """Verdict of the series."""
+
+    @property
+    def plan(self) -> PlanView:
+        """The plan that `transformed` and the findings belong to."""
+
+    @property
+    def recommended(self) -> PlanView:
+        """The plan that was recommended; differs from `plan` when a person has switched steps."""
+
+    @property
+    def answer(self) -> str:
+        """One sentence."""
+
+    @property
+    def noun(self) -> str:
+        """A step of the calendar: ``month``."""
+
+    @property
+    def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
+        """Candidate plans as (text, BIC above the best, steps)."""
+
+    @property
+    def methods(self) -> Mapping[str, tuple[str, tuple[str, ...]]]:
+        """Rung name -> (how it is decided, published sources)."""
+
+    @property
+    def problem(self) -> str | None:
+        """Why the series cannot be checked, or None."""
+
+    def correlograms(self, nlags: int) -> tuple[np.ndarray, np.ndarray, float]:
+        """Autocorrelations as given and transformed at lags 1 ... nlags, and half the width of the 95 % band."""
+
+    def code(self, form: str = "pandas") -> str:
+        """Python source of the plan."""
+
+    def leave_out(self, step: Step) -> SeriesView:
+        """The series examined again without this step."""
+
+    def put_in(self, step: Step) -> SeriesView:
+        """The series examined again with this step, in canonical order."""
+
+
+@runtime_checkable
+class ReportView(Protocol):
+    """Several checked series."""
+
+    @property
+    def names(self) -> Sequence[Hashable]:
+        """Names in the order of the frame."""
+
+    @property
+    def overview(self) -> pd.DataFrame:
+        """One row a series, indexed by name; at least ``verdict``, ``plan`` and ``note``."""
+
+    def __getitem__(self, name: Hashable, /) -> SeriesView: ...
+
+    def __len__(self) -> int: ...

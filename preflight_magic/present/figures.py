@@ -1,0 +1,180 @@
+"""The first picture of a card, and the small pictures of an overview."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.present import words
+from preflight_magic.present.sheet import DASHED, DOTTED, DPI, FAINT, HAIR, INK, PALE, TITLE, Panel, Sheet, encode, runs
+from preflight_magic.present.ticks import lag_ticks, time_ticks, value_ticks
+
+if TYPE_CHECKING:
+    from preflight_magic.present.cards import Picture
+
+WIDTH = 7.4
+"""Width of the pictures in inches; shown at 96 pixels an inch they hold 1.5 dots a pixel."""
+
+_LEFT, _SERIES, _LAGS, _BOTTOM = 0.6, 4.2, 5.2, 0.42
+
+
+def before_after(picture: Picture) -> bytes:
+    """Series as given and as transformed, and one correlogram with after over before.
+
+    Parameters
+    ----------
+    picture : Picture
+
+    Returns
+    -------
+    bytes
+        PNG of 7.4 by 3 inches (2.2 without a transformed series) at 144 dots an inch, background transparent.
+    """
+    height = 3.0 if picture.after is not None else 2.2
+    sheet = Sheet(WIDTH, height)
+    index = picture.before.index
+    ticks, labels = time_ticks(index)
+    if picture.after is None:
+        given = _series(sheet, picture.before, (_BOTTOM, height - _BOTTOM - 0.28), "as given")
+        sheet.base(given, ticks, labels)
+    else:
+        given = _series(sheet, picture.before, (1.72, 1.0), "as given")
+        sheet.base(given, ticks, None)
+        after = picture.after.reindex(index)
+        middle = float(picture.after.mean())
+        below = _series(sheet, after, (_BOTTOM, 0.98), _cut(f"after {picture.plan}", 64), middle)
+        sheet.base(below, ticks, labels)
+    for at in picture.shifts:
+        _mark_shift(sheet, given, index, at)
+    if len(picture.correlogram_before):
+        _correlogram(sheet, picture, height)
+    return sheet.png()
+
+
+def _cut(text: str, most: int) -> str:
+    return text if len(text) <= most else text[: most - 1].rstrip(" ,") + "\u2026"
+
+
+def _series(
+    sheet: Sheet, series: pd.Series, place: tuple[float, float], title: str, middle: float | None = None
+) -> Panel:
+    """Panel with one series; missing spans inside it are shaded."""
+    values = series.to_numpy(dtype=float)
+    seen = np.isfinite(values)
+    low, high = (float(values[seen].min()), float(values[seen].max())) if seen.any() else (0.0, 1.0)
+    room = 0.06 * (high - low) or abs(high) * 0.1 or 1.0
+    panel = Panel(_LEFT, place[0], _SERIES, place[1], (-0.5, len(values) - 0.5), (low - room, high + room))
+    inside = (np.cumsum(seen) > 0) & (np.cumsum(seen[::-1])[::-1] > 0)
+    gaps = [
+        panel.points(np.array([a, a, b, b]) - 0.5, np.array([*panel.y_range, *panel.y_range[::-1]]))
+        for a, b in runs(~seen & inside)
+    ]
+    sheet.fills(gaps, PALE)
+    if middle is not None:
+        sheet.level(panel, middle, 0.6, HAIR)
+    pieces = [(a, b) for a, b in runs(seen)]
+    sheet.lines([panel.points(np.arange(a, b), values[a:b]) for a, b in pieces if b - a > 1])
+    alone = [a for a, b in pieces if b - a == 1]
+    if alone:
+        sheet.marks(panel.points(np.array(alone), values[alone]), ".", 2.5)
+    sheet.side(panel, *value_ticks(*panel.y_range))
+    sheet.words(0.01, panel.top + 0.09, title, TITLE)
+    return panel
+
+
+def _mark_shift(sheet: Sheet, panel: Panel, index: pd.Index, at: object) -> None:
+    found = int(index.get_indexer(pd.Index([at]))[0])
+    if found > 0:
+        sheet.upright(panel, found - 0.5, 0.9, INK, DOTTED)
+        sheet.words(float(panel.x(found - 0.5)) + 0.04, panel.top - 0.08, "shift", color=FAINT)
+
+
+def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
+    nlags = len(picture.correlogram_before)
+    wide = WIDTH - _LAGS - 0.1
+    panel = Panel(_LAGS, _BOTTOM, wide, height - _BOTTOM - 0.28, (0.3, nlags + 0.7), (-1.0, 1.0))
+    lags = np.arange(1, nlags + 1)
+    if picture.correlogram_after is None:
+        sheet.fills(_bars(panel, lags, picture.correlogram_before, 0.4))
+    else:
+        sheet.fills(_bars(panel, lags, picture.correlogram_before, 0.84), PALE)
+        sheet.fills(_bars(panel, lags, picture.correlogram_after, 0.36))
+        _key(sheet, panel)
+    sheet.level(panel, 0.0, 0.6, HAIR)
+    if np.isfinite(picture.band):
+        for side in (-picture.band, picture.band):
+            sheet.level(panel, side, 0.7, INK, DASHED)
+    ticks = lag_ticks(nlags, picture.period)
+    sheet.side(panel, [-1, 0, 1], [f"{words.MINUS}1", "0", "1"])
+    sheet.base(panel, ticks, [str(t) for t in ticks])
+    sheet.words(panel.left, panel.top + 0.09, "correlogram", TITLE)
+    sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95 % band", color=FAINT)
+
+
+def _key(sheet: Sheet, panel: Panel) -> None:
+    y = panel.top + 0.09
+    for x, wide, color, text in (
+        (panel.right - 1.16, 0.11, PALE, "as given"),
+        (panel.right - 0.42, 0.05, INK, "after"),
+    ):
+        sheet.fills([np.array([[x, y], [x, y + 0.09], [x + wide, y + 0.09], [x + wide, y]])], color)
+        sheet.words(x + wide + 0.05, y, text)
+
+
+def _bars(panel: Panel, lags: np.ndarray, heights: np.ndarray, width: float) -> list[np.ndarray]:
+    left, right, zero = lags - width / 2, lags + width / 2, np.zeros(len(lags))
+    return [
+        panel.points(np.array([a, a, b, b]), np.array([z, h, h, z]))
+        for a, b, z, h in zip(left, right, zero, heights, strict=True)
+        if np.isfinite(h)
+    ]
+
+
+def sparklines(many: Sequence[np.ndarray], width: int = 180, height: int = 42) -> list[bytes]:
+    """Small pictures of series, drawn together on one sheet and cut apart, so that each costs about a millisecond.
+
+    Parameters
+    ----------
+    many : sequence of arrays
+        Values, NaN where one is missing.
+    width, height : int
+        Size in dots.
+
+    Returns
+    -------
+    list of bytes
+        PNG of each, background transparent.
+    """
+    pieces: list[bytes] = []
+    for start in range(0, len(many), 100):
+        some = many[start : start + 100]
+        sheet = Sheet(width / DPI, len(some) * height / DPI)
+        lines = [line for row, values in enumerate(some) for line in _spark(values, len(some) - 1 - row, width, height)]
+        sheet.lines([line / DPI for line in lines], 0.7)
+        dots = sheet.dots()
+        pieces += [encode(dots[row * height : (row + 1) * height]) for row in range(len(some))]
+    return pieces
+
+
+def _spark(values: np.ndarray, row: int, width: int, height: int) -> list[np.ndarray]:
+    values = _thin(values, width) if len(values) > 4 * width else values
+    seen = np.isfinite(values)
+    if seen.sum() < 2:
+        return []
+    low, high = float(values[seen].min()), float(values[seen].max())
+    scaled = (values - low) / (high - low) if high > low else np.where(seen, 0.5, np.nan)
+    y = row * height + 4 + scaled * (height - 8)
+    x = np.linspace(2, width - 2, len(values))
+    return [np.column_stack([x[a:b], y[a:b]]) for a, b in runs(seen) if b - a > 1]
+
+
+def _thin(values: np.ndarray, width: int) -> np.ndarray:
+    """Least and greatest of each of `width` pieces: more points than dots cannot be told apart."""
+    kept: list[float] = []
+    for piece in np.array_split(values, width):
+        seen = piece[np.isfinite(piece)]
+        kept += [float(seen.min()), float(seen.max())] if len(seen) else [np.nan, np.nan]
+    return np.array(kept)

@@ -1,0 +1,142 @@
+"""Cards as aligned text, for terminals and for every host that shows no HTML."""
+
+from __future__ import annotations
+
+import shutil
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+from preflight_magic.present import words
+
+if TYPE_CHECKING:
+    from preflight_magic.present.cards import Card, OverviewCard, RungCard, StepMark
+
+ARROW = " \u2192 "
+
+
+def text_width() -> int:
+    """Columns of the terminal, at most 100; 80 where there is none."""
+    return max(40, min(100, shutil.get_terminal_size((80, 24)).columns))
+
+
+def wrap(text: str, width: int, first: str = "", rest: str | None = None) -> list[str]:
+    """Lines of at most `width` columns; `first` stands before the first line and `rest` before the others."""
+    rest = " " * words.width_of(first) if rest is None else rest
+    lines: list[str] = []
+    line, empty = first, True
+    for word in filter(None, text.split(" ")):  # a no-break space holds
+        pieces = _break(word, max(1, width - words.width_of(rest)))
+        for piece in pieces:
+            gap = "" if empty else " "
+            if not empty and words.width_of(line + gap + piece) > width:
+                lines.append(line.rstrip())
+                line, gap = rest, ""
+            line += gap + piece
+            empty = False
+    return [*lines, line.rstrip()]
+
+
+def _break(word: str, width: int) -> list[str]:
+    pieces, piece = [], ""
+    for character in word:
+        if piece and words.width_of(piece + character) > width:
+            pieces.append(piece)
+            piece = ""
+        piece += character
+    return [*pieces, piece]
+
+
+def columns(rows: Sequence[Sequence[str]], widths: Sequence[int], indent: str = "") -> list[str]:
+    """Rows of cells, each cell wrapped within its column and padded to it."""
+    lines = []
+    for row in rows:
+        cells = [wrap(cell, width) for cell, width in zip(row, widths, strict=True)]
+        for height in range(max(len(cell) for cell in cells)):
+            parts = [
+                words.fit(cell[height] if height < len(cell) else "", width)
+                for cell, width in zip(cells, widths, strict=True)
+            ]
+            lines.append((indent + "  ".join(parts)).rstrip())
+    return lines
+
+
+# ------------------------------------------------------------------------------------------------ one series
+def card_text(card: Card, width: int | None = None) -> str:
+    """Card of one series as text.
+
+    Parameters
+    ----------
+    card : Card
+    width : int, optional
+        Columns; by default those of the terminal.
+    """
+    width = text_width() if width is None else width
+    lines = [_title(card, width), *wrap(card.problem or card.answer, width)]
+    if not card.problem:
+        lines += wrap(f"Plan: {chain(card.repairs, card.steps)}", width, "", "      ")
+    lines += wrap(f"{card.span}.", width)
+    if card.switched:
+        lines += wrap("You have switched steps; this is not the recommended plan.", width)
+    for rung in card.rungs:
+        lines += _rung(rung, width)
+    if card.plans:
+        rows = [(row.text + (" (shown)" if row.shown else ""), row.cost) for row in card.plans]
+        lines += ["", *wrap("Plans that were compared, and BIC above the best:", width)]
+        lines += columns(rows, [width - 30, 26], "  ")
+    if card.code_problem:
+        lines += ["", *wrap(card.code_problem, width)]
+    elif card.code is not None:
+        lines += ["", *wrap("The pandas code: .code() of this series.", width)]
+    return "\n".join([*lines, *wrap(words.CAUTION, width)])
+
+
+def _title(card: Card, width: int) -> str:
+    verdict = words.verdict_text(card.verdict)
+    room = width - words.width_of(verdict) - 2
+    return f"{words.fit(words.name_text(card.name), room)}  {verdict}"
+
+
+def chain(repairs: Sequence[StepMark], steps: Sequence[StepMark]) -> str:
+    """Plan as a chain of steps."""
+    told = [mark.text for mark in repairs]
+    told += [mark.text if mark.state == "kept" else f"{mark.text} ({mark.state})" for mark in steps]
+    return ARROW.join(["as given", *told]) if told else "as given, without steps"
+
+
+def _rung(rung: RungCard, width: int) -> list[str]:
+    start = f"{rung.position:>2} {words.SHAPES[rung.verdict]} "
+    inside = " " * words.width_of(start)
+    lines = ["", *wrap(rung.question, width, start)]
+    lines += wrap(f"{rung.verdict}: {rung.headline.rstrip('.')}. {rung.reason}", width, inside)
+    if rung.steps:
+        lines += wrap(f"Proposes: {', '.join(rung.steps)}.", width, inside)
+    if rung.before:
+        lines += wrap(f"With the recommended plan: {rung.before}.", width, inside)
+    if rung.tests:
+        rows = [("test", "statistic", "p-value", "null hypothesis")]
+        rows += [(test.test, test.statistic, test.p, test.null) for test in rung.tests]
+        room = width - len(inside)
+        name, null = (room - 30) * 2 // 5, room - 30 - (room - 30) * 2 // 5
+        for row, details in zip(rows, ["", *(test.details for test in rung.tests)], strict=True):
+            lines += columns([row], [name, 9, 15, null], inside)
+            lines += wrap(details, width, inside + "  ") if details else []
+    if rung.measures:
+        lines += wrap("; ".join(f"{label}: {value}" for label, value in rung.measures), width, inside, inside + "  ")
+    return lines
+
+
+# ------------------------------------------------------------------------------------------------- overview
+def overview_text(card: OverviewCard, width: int | None = None) -> str:
+    """All series of a report, a line or two each."""
+    width = text_width() if width is None else width
+    longest = max([6, *(words.width_of(words.name_text(row.name)) for row in card.rows)])
+    name = min(longest, max(8, width // 3))
+    rest = width - name - 14 - 4
+    rows = [("series", "verdict", "plan")]
+    for row in card.rows:
+        told = row.plan if not row.note else f"{row.plan}; {row.note}" if row.plan != words.NONE else row.note
+        rows.append((words.fit(words.name_text(row.name), name).rstrip(), words.verdict_text(row.verdict), told))
+    lines = [*wrap(card.summary, width), *columns(rows, [name, 14, rest])]
+    if card.left_out:
+        lines += wrap(f"and {card.left_out:,} more; report.overview holds them all", width)
+    return "\n".join(lines)

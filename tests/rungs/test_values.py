@@ -1,0 +1,179 @@
+"""The second rung: counts, demand patterns, and values that stand alone."""
+
+import numpy as np
+import pandas as pd
+import pytest
+
+from preflight_magic.demo import ferry_line
+from preflight_magic.intake import read
+from preflight_magic.model import Evidence
+from preflight_magic.policy import Settings, Thresholds
+from preflight_magic.rungs.contract import Context
+from preflight_magic.rungs.values import RUNG, demand_pattern, stands_alone
+
+PLAIN = {
+    "n": 144,
+    "observed": 144,
+    "missing": 0,
+    "missing_share": 0.0,
+    "longest_gap": 0,
+    "longest_gap_at": None,
+    "zeros": 0,
+    "negatives": 0,
+    "distinct": 140,
+    "commonest_share": 0.02,
+    "minimum": 12.0,
+    "maximum": 90.5,
+    "whole_numbers": False,
+    "unit_interval": False,
+    "demand_interval": 1.0,
+    "demand_variation": 0.1,
+    "outliers": 0,
+    "outliers_at": (),
+}
+GAPS = {"missing": 5, "observed": 139, "missing_share": 5 / 144, "longest_gap": 3, "longest_gap_at": "2014-02"}
+
+
+@pytest.mark.parametrize(
+    ("change", "verdict", "headline", "reason"),
+    [
+        ({}, "clear", "144 values, none missing", "All values lie between 12 and 90.5, and none stands alone."),
+        (GAPS, "clear", "144 values, 5 missing (3.5%)", "The longest gap is 3 steps from 2014-02."),
+        (
+            {"outliers": 1, "outliers_at": ("2015-03",)},
+            "clear",
+            "144 values, none missing, 1 isolated outlier",
+            "Values far from their neighbours at 2015-03.",
+        ),
+        (
+            {"outliers": 5, "outliers_at": ("a", "b", "c", "d", "e")},
+            "clear",
+            "144 values, none missing, 5 isolated outliers",
+            "at a, b, c and 2 more.",
+        ),
+        ({"negatives": 2, "zeros": 1}, "clear", "144 values, none missing", "2 values below zero, so no log."),
+        ({"zeros": 1}, "clear", "144 values, none missing", "1 value equal to zero, so no plain log."),
+        ({"commonest_share": 0.62}, "clear", "144 values, none missing", "One value makes up 62% of the series."),
+        # Bounds by Syntetos, Boylan and Croston (2005): 1.32 and 0.49.
+        ({"demand_interval": 1.31, "demand_variation": 0.9}, "clear", "144 values, none missing", "All values"),
+        (
+            {"demand_interval": 1.32, "demand_variation": 0.48},
+            "clear",
+            "none missing, intermittent demand",
+            "every 1.32 ",
+        ),
+        ({"demand_interval": 1.32, "demand_variation": 0.49}, "clear", "none missing, lumpy demand", "size is 0.49"),
+        ({"demand_interval": float("nan")}, "clear", "144 values, none missing", "All values"),
+        ({"observed": 7}, "infeasible", "too few values", "7 values observed, where 8 are needed."),
+        ({"distinct": 1}, "infeasible", "one value only", "nothing to decide"),
+    ],
+)
+def test_judgements(change, verdict, headline, reason):
+    found = RUNG.judge(Evidence({**PLAIN, **change}), Thresholds())
+    assert (found.verdict, found.steps) == (verdict, ())
+    assert found.headline.endswith(headline)
+    assert reason in found.reason
+
+
+def test_a_problem_is_infeasible():
+    found = RUNG.judge(Evidence(problem="column 'freight': no value is observed; drop the column."), Thresholds())
+    assert found.verdict == "infeasible"
+    assert found.reason == "column 'freight': no value is observed; drop the column."
+
+
+def examined(values, **options):
+    index = pd.period_range("2012-01", periods=len(values), freq="M")
+    (series,) = read(pd.Series(values, index=index, name="freight"), **options)
+    return RUNG.examine(series, Context(Settings())).measures
+
+
+def test_counts():
+    values = np.tile([0.0, 2.0, -1.0, 2.0, 5.0], 12)
+    values[[3, 8, 9, 20]] = np.nan
+    found = examined(values)
+    assert (found["n"], found["observed"], found["missing"], found["missing_share"]) == (
+        60,
+        56,
+        4,
+        pytest.approx(4 / 60),
+    )
+    assert (found["longest_gap"], found["longest_gap_at"]) == (2, "2012-09")
+    assert (found["zeros"], found["negatives"], found["distinct"]) == (11, 12, 4)
+    assert found["commonest_share"] == pytest.approx(22 / 56)
+    assert (found["minimum"], found["maximum"]) == (-1.0, 5.0)
+    assert (found["whole_numbers"], found["unit_interval"]) == (True, False)
+    assert examined(np.tile([0.0, 0.25, 1.0], 10))["unit_interval"] is True
+
+
+def test_demand_pattern_by_hand():
+    interval, variation = demand_pattern(np.array([0.0, 2.0, 0.0, np.nan, 4.0, 0.0, 6.0]))
+    assert interval == pytest.approx(6 / 3)
+    # Sizes 2, 4, 6: mean 4, variance 8/3.
+    assert variation == pytest.approx((8 / 3) / 16)
+    assert np.isnan(demand_pattern(np.array([1.0, -1.0]))).all()
+    assert np.isnan(demand_pattern(np.zeros(3))).all()
+
+
+def simulated(kind, rng, n=144):
+    noise = rng.normal(size=n)
+    match kind:
+        case "noise":
+            return noise
+        case "random walk":
+            return noise.cumsum()
+        case "fixed pattern":
+            return 10 * rng.normal(size=12)[np.arange(n) % 12] + noise
+        case "growing pattern":
+            t = np.arange(n)
+            return np.exp(6 + 0.01 * t + 0.6 * np.sin(2 * np.pi * t / 12) + 0.05 * noise)
+    raise AssertionError(kind)
+
+
+@pytest.mark.parametrize("kind", ["noise", "random walk", "fixed pattern", "growing pattern"])
+def test_clean_series_have_no_outliers_and_spoiled_ones_have_the_one(kind):
+    rng = np.random.default_rng(20)
+    clean = [stands_alone(simulated(kind, rng), 12, 6.0) for _ in range(200)]
+    assert np.mean([flags.any() for flags in clean]) <= 0.02
+    hits = []
+    for _ in range(100):
+        y = simulated(kind, rng)
+        row = int(rng.integers(12, len(y) - 12))
+        y[row] = y[row] * 2.5 if kind == "growing pattern" else y[row] + 14.0
+        flags = stands_alone(y, 12, 6.0)
+        hits.append(flags[row] and flags.sum() == 1)
+    assert np.mean(hits) >= 0.95
+
+
+def test_a_step_is_no_outlier():
+    y = np.random.default_rng(1).normal(size=120) + 20.0 * (np.arange(120) >= 60)
+    assert not stands_alone(y, 12, 6.0).any()
+
+
+def test_outliers_do_not_depend_on_the_unit_nor_on_missing_values():
+    rng = np.random.default_rng(4)
+    y = 50 + rng.normal(size=120)
+    y[70] += 15
+    for factor in (1e-9, 1.0, 1e9):
+        assert np.flatnonzero(stands_alone(factor * y, 12, 6.0)).tolist() == [70]
+    y[[3, 4, 5, 6, 7, 8, 9, 10, 71, 82]] = np.nan
+    assert np.flatnonzero(stands_alone(y, 12, 6.0)).tolist() == [70]
+
+
+def test_a_single_spike_in_a_flat_series():
+    y = np.full(60, 3.0)
+    y[20] = 9.0
+    assert np.flatnonzero(stands_alone(y, 1, 6.0)).tolist() == [20]
+    assert not stands_alone(np.full(60, 3.0), 1, 6.0).any()
+
+
+def test_the_ferry_line_is_clean():
+    for series in read(ferry_line()):
+        found = RUNG.judge(RUNG.examine(series, Context()), Thresholds())
+        assert found.verdict == "clear"
+        assert found.headline == "144 values, none missing"
+
+
+def test_outliers_are_dated():
+    values = np.random.default_rng(6).normal(size=60)
+    values[26] += 30
+    assert examined(values)["outliers_at"] == ("2014-03",)

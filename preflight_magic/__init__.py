@@ -1,3 +1,59 @@
-"""Check series before forecasting: which transforms, why, and the pandas code that applies and undoes them."""
+"""Check series before forecasting: which transforms, why, and the pandas code that applies and undoes them.
+
+Examples
+--------
+>>> import preflight_magic as pf
+>>> report = pf.check(pf.demo.ferry_line(), progress=False)
+>>> str(report["fuel price"].plan)  # doctest: +SKIP
+'difference 1'
+"""
+
+from __future__ import annotations
+
+import importlib
+from typing import TYPE_CHECKING, Any
+
+from preflight_magic.model import CheckError
+
+if TYPE_CHECKING:
+    from preflight_magic import demo
+    from preflight_magic.batch import check, stream
+    from preflight_magic.plan.plan import Plan
+    from preflight_magic.report import Report, SeriesReport
 
 __version__ = "0.1.0"
+__all__ = ["CheckError", "Plan", "Report", "SeriesReport", "check", "demo", "stream"]
+
+# Found when first asked for, so that loading the extension costs next to nothing.
+_HOMES = {
+    "check": "preflight_magic.batch",
+    "stream": "preflight_magic.batch",
+    "Plan": "preflight_magic.plan.plan",
+    "Report": "preflight_magic.report",
+    "SeriesReport": "preflight_magic.report",
+}
+_STEPS = ("PerDay", "Log", "Power", "Logit", "Difference", "RemoveTrend", "RemoveShift", "RemovePattern")
+
+
+def __getattr__(name: str) -> Any:
+    if name in _HOMES:
+        return getattr(importlib.import_module(_HOMES[name]), name)
+    if name in _STEPS:
+        return getattr(importlib.import_module("preflight_magic.model"), name)
+    if name == "demo":
+        return importlib.import_module("preflight_magic.demo")
+    raise AttributeError(f"module 'preflight_magic' has no attribute {name!r}")
+
+
+def load_ipython_extension(shell: Any) -> None:
+    """Register the magics; called by ``%load_ext preflight_magic``."""
+    from preflight_magic.magic import load
+
+    load(shell)
+
+
+def unload_ipython_extension(shell: Any) -> None:
+    """Take the magics away again; called by ``%unload_ext preflight_magic``."""
+    from preflight_magic.magic import unload
+
+    unload(shell)

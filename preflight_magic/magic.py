@@ -5,6 +5,7 @@ from __future__ import annotations
 import ast
 import inspect
 from collections.abc import Hashable, Sequence
+from itertools import takewhile
 from types import CodeType
 from typing import Any
 
@@ -134,7 +135,7 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
     if quiet:
         options["progress"] = False
 
-    from preflight_magic.report import check
+    from preflight_magic.batch import check
 
     try:
         report = check(frame, **options)
@@ -187,7 +188,7 @@ def _value_of_line(shell: Shell, expression: str) -> object:
     __tracebackhide__ = True
     if not expression:
         raise UsageError("name a frame; write %checkseries FRAME, or %%checkseries above a cell that ends with one.")
-    filename = shell.compile.cache(expression, shell.execution_count)
+    filename = _source_name(shell, expression)
     try:
         code = compile(expression, filename, "eval", shell.compile.flags)
     except SyntaxError as error:
@@ -217,9 +218,11 @@ def _value_of_cell(shell: Shell, cell: str, given: Line) -> tuple[bool, object]:
         )
     if not cell.strip():
         raise UsageError("the cell is empty; its last expression gives the frame, or write %checkseries FRAME.")
-    # An empty first line stands for the line of the magic, so that line numbers are those that the person sees.
-    source = "\n" + shell.transform_cell(cell)
-    filename = shell.compile.cache(source, shell.execution_count)
+    # Empty lines stand for the line of the magic and for those that the transformation drops, so that line numbers are
+    # those that the person sees.
+    dropped = len(list(takewhile(lambda text: not text.strip(), cell.splitlines())))
+    source = "\n" * (1 + dropped) + shell.transform_cell(cell)
+    filename = _source_name(shell, source)
     tree = shell.transform_ast(ast.parse(source, filename))
     last = tree.body[-1] if tree.body else None
     if not isinstance(last, ast.Expr):
@@ -232,6 +235,11 @@ def _value_of_cell(shell: Shell, cell: str, given: Line) -> tuple[bool, object]:
     value = eval(expression, shell.user_ns)
     semicolon_at_end: Any = DisplayHook.semicolon_at_end_of_expression
     return bool(semicolon_at_end(source)), _frame(value, "the last expression of the cell is")
+
+
+def _source_name(shell: Shell, source: str) -> str:
+    """Keep source for tracebacks, numbered like the output of the cell: releases of IPython count on at other times."""
+    return str(shell.compile.cache(source, shell.displayhook.prompt_count))
 
 
 def _compiled(shell: Shell, tree: ast.Module | ast.Expression, filename: str) -> CodeType:

@@ -41,23 +41,28 @@ class Thresholds:
     # so it needs evidence. Just above the 1% point of chi-squared(1), 6.63; by simulation.
     log_margin: float = 7.0
 
-    # -- shift and trend
-    # Absolute t-value of a level shift at its best date; the date is searched, so the bound is far above the usual 2.
-    # By simulation.
-    shift_t: float = 5.0
-    # Size of the trend test that holds with or without a unit root. Harvey, Leybourne and Taylor (2007).
-    trend_significance: float = 0.05
-
     # -- season
     # p-value below which a season is there. Strict, since a false season costs a difference. By simulation.
     season_p: float = 0.001
-    # Log-likelihood by which the leading treatment of the season must lead the other. By simulation.
-    pattern_margin: float = 2.0
 
-    # -- all comparisons of plans
-    # Log-likelihood below which two plans are too even to call. Common practice: half of the 5% point of
-    # chi-squared(1), 3.84, is 1.92.
-    tie_margin: float = 2.0
+    # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
+    # simpler plan is preferred a little; the amounts are common practice and were checked by simulation.
+    # Against a trend: odds of 4.5 to 1.
+    trend_odds: float = 1.5
+    # Against a level shift at any date: odds of 7.4 to 1, besides the number of dates it might have.
+    shift_odds: float = 2.0
+    # Against a second difference: odds of 2.7 to 1.
+    second_difference_odds: float = 1.0
+    # Against a seasonal difference where there is a season: even odds.
+    wandering_odds: float = 0.0
+    # Prior standard deviation of a trend's slope, in spreads of the first differences a step.
+    slope_scale: float = 0.25
+    # Share of the evidence below which the leading answer to a question is too even to call: odds of 7 to 3.
+    # Common practice: Kass and Raftery (1995) call odds below 3 to 1 "not worth more than a bare mention".
+    even_share: float = 0.7
+    # Distance of the log's gain from its margin, in -2 log-likelihood, below which the log is too even to call.
+    # Common practice: 2 units are odds of 2.7 to 1.
+    log_even: float = 2.0
 
     # -- roots
     # Modulus of an inverse root from which it is near one. Common practice.

@@ -17,7 +17,8 @@ from preflight_magic.kernels.least_squares import FloatArray
 Kernel = Literal["bartlett", "parzen", "quadratic spectral"]
 Rule = Literal["andrews", "newey-west"]
 
-_PREWHITENING_LIMIT = 0.97  # Andrews and Monahan (1992): keeps 1 / (1 - rho)**2 bounded
+_ROUNDING = 4.0 * float(np.finfo(np.float64).eps)
+_PREWHITENING_LIMIT = 0.97  # Andrews and Monahan (1992), from memory: keeps 1 / (1 - rho)**2 bounded
 
 
 @dataclass(frozen=True)
@@ -281,8 +282,21 @@ def does_not_vary(u: FloatArray) -> bool:
     -------
     bool
     """
-    low, high = float(u.min()), float(u.max())
-    return high - low <= 4.0 * float(np.finfo(np.float64).eps) * max(abs(low), abs(high))
+    return within_rounding(float(u.min()), float(u.max()))
+
+
+def within_rounding(low: float, high: float) -> bool:
+    """Whether two numbers differ by no more than the rounding of the larger.
+
+    Parameters
+    ----------
+    low, high : float
+
+    Returns
+    -------
+    bool
+    """
+    return high - low <= _ROUNDING * max(abs(low), abs(high))
 
 
 def _first_order(u: FloatArray) -> float:

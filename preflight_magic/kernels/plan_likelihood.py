@@ -51,13 +51,13 @@ class PlanPrior:
         Prior standard deviation of the slope a step, in units of the spread of the first differences.
     """
 
-    log_margin: float = 7.0
-    season_p: float = 0.001
-    trend: float = 1.5
-    shift: float = 2.0
-    second: float = 1.0
-    wandering: float = 0.0
-    slope: float = 0.25
+    log_margin: float
+    season_p: float
+    trend: float
+    shift: float
+    second: float
+    wandering: float
+    slope: float
 
 
 @dataclass(frozen=True)
@@ -123,7 +123,7 @@ class _Subject:
     spread: float
 
 
-def compare(values: Array, period: int, prior: PlanPrior = PlanPrior()) -> Comparison | None:  # noqa: B008
+def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     """Compare candidate plans of one series.
 
     Parameters
@@ -278,9 +278,3 @@ def _fits(view: Contrasts, period: int, D: int) -> list[Fitted]:
         free = fit(view, Order(leading.p, leading.q, 0, 0, period))
         fits += [free] if free is not None else []
     return fits
-
-
-def decide_series(series, season):
-    c = compare(series.to_numpy(), season)
-    b = c.best
-    return dict(log=c.log, trend=b.trend, d=b.d, season="difference" if b.D else "fixed" if b.pattern else "none", shift=b.shift is not None)

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from math import sqrt
+from math import isfinite, sqrt
 from typing import Literal
 
 import numpy as np
@@ -30,7 +30,7 @@ from preflight_magic.kernels.least_squares import (
     residual_sums,
     triangle,
 )
-from preflight_magic.kernels.long_run_variance import does_not_vary, newey_west_bandwidth, weighted_sum
+from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum, within_rounding
 
 _DEGREE: Mapping[Terms, int] = {"n": -1, "c": 0, "ct": 1, "ctt": 2}
 _EPSILON = float(np.finfo(np.float64).eps)
@@ -127,15 +127,15 @@ def adf(
     Said and Dickey (1984), Biometrika 71. P-values: MacKinnon (1994); critical values: MacKinnon (2010).
     """
     degree = _degree(terms)
-    _check_finite(y)
     n = y.size
+    low, high = _range(y)
     room = min(n // 2 - degree - 2, (n - 4 - degree) // 2)  # leaves more observations than coefficients
     longest = lags if lags is not None else max_lags
     if longest is None:
         longest = min(schwert(n), room)
     elif longest < 0:
         raise ValueError(f"the lag length is {longest}; it must not be negative")
-    if room < 0 or longest > room or does_not_vary(y):
+    if room < 0 or longest > room or within_rounding(low, high):
         return None
     columns = _dickey_fuller_columns(y, degree, longest)
     common = triangle(columns[longest:].copy(order="F"))
@@ -148,7 +148,7 @@ def adf(
         chosen = smallest_criterion(rss, n - 1 - longest, degree + 2, criterion)
     nobs = n - 1 - chosen
     factor = _with_level_last(common, columns[chosen:longest], degree, chosen)
-    noise = 4.0 * _EPSILON * max(abs(float(y.min())), abs(float(y.max())))
+    noise = 4.0 * _EPSILON * max(abs(low), abs(high))
     if abs(factor[-1, -1]) <= noise * nobs**0.5 or leading_rank(factor) < degree + 2 + chosen:
         return None
     statistic = last_t_ratio(factor, nobs)
@@ -189,12 +189,12 @@ def kpss(
     """
     if terms not in ("c", "ct"):
         raise ValueError(f"the KPSS test has no terms {terms!r}; use 'c' or 'ct'")
-    _check_finite(y)
     n = y.size
-    if n < 4 or does_not_vary(y):
+    low, high = _range(y)
+    if n < 4 or within_rounding(low, high):
         return None
     residual = detrend(y, _DEGREE[terms])
-    if float(np.abs(residual).max()) <= n * _EPSILON * float(np.abs(y).max()):
+    if float(np.abs(residual).max()) <= n * _EPSILON * max(abs(low), abs(high)):
         return None
     if bandwidth is None or bandwidth == "auto":
         lags = int(newey_west_bandwidth(residual, "bartlett", pilot=int(n ** (2.0 / 9.0))))
@@ -255,6 +255,11 @@ def _degree(terms: Terms) -> int:
     return _DEGREE[terms]
 
 
-def _check_finite(y: FloatArray) -> None:
-    if not np.isfinite(y).all():
+def _range(y: FloatArray) -> tuple[float, float]:
+    """Smallest and largest value; they carry any NaN or infinity, so that nothing else has to look for it."""
+    if not y.size:
+        return 0.0, 0.0
+    low, high = float(y.min()), float(y.max())
+    if not isfinite(high - low):
         raise ValueError("a unit-root test needs finite values; it got missing or infinite ones")
+    return low, high

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import warnings
-
 import numpy as np
 import pandas as pd
 
@@ -126,13 +124,11 @@ def _check_timestamps(index: pd.DatetimeIndex, series: pd.Series, freq: pd.offse
     if index.freq is not None:
         return
     if freq is not None:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            expected = pd.date_range(index[0], index[-1], freq=freq)
+        expected = pd.date_range(index[0], index[-1], freq=freq)
         if len(expected) == len(index) and (expected == index).all():
             return
     # A frequency attached to a short piece may be narrower than that of the whole (Monday to Friday looks daily).
-    if len(index) > 2 and pd.infer_freq(index) is None:
+    if len(index) > 2 and pd.DatetimeIndex(index, freq="infer").freq is None:
         steps = np.diff(index.asi8)
         raise _gap(series, index[int(np.argmax(steps > 1.2 * np.median(steps)))])
     if freq is not None and len(index) > 1:

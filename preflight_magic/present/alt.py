@@ -71,4 +71,5 @@ def spark_alt(row: OverviewRow) -> str:
     if len(values) < 2:
         return "no picture"
     low, high = words.number(float(values.min())), words.number(float(values.max()))
-    return f"{row.span}: from {words.number(float(values[0]))} to {words.number(float(values[-1]))}, between {low} and {high}"
+    first, last = words.number(float(values[0])), words.number(float(values[-1]))
+    return f"{row.span}: from {first} to {last}, between {low} and {high}"

@@ -8,7 +8,7 @@ from importlib import resources
 from typing import TYPE_CHECKING
 
 from preflight_magic.model import Verdict
-from preflight_magic.present import cards, words
+from preflight_magic.present import make_cards, words
 from preflight_magic.present.alt import before_after_alt, roots_alt, spark_alt
 from preflight_magic.present.markup import Markup, el, join, picture
 from preflight_magic.present.rung_html import ladder
@@ -41,7 +41,7 @@ _REVIVE = (
 def style() -> Markup:
     """Style sheet of the cards as an element."""
     sheet = resources.files("preflight_magic.present").joinpath("style.css").read_text(encoding="utf-8")
-    return Markup("<style>" + re.sub(r"/\*.*?\*/|\s*\n\s*", " ", sheet, flags=re.S).strip() + "</style>")
+    return Markup("<style>" + re.sub(r"/\*.*?\*/|\s*\n\s*", " ", sheet, flags=re.DOTALL).strip() + "</style>")
 
 
 def card_html(card: Card, key: str = "card") -> Markup:
@@ -59,17 +59,18 @@ def card_html(card: Card, key: str = "card") -> Markup:
 # ---------------------------------------------------------------------------------------------------- the top
 def head(card: Card) -> Markup:
     """Name, verdict, answer and plan."""
-    full = words.name_text(card.name)
+    full, name = words.name_text(card.name), words.name_text(card.name, 120)
+    meaning = el("span", words.MEANINGS[card.verdict], class_="pfm-faint")
+    switched = " You have switched steps; this is not the recommended plan." if card.switched else None
     return el(
         "div",
-        el("h3", words.name_text(card.name, 120), class_="pfm-name", title=full if len(full) > 120 else None),
-        el("p", verdict(card.verdict), " ", el("span", words.MEANINGS[card.verdict], class_="pfm-faint"), class_="pfm-says"),
+        el("h3", name, class_="pfm-name", title=full if full != name else None),
+        el("p", verdict(card.verdict), " ", meaning, class_="pfm-says"),
         el("p", card.problem or card.answer, class_="pfm-answer"),
         None if card.problem else el("p", el("b", "Plan: "), _chain(card), class_="pfm-plan"),
-        el("p", card.span, ".", " You have switched steps; this is not the recommended plan." if card.switched else None,
-           class_="pfm-faint"),
+        el("p", f"{card.span}.", switched, class_="pfm-faint"),
         class_="pfm pfm-head",
-    )  # fmt: skip
+    )
 
 
 def verdict(value: Verdict) -> Markup:
@@ -135,10 +136,10 @@ def _notes(card: Card) -> str:
 def _plans(card: Card, key: str) -> Markup | None:
     if not card.plans:
         return None
-    rows = [
-        el("tr", el("td", el("b", row.text) if row.shown else row.text, " (shown)" if row.shown else None), el("td", row.cost))
-        for row in card.plans
-    ]  # fmt: skip
+    rows = []
+    for row in card.plans:
+        plan = el("td", el("b", row.text), " (shown)") if row.shown else el("td", row.text)
+        rows.append(el("tr", plan, el("td", row.cost)))
     header = el("thead", el("tr", el("th", "plan", scope="col"), el("th", "BIC above the best", scope="col")))
     return el(
         "details",
@@ -175,10 +176,8 @@ def overview(card: OverviewCard, linked: bool = False) -> Markup:
 
     pictures = sparklines([row.values for row in card.rows])
     heads = [el("th", text, scope="col") for text in ("series", "", "verdict", "plan", "note")]
-    rows = [
-        _row(row, png, f"#pfm-series-{i}" if linked else None)
-        for i, (row, png) in enumerate(zip(card.rows, pictures, strict=True))
-    ]
+    links = [f"#pfm-series-{i}" if linked else None for i in range(len(card.rows))]
+    rows = [_row(*parts) for parts in zip(card.rows, pictures, links, strict=True)]
     more = f"and {card.left_out:,} more; report.overview holds them all" if card.left_out else None
     return el(
         "div",
@@ -216,12 +215,12 @@ def page(report: ReportView, title: str = "Series checked before forecasting") -
     views = [report[name] for name in report.names]
     sections = [
         el("section", head(one), body(one, str(i)), id=f"pfm-series-{i}")
-        for i, one in enumerate(cards.card(view) for view in views)
+        for i, one in enumerate(make_cards.card(view) for view in views)
     ]
     everything = el(
         "main",
         el("h2", title, class_="pfm-title"),
-        overview(cards.overview(report, limit=None), linked=True) if len(views) > 1 else None,
+        overview(make_cards.overview(report, limit=None), linked=True) if len(views) > 1 else None,
         sections,
         class_="pfm-page",
     )

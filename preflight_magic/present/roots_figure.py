@@ -42,12 +42,11 @@ def roots_strip(picture: RootsPicture) -> bytes:
     sheet.level(panel, 1.0, 1.0, INK)
     for part in ("AR", "MA"):
         _draw(sheet, panel, picture, part, apart)
-    ticks = [p for p in _PERIODS if p <= longest * 1.001]
-    kept = [
-        p
-        for i, p in enumerate(ticks)
-        if i == 0 or float(panel.x(math.log2(p)) - panel.x(math.log2(ticks[i - 1]))) > 0.2
-    ]
+    kept: list[int] = []
+    for period in _PERIODS:
+        near = bool(kept) and float(panel.x(math.log2(period)) - panel.x(math.log2(kept[-1]))) < 0.26
+        if period <= longest * 1.001 and not near:
+            kept.append(period)
     sheet.base(panel, [*(math.log2(p) for p in kept), apart], [*(str(p) for p in kept), "no cycle"])
     sheet.side(panel, [0, 0.5, 1], ["0", "0.5", "1"])
     sheet.words(0.01, panel.top + 0.09, "modulus of the inverse roots", TITLE)

@@ -8,7 +8,7 @@ from __future__ import annotations
 import io
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any, Literal
 
 import numpy as np
 
@@ -117,7 +117,15 @@ class Sheet:
             )
         )  # fmt: skip
 
-    def words(self, x: float, y: float, text: str, size: float = WORDS, color: str = INK, across: str = "left") -> None:
+    def words(
+        self,
+        x: float,
+        y: float,
+        text: str,
+        size: float = WORDS,
+        color: str = INK,
+        across: Literal["left", "center", "right"] = "left",
+    ) -> None:
         """Words on the base line `y`, set from, around or up to `x` (inches)."""
         from matplotlib.text import Text
 
@@ -161,7 +169,7 @@ class Sheet:
         """What was drawn, shape (height, width, 4) of bytes."""
         from matplotlib.backends.backend_agg import FigureCanvasAgg
 
-        canvas = FigureCanvasAgg(self.figure)
+        canvas: Any = FigureCanvasAgg(self.figure)
         canvas.draw()
         return np.asarray(canvas.buffer_rgba())
 

@@ -7,9 +7,10 @@ import math
 import numpy as np
 import pandas as pd
 
+from preflight_magic.plan.words import stamp_text
 from preflight_magic.present import words
 
-_MONTHS = "Jan Feb Mar Apr May Jun Jul Aug Sep Oct Nov Dec".split()
+_MONTHS = ["Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"]
 _HOURS = {"hour": 1.0, "day": 24.0, "month": 28 * 24.0, "year": 365 * 24.0}
 _SPANS: tuple[tuple[str, int], ...] = (
     ("hour", 1), ("hour", 6), ("day", 1), ("day", 2), ("day", 7), ("month", 1), ("month", 3), ("month", 6),
@@ -25,7 +26,7 @@ def time_ticks(index: pd.Index, most: int = 7) -> tuple[list[int], list[str]]:
     """
     if not isinstance(index, pd.PeriodIndex | pd.DatetimeIndex) or len(index) < 2:
         return _count_ticks(index, most)
-    ends = [0, len(index) - 1], [words.stamp_text(index[0]), words.stamp_text(index[-1])]
+    ends = [0, len(index) - 1], [stamp_text(index[0]), stamp_text(index[-1])]
     try:
         stamps = index.to_timestamp() if isinstance(index, pd.PeriodIndex) else index
     except (pd.errors.OutOfBoundsDatetime, OverflowError):

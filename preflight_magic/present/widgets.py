@@ -8,8 +8,9 @@ from collections.abc import Callable, Hashable, Sequence
 from contextlib import suppress
 from typing import TYPE_CHECKING, Any
 
-from preflight_magic.present import cards, html, registry, text, words
+from preflight_magic.present import html, make_cards, registry, text, words
 from preflight_magic.present.contract import ReportView
+from preflight_magic.present.markup import join
 from preflight_magic.present.switches import Switch, settle, states, switches, walk
 
 if TYPE_CHECKING:
@@ -52,11 +53,11 @@ def show(view: ReportView | SeriesView) -> Controller | None:
 def bundle(view: ReportView | SeriesView) -> Bundle:
     """HTML and text of a report or one series, without controls."""
     if not isinstance(view, ReportView):
-        card = cards.card(view)
+        card = make_cards.card(view)
         return {"text/html": html.card_html(card), "text/plain": text.card_text(card)}
     if len(view) == 1:
         return bundle(view[view.names[0]])
-    overview = cards.overview(view)
+    overview = make_cards.overview(view)
     return {"text/html": html.overview_html(overview), "text/plain": text.overview_text(overview)}
 
 
@@ -108,14 +109,15 @@ class Controller:
             options=_options(names[:SHOWN_NAMES]), value=0, description="Series", tooltip="Series whose card is shown"
         )
         self._choice.add_class("pfm-selector")
-        self._choice.observe(lambda change: self._guarded(lambda: self._select(change["new"])), names="value")
+        self._choice.observe(lambda _: self._guarded(self._select), names="value")
         parts = [self._choice]
         if len(names) > FIND_FROM:
             find = ipywidgets.Text(
                 placeholder="part of a name", description="Find", tooltip="Narrow the list of series"
             )
+            self._find = find
             find.add_class("pfm-find")
-            find.observe(lambda change: self._guarded(lambda: self._find(change["new"])), names="value")
+            find.observe(lambda _: self._guarded(self._narrow), names="value")
             parts.append(find)
         box = ipywidgets.HBox(parts)
         box.layout.flex_flow = "row wrap"
@@ -166,17 +168,19 @@ class Controller:
         told = escaping.escape(words.plain(message))
         self._message.value = f'<span role="status">{told}</span>' if told else ""
 
-    def _set_boxes(self, states_: Sequence[bool]) -> None:
+    def _set_boxes(self, wanted: Sequence[bool]) -> None:
         self._quiet = True
         try:
-            for box, on in zip(self._boxes, states_, strict=True):
-                box.value = on
+            for box, on in zip(self._boxes, wanted, strict=True):
+                if box.value != on:  # a click that arrives meanwhile is not undone
+                    box.value = on
         finally:
             self._quiet = False
 
     def _switch(self, position: int) -> None:
         # What the boxes say now counts, not what they said when this was called: fast clicks end in the last state.
-        wanted = settle(self._offered, [bool(box.value) for box in self._boxes], position)
+        seen = [bool(box.value) for box in self._boxes]
+        wanted = settle(self._offered, seen, position)
         self._set_boxes(wanted)
         self._go(wanted)
 
@@ -195,7 +199,8 @@ class Controller:
         self._back.disabled = self._is_recommended()
         self._say("")
 
-    def _select(self, position: int | None) -> None:
+    def _select(self) -> None:
+        position = self._choice.value
         if self._report is None or position is None:
             return
         base = self._report[list(self._report.names)[position]]
@@ -203,16 +208,17 @@ class Controller:
             self._load(base)
             self._draw(self._shown)
 
-    def _find(self, part: str) -> None:
+    def _narrow(self) -> None:
+        part = str(self._find.value).casefold()
         names = list(self._report.names) if self._report is not None else []
-        found = [(i, n) for i, n in enumerate(names) if part.casefold() in words.name_text(n).casefold()]
+        found = [(words.name_text(n, 80), i) for i, n in enumerate(names) if part in words.name_text(n).casefold()]
         self._quiet = True
         try:
-            self._choice.options = [(words.name_text(n, 80), i) for i, n in found[:SHOWN_NAMES]]
+            self._choice.options = found[:SHOWN_NAMES]
         finally:
             self._quiet = False
         self._say("" if found else "No series has this in its name.")
-        self._select(self._choice.value)
+        self._select()
 
     def _is_recommended(self) -> bool:
         return all(on == switch.recommended for on, switch in zip(self._shown, self._offered, strict=True))
@@ -233,9 +239,10 @@ class Controller:
             view = self._base
             if wanted != states(self._base, self._offered):
                 view = walk(self._base, self._offered, wanted)
-            card = cards.card(view, None if view is self._base else self._base)
+            is_base = view is self._base or self._base.plan.steps != self._base.recommended.steps
+            card = make_cards.card(view, None if is_base else self._base)
             key = f"{id(self)}-{words.name_text(self._base.name, 20)}".replace(" ", "-")
-            top = {"text/html": html.join([html.style(), html.head(card)]), "text/plain": text.card_text(card)}
+            top = {"text/html": join([html.style(), html.head(card)]), "text/plain": text.card_text(card)}
             cache[wanted] = view, top, {"text/html": html.body(card, key), "text/plain": ""}
         return cache[wanted]
 
@@ -247,19 +254,17 @@ class Controller:
 
     def show(self) -> None:
         """Display everything: overview and selector where there are several series, the card, its controls."""
-        from IPython.display import display
-
         with self._lock:
             if self._report is not None and self._selector is not None:
-                overview = cards.overview(self._report)
+                overview = make_cards.overview(self._report)
                 told = {"text/html": html.overview_html(overview), "text/plain": text.overview_text(overview)}
-                display(told, raw=True)
-                display(_controls(self._selector), raw=True)
+                _display(told)
+                _display(_controls(self._selector))
             _, top, rest = self._bundles(self._shown)
-            self._top = display(top, raw=True, display_id=True)
+            self._top = _display(top, True)
             if self._boxes or self._selector is not None:
-                display(_controls(self._controls), raw=True)
-            self._rest = display(rest, raw=True, display_id=True)
+                _display(_controls(self._controls))
+            self._rest = _display(rest, True)
 
     def close(self) -> None:
         """Close every widget; the card stays as it is."""
@@ -268,6 +273,14 @@ class Controller:
             for box in (self._controls, self._selector, self._back, *self._boxes):
                 if box is not None:
                     _close(box)
+
+
+def _display(told: dict[str, Any], again: bool = False) -> Any:
+    """Display a bundle; `again` gives a handle by which it can be drawn anew."""
+    from IPython import display
+
+    shown: Callable[..., Any] = display.display
+    return shown(told, raw=True, display_id=True) if again else shown(told, raw=True)
 
 
 def _options(names: Sequence[Hashable]) -> list[tuple[str, int]]:

@@ -5,8 +5,11 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, field
 
+import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
 
+from preflight_magic.kernels.plan_likelihood import Comparison
 from preflight_magic.model import Evidence, Judgement, Step, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
 
@@ -18,18 +21,28 @@ class Context:
     Attributes
     ----------
     settings : Settings
-    comparison : object or None
-        The comparison of candidate plans that several rungs share, computed once by the ladder.
+    comparison : Comparison or None
+        The comparison of candidate plans that several rungs share, computed once by the ladder; None where no
+        candidate could be computed.
     steps : tuple of Step
         The plan so far.
     transformed : pandas.Series or None
-        The series after the plan; only for rungs that come after it.
+        The series after the plan, without missing values; only for rungs that come after "unit root".
+    nuisance : ndarray or None, shape (len(transformed), k)
+        Differenced indicators of the missing values, for likelihoods that skip them.
+    innovations : ndarray or None
+        Standardised innovations of the ARMA fit; only for rungs that come after "roots".
+    fitted_parameters : int
+        Coefficients of that fit.
     """
 
     settings: Settings = field(default_factory=Settings)
-    comparison: object | None = None
+    comparison: Comparison | None = None
     steps: tuple[Step, ...] = ()
     transformed: pd.Series | None = None
+    nuisance: NDArray[np.float64] | None = None
+    innovations: NDArray[np.float64] | None = None
+    fitted_parameters: int = 0
 
 
 @dataclass(frozen=True)

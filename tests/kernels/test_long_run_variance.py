@@ -109,7 +109,7 @@ def test_unit_and_origin_change_nothing_but_the_unit(kernel: str, rule: str, sca
 def test_prewhitening_coefficient_is_bounded() -> None:
     found = long_run_variance(np.cumsum(np.ones(300)) ** 1.5, prewhiten=True)
     assert found is not None
-    assert found.prewhitening == 0.97  # Andrews and Monahan (1992), Econometrica 60
+    assert found.prewhitening == 0.97  # Andrews and Monahan (1992), Econometrica 60, from memory
 
 
 @pytest.mark.parametrize("kernel", KERNELS)

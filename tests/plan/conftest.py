@@ -76,6 +76,10 @@ MONTHLY = ["monthly periods", "month starts", "month ends", "stamps without a fr
 LONG_PERIODS = [*MONTHLY, "quarterly periods", "quarter starts", "quarter ends", "yearly periods", "year starts"]
 
 
+TYPICAL = ["monthly periods", "stamps without a frequency", "hours with a time zone", "integers"]
+RICH = ["airline", "everything fixed", "shift and pattern after a difference"]
+
+
 def passengers(index, seed=7):
     """Invented passengers of a ferry line: growth, season and noise in proportion to the level."""
     t = np.arange(len(index))
@@ -91,6 +95,18 @@ def series(request):
 
 @pytest.fixture(params=PLANS, ids=lambda name: name.replace(" ", "-"))
 def steps_for(request):
+    return PLANS[request.param]
+
+
+@pytest.fixture(params=TYPICAL, ids=lambda kind: kind.replace(" ", "-"))
+def typical(request):
+    """Series on one of the few indexes that differ most."""
+    return passengers(INDEXES[request.param])
+
+
+@pytest.fixture(params=RICH, ids=lambda name: name.replace(" ", "-"))
+def rich_steps_for(request):
+    """One of the few plans that do most."""
     return PLANS[request.param]
 
 

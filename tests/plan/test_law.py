@@ -15,7 +15,7 @@ def assert_law(plan, y, h):
     pd.testing.assert_series_equal(back, y.iloc[-h:].astype("float64"), rtol=1e-9, atol=0)
 
 
-@pytest.mark.parametrize("h", [1, 6, 15])
+@pytest.mark.parametrize("h", [1, 15])
 def test_law_on_every_index(series, steps_for, h):
     assert_law(Plan((), steps_for(series.index)), series, h)
 
@@ -32,11 +32,11 @@ def test_law_per_day(totals, day_plans, h):
         assert_law(plan, totals, h)
 
 
-def test_values_alone_and_within_the_whole_series_are_transformed_alike(series, steps_for):
-    plan = Plan((FillGaps(12),), steps_for(series.index))
-    history = series.iloc[:-9]
-    whole = plan.apply(series, history=history).iloc[-9:]
-    alone = plan.apply(series.iloc[-9:], history=history)
+def test_values_alone_and_within_the_whole_series_are_transformed_alike(typical, steps_for):
+    plan = Plan((FillGaps(12),), steps_for(typical.index))
+    history = typical.iloc[:-9]
+    whole = plan.apply(typical, history=history).iloc[-9:]
+    alone = plan.apply(typical.iloc[-9:], history=history)
     pd.testing.assert_series_equal(whole, alone, rtol=1e-12, check_freq=False)
 
 

@@ -1,0 +1,249 @@
+"""Making cards of reports: what is shown is chosen and put into words here; nothing is computed again."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter
+from collections.abc import Iterator, Mapping, Sequence
+from typing import TYPE_CHECKING, Literal, cast
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.model import Difference, Finding, HypothesisTest, RemovePattern, RemoveShift, Root, Step
+from preflight_magic.plan.words import describe
+from preflight_magic.present import words
+from preflight_magic.present.cards import (
+    EVEN,
+    Card,
+    OverviewCard,
+    OverviewRow,
+    Picture,
+    PlanRow,
+    RootsPicture,
+    RungCard,
+    StepMark,
+    TestRow,
+)
+
+if TYPE_CHECKING:
+    from preflight_magic.present.contract import ReportView, SeriesView
+
+OVERVIEW_ROWS = 60
+
+
+# ------------------------------------------------------------------------------------------------ one series
+def card(view: SeriesView, recommended: SeriesView | None = None) -> Card:
+    """Card of one series.
+
+    Parameters
+    ----------
+    view : SeriesView
+        With the plan that is shown.
+    recommended : SeriesView, optional
+        The same series with the recommended plan, to say which findings changed.
+    """
+    code, code_problem = _code(view)
+    return Card(
+        name=view.name,
+        verdict=view.verdict,
+        answer=words.plain(view.answer),
+        span=span_text(view.series, view.noun),
+        problem=None if view.problem is None else words.plain(view.problem),
+        repairs=tuple(StepMark(describe(r), words.meaning(r, view.noun)) for r in view.plan.repairs),
+        steps=step_marks(view),
+        switched=view.plan.steps != view.recommended.steps,
+        picture=_picture(view),
+        roots=_roots(view),
+        rungs=_rungs(view, recommended),
+        plans=_plans(view),
+        code=code,
+        code_problem=code_problem,
+    )
+
+
+def span_text(series: pd.Series, noun: str) -> str:
+    """Count, first and last stamp and missing values of a series, in words."""
+    if not len(series):
+        return "no values"
+    missing = int(series.isna().sum())
+    ends = f"{words.stamp(series.index[0], noun)} to {words.stamp(series.index[-1], noun)}"
+    return f"{words.count_of(len(series), noun)}, {ends}" + (f", {missing:,} missing" if missing else "")
+
+
+def step_marks(view: SeriesView) -> tuple[StepMark, ...]:
+    """Steps of the plan and of the recommendation, in the order of both, each told from the recommendation."""
+    kept, marks = Counter(view.plan.steps), []
+    recommended = Counter(view.recommended.steps)
+    put_in = kept - recommended
+    queue = list(view.plan.steps)
+    for step in view.recommended.steps:
+        while queue and put_in[queue[0]] and queue[0] != step:
+            marks.append(_mark(view, queue.pop(0), "put in"))
+        if kept[step]:
+            kept[step] -= 1
+            queue.remove(step)
+            marks.append(_mark(view, step, "kept"))
+        else:
+            marks.append(_mark(view, step, "left out"))
+    return (*marks, *(_mark(view, step, "put in") for step in queue))
+
+
+def _mark(view: SeriesView, step: Step, state: Literal["kept", "left out", "put in"]) -> StepMark:
+    return StepMark(describe(step), words.meaning(step, view.noun), state)
+
+
+def _code(view: SeriesView) -> tuple[str | None, str | None]:
+    if view.problem is not None:
+        return None, None
+    try:
+        return view.code(), None
+    except Exception as error:  # a fault of the generated code must be seen in the card, not hide the card
+        return None, words.plain(f"The code could not be proved, which is a fault of this program: {error}")
+
+
+def _picture(view: SeriesView) -> Picture | None:
+    observed = int(view.series.notna().sum())
+    if observed < 2:
+        return None
+    shifts = tuple(step.at for step in view.plan.steps if isinstance(step, RemoveShift))
+    changed = bool(view.plan.steps) and len(view.transformed) > 1
+    period = season_of(view)
+    nlags = min(max(24, 2 * period + 1), observed // 2, len(view.transformed) - 1)
+    if view.problem is not None or nlags < 1:
+        empty = np.empty(0)
+        return Picture(view.series, None, empty, None, math.nan, period, shifts, view.noun, str(view.plan))
+    before, after, band = view.correlograms(nlags)
+    return Picture(
+        before=view.series,
+        after=view.transformed if changed else None,
+        correlogram_before=np.asarray(before, dtype=float),
+        correlogram_after=np.asarray(after, dtype=float) if changed else None,
+        band=float(band),
+        period=period,
+        shifts=shifts,
+        noun=view.noun,
+        plan=", ".join(describe(step) for step in view.plan.steps),
+    )
+
+
+def season_of(view: SeriesView) -> int:
+    """Seasonal period for the ticks of a correlogram: from the steps, else what the first rung measured, else 1."""
+    for step in (*view.plan.steps, *view.recommended.steps):
+        if isinstance(step, RemovePattern):
+            return step.period
+        if isinstance(step, Difference) and step.lag > 1:
+            return step.lag
+    finding = view.findings.get("time index")
+    measured = finding.measures.get("period") if finding else None
+    return int(measured) if isinstance(measured, int | np.integer) and measured > 1 else 1
+
+
+def _roots(view: SeriesView) -> RootsPicture | None:
+    finding = view.findings.get("roots")
+    if finding is None or not finding.measures.get("order"):
+        return None
+    roots = cast("tuple[Root, ...]", tuple(cast("Sequence[Root]", finding.measures.get("roots", ()))))
+    keys = ("psi_sum", "variance_implied", "variance_sample", "half_life")
+    notes = []
+    for key in keys:
+        value = finding.measures.get(key)
+        if isinstance(value, int | float | np.number) and not math.isnan(float(value)):
+            told = words.number(float(value))
+            unit = f" {words.plural(view.noun, float(value))}" if key == "half_life" else ""
+            notes.append((words.label_text(key), told + unit))
+    return RootsPicture(roots, words.plain(str(finding.measures["order"])), view.noun, tuple(notes))
+
+
+def _rungs(view: SeriesView, recommended: SeriesView | None) -> tuple[RungCard, ...]:
+    earlier = {} if recommended is None else recommended.findings
+    return tuple(
+        _rung(position, finding, view, earlier.get(name))
+        for position, (name, finding) in enumerate(view.findings.items(), start=1)
+    )
+
+
+def _rung(position: int, finding: Finding, view: SeriesView, earlier: Finding | None) -> RungCard:
+    method, sources = view.methods.get(finding.rung, ("", ()))
+    before = None
+    if earlier is not None and (earlier.verdict, earlier.headline) != (finding.verdict, finding.headline):
+        before = words.plain(f"{words.verdict_text(earlier.verdict)}: {earlier.headline}")
+    return RungCard(
+        position=position,
+        rung=finding.rung,
+        question=words.plain(finding.question),
+        verdict=finding.verdict,
+        headline=words.plain(finding.headline),
+        reason=words.plain(finding.reason),
+        steps=tuple(describe(step) for step in finding.steps),
+        tests=tuple(_test(test) for test in finding.tests),
+        measures=tuple(_measures(finding.measures, view.noun)),
+        method=words.plain(method),
+        sources=tuple(words.plain(source) for source in sources),
+        before=before,
+    )
+
+
+def _test(test: HypothesisTest) -> TestRow:
+    return TestRow(
+        test=words.plain(test.test),
+        null=words.plain(test.null),
+        statistic=words.number(test.statistic),
+        p=words.p_value(test.p_value, test.p_bound),
+        details=words.test_details(test),
+    )
+
+
+def _measures(measures: Mapping[str, object], noun: str) -> Iterator[tuple[str, str]]:
+    for key, value in measures.items():
+        if isinstance(value, tuple | list) and value and all(isinstance(item, Root) for item in value):
+            yield from _root_rows(cast("Sequence[Root]", value), noun)
+        else:
+            yield words.label_text(key), words.value_text(value, noun)
+
+
+def _root_rows(roots: Sequence[Root], noun: str) -> Iterator[tuple[str, str]]:
+    """One row a root; the roots of a seasonal polynomial share a row, since they share their modulus."""
+    groups: dict[tuple[str, str], list[Root]] = {}
+    for root in roots:
+        place = f"{root.modulus:.6f}" if root.seasonal else repr(root)
+        groups.setdefault((root.part, place), []).append(root)
+    for (part, _), group in groups.items():
+        if len(group) == 1:
+            yield f"{part} root", words.root_text(group[0], noun).removeprefix(f"{part} ")
+        else:
+            one = words.root_text(group[0], noun).removeprefix(f"{part} ").split(",")[0]
+            yield f"{part} seasonal roots", f"{one}, {len(group)} roots at the seasonal frequencies"
+
+
+def _plans(view: SeriesView) -> tuple[PlanRow, ...]:
+    rows = []
+    for text, cost, steps in sorted(view.alternatives, key=lambda item: item[1]):
+        told = "best" if cost <= 0 else f"{words.number(cost, 2)} worse" + (", nearly even" if cost < EVEN else "")
+        rows.append(PlanRow(words.plain(text), told, tuple(steps) == tuple(view.plan.steps)))
+    return tuple(rows)
+
+
+# ------------------------------------------------------------------------------------------------- overview
+def overview(report: ReportView, limit: int | None = OVERVIEW_ROWS) -> OverviewCard:
+    """Overview of a report: its first `limit` series, or all."""
+    frame, names = report.overview, list(report.names)
+    shown = names if limit is None else names[:limit]
+    verdicts = [str(v) for v in frame["verdict"]]
+    counts = ", ".join(f"{verdicts.count(v)} {words.verdict_text(v)}" for v in words.SHAPES if v in verdicts)
+    rows = []
+    for position, name in enumerate(shown):
+        line, view = frame.iloc[position], report[name]
+        note = line["note"]
+        rows.append(
+            OverviewRow(
+                name=name,
+                verdict=view.verdict,
+                plan=words.plain(str(view.plan)) if view.problem is None else words.NONE,
+                note=words.plain(view.problem or ("" if pd.isna(note) else str(note))),
+                values=view.series.to_numpy(dtype=float),
+                span=span_text(view.series, view.noun),
+                rungs=tuple((f.question, f.verdict, words.plain(f.headline)) for f in view.findings.values()),
+            )
+        )
+    return OverviewCard(f"{len(names):,} series: {counts}", tuple(rows), len(names) - len(shown))

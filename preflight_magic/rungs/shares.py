@@ -1,0 +1,45 @@
+"""Shares of the evidence: how the comparison of plans answers one question. Used by the rungs that share it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Hashable, Mapping
+
+from preflight_magic.kernels.plan_likelihood import Candidate, Comparison
+
+
+def shares(comparison: Comparison, answer: Callable[[Candidate], Hashable]) -> dict[Hashable, float]:
+    """Share of the evidence for each answer to a question, summed over the candidate plans that give it.
+
+    Parameters
+    ----------
+    comparison : Comparison
+    answer : Callable[[Candidate], Hashable]
+        What a plan says to the question.
+
+    Returns
+    -------
+    dict
+        Answer to share, in order of the best plan that gives it; shares sum to one.
+    """
+    found: dict[Hashable, float] = {}
+    for candidate, weight in zip(comparison.candidates, comparison.weights, strict=True):
+        key = answer(candidate)
+        found[key] = found.get(key, 0.0) + weight
+    return found
+
+
+def per_cent(share: float) -> str:
+    """Write a share of the evidence: ``92 %``, ``under 1 %``, ``over 99 %``."""
+    if share < 0.01:
+        return "under 1 %"
+    return "over 99 %" if share > 0.99 else f"{100 * share:.0f} %"
+
+
+def told(found: Mapping[Hashable, float], words: Mapping[Hashable, str]) -> str:
+    """Shares in a sentence, the leading answer first: ``92 % of the evidence is for A, 7 % for B``."""
+    items = list(found.items())
+    text = f"{per_cent(items[0][1])} of the evidence is for {words[items[0][0]]}"
+    if len(items) > 1:
+        rest = max(items[1:], key=lambda item: item[1])
+        text += f", {per_cent(rest[1])} for {words[rest[0]]}"
+    return text

@@ -1,0 +1,74 @@
+"""Rung 4: does the spread grow with the level?"""
+
+from __future__ import annotations
+
+import math
+
+from preflight_magic.model import Evidence, Judgement, Log, TimeSeries
+from preflight_magic.policy import Thresholds
+from preflight_magic.rungs.contract import Context, Rung
+
+METHOD = (
+    "The series and its logarithm are each described by a line, a seasonal pattern and three lags, and their "
+    "likelihoods are compared with the Jacobian of the logarithm, so that both speak of the original values. A log "
+    "needs clear evidence, since it changes what the forecast minimises."
+)
+
+
+def examine(series: TimeSeries, context: Context) -> Evidence:
+    """Gain of the log.
+
+    Parameters
+    ----------
+    series : TimeSeries
+    context : Context
+
+    Returns
+    -------
+    Evidence
+        Measures `log_gain` (fall of -2 log likelihood), `smallest` value.
+    """
+    if context.comparison is None:
+        return Evidence(problem="no plan could be computed, so the log could not be compared either.")
+    return Evidence({"log_gain": context.comparison.log_gain, "smallest": float(series.values.min())})
+
+
+def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
+    """A log where its gain passes the margin; inconclusive close to it."""
+    if evidence.problem is not None:
+        return Judgement("inconclusive", "spread not examined", evidence.problem.capitalize())
+    gain, smallest = evidence.measures["log_gain"], evidence.measures["smallest"]
+    assert isinstance(gain, float)
+    assert isinstance(smallest, float)
+    margin = thresholds.log_margin
+    if smallest <= 0:
+        seen = "zero" if smallest == 0 else "negative"
+        return Judgement("clear", "as given", f"The smallest value is {seen}, so no logarithm can be taken.")
+    if math.isnan(gain):
+        return Judgement("clear", "as given", "Too few values, or too regular ones, to tell whether a log would help.")
+    told = f"the log lowers -2 log likelihood by {gain:.1f}" if gain >= 0 else f"the log costs {-gain:.1f} in -2 log likelihood"
+    even = abs(gain - margin) < thresholds.log_even
+    if gain > margin:
+        headline = "the spread grows with the level"
+        reason = f"Jacobian included, {told}; more than {margin:g} speaks for it."
+        return Judgement("inconclusive" if even else "transform", headline, _even(reason, even), (Log(),))
+    headline = "the spread does not follow the level"
+    reason = f"Jacobian included, {told}; a log needs more than {margin:g}."
+    return Judgement("inconclusive" if even else "clear", headline, _even(reason, even))
+
+
+def _even(reason: str, even: bool) -> str:
+    return f"{reason} That is too close to call: compare forecasts with and without the log." if even else reason
+
+
+RUNG = Rung(
+    name="spread",
+    question="Does the spread grow with the level?",
+    after=("values",),
+    method=METHOD,
+    sources=(
+        "Box and Cox (1964), An analysis of transformations, Journal of the Royal Statistical Society B 26, 211-252",
+    ),
+    examine=examine,
+    judge=judge,
+)

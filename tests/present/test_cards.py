@@ -1,0 +1,109 @@
+"""What cards hold."""
+
+from dataclasses import replace
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.model import Difference, FillGaps, Log, RemoveTrend
+from preflight_magic.plan.plan import Plan
+from preflight_magic.present import make_cards
+from tests.present.fakes import FakeReport, FakeSeries
+
+
+def test_card_of_a_series() -> None:
+    card = make_cards.card(FakeSeries())
+    assert card.span == "120 months, 2014-05 to 2024-04, 2 missing"
+    assert [mark.text for mark in card.steps] == ["log", "difference 12", "difference 1"]
+    assert not card.switched
+    assert [rung.position for rung in card.rungs] == list(range(1, 11))
+    assert card.rungs[3].steps == ("log",)
+    assert card.rungs[6].tests[1].p == "at most 0.010"
+    assert card.picture is not None
+    assert card.picture.period == 12
+    assert len(card.picture.correlogram_before) == 25
+    assert card.roots is not None
+    assert ("half-life", "1.45 months") in card.roots.notes
+    assert [row.cost for row in card.plans] == ["best", "1.4 worse, nearly even", "8.2 worse"]
+    assert [row.shown for row in card.plans] == [True, False, False]
+    assert card.code is not None
+    assert card.code.startswith("import numpy")
+
+
+def test_roots_of_one_seasonal_polynomial_share_a_row() -> None:
+    card = make_cards.card(FakeSeries())
+    assert card.rungs[7].measures[:4] == (
+        ("AR root", "0.62 ± 0.22, no cycle"),
+        ("AR root", "0.8 ± 0.14, a cycle of 5.3 months"),
+        ("MA root", "0.41, a cycle of 2 months"),
+        ("MA seasonal roots", "0.95 ± 0.04, 7 roots at the seasonal frequencies"),
+    )
+
+
+def test_switched_steps_are_told_from_the_recommendation() -> None:
+    view = FakeSeries()
+    marks = make_cards.card(view.leave_out(Difference(12))).steps
+    assert [(m.text, m.state) for m in marks] == [
+        ("log", "kept"),
+        ("difference 12", "left out"),
+        ("difference 1", "kept"),
+    ]
+    marks = make_cards.card(view.put_in(Difference(1)).put_in(RemoveTrend())).steps
+    assert [(m.text, m.state) for m in marks] == [
+        ("log", "kept"),
+        ("difference 12", "kept"),
+        ("difference 1", "kept"),
+        ("difference 1", "put in"),
+        ("remove trend", "put in"),
+    ]
+
+
+def test_step_put_in_before_the_others_stands_before_them() -> None:
+    view = FakeSeries(plan=Plan((), (Log(), Difference(1))), recommended=Plan((), (Difference(1),)))
+    assert [(m.text, m.state) for m in make_cards.card(view).steps] == [("log", "put in"), ("difference 1", "kept")]
+
+
+def test_changed_findings_say_what_they_were() -> None:
+    view = FakeSeries()
+    card = make_cards.card(view.leave_out(Log()), view)
+    assert card.switched
+    assert card.rungs[3].before == "◆ transform: Take logs"
+    assert [rung.position for rung in card.rungs if rung.before] == [4]
+
+
+def test_repairs_are_told() -> None:
+    card = make_cards.card(
+        FakeSeries(plan=Plan((FillGaps(12),), (Log(),)), recommended=Plan((FillGaps(12),), (Log(),)))
+    )
+    assert [mark.text for mark in card.repairs] == ["fill gaps 12"]
+
+
+def test_infeasible_series_has_a_reason_and_no_code() -> None:
+    view = FakeSeries(problem="Column 'passengers' is constant.", verdict="infeasible", plan=Plan(), recommended=Plan())
+    card = make_cards.card(view)
+    assert card.problem == "Column 'passengers' is constant."
+    assert card.code is None
+    assert card.rungs == ()
+    assert card.picture is not None
+    assert card.picture.correlogram_after is None
+    empty = replace(view, series=pd.Series([], dtype=float, index=pd.RangeIndex(0)))
+    assert make_cards.card(empty).picture is None
+    assert make_cards.card(empty).span == "no values"
+
+
+def test_code_that_cannot_be_proved_is_shown_as_a_fault() -> None:
+    card = make_cards.card(FakeSeries(failing={"code": RuntimeError("differs at 2020-03")}))
+    assert card.code is None
+    assert card.code_problem == ("The code could not be proved, which is a fault of this program: differs at 2020-03")
+
+
+def test_overview() -> None:
+    one, two = FakeSeries(), FakeSeries(name=("a", 1), verdict="infeasible", problem="No values.", plan=Plan())
+    card = make_cards.overview(FakeReport(one, two))
+    assert card.summary == "2 series: 1 ◆ transform, 1 ■ infeasible"
+    assert [row.plan for row in card.rows] == ["log, difference 12, difference 1", "–"]
+    assert [row.note for row in card.rows] == ["", "No values."]
+    assert np.array_equal(card.rows[0].values, one.series.to_numpy(), equal_nan=True)
+    many = make_cards.overview(FakeReport(*(FakeSeries(name=i) for i in range(100))))
+    assert len(many.rows) == 60
+    assert many.left_out == 40

@@ -1,0 +1,180 @@
+"""Pictures are PNG of the expected size, told in numbers beside them, and cheap."""
+
+import struct
+import subprocess
+import sys
+import time
+import zlib
+from dataclasses import replace
+
+import numpy as np
+import pandas as pd
+import pytest
+
+from preflight_magic.model import Difference, Log, RemoveShift, Root
+from preflight_magic.plan.plan import Plan
+from preflight_magic.present import make_cards
+from preflight_magic.present.alt import before_after_alt, roots_alt, spark_alt
+from preflight_magic.present.cards import Picture, RootsPicture
+from preflight_magic.present.figures import before_after, sparklines
+from preflight_magic.present.roots_figure import roots_strip
+from tests.present.fakes import FakeReport, FakeSeries, roots, values
+
+
+def size(png: bytes) -> tuple[int, int]:
+    assert png.startswith(b"\x89PNG\r\n\x1a\n")
+    return struct.unpack(">II", png[16:24])
+
+
+def dots(png: bytes) -> np.ndarray:
+    """Ink of a picture: opacity of each dot, in [0, 255]."""
+    import io
+
+    from PIL import Image
+
+    with Image.open(io.BytesIO(png)) as image:
+        assert image.mode == "LA"
+        return np.asarray(image)[..., 1]
+
+
+@pytest.fixture
+def picture() -> Picture:
+    made = make_cards.card(FakeSeries()).picture
+    assert made is not None
+    return made
+
+
+@pytest.fixture
+def strip() -> RootsPicture:
+    made = make_cards.card(FakeSeries()).roots
+    assert made is not None
+    return made
+
+
+def test_first_picture(picture: Picture) -> None:
+    png = before_after(picture)
+    assert size(png) == (1065, 432)
+    ink = dots(png)
+    assert ink[:3].max() == 0, "nothing touches the upper edge"
+    assert (ink == 0).mean() > 0.8, "the background is transparent"
+    assert (ink[:, 720:] > 0).any(), "the correlogram stands at the right"
+
+
+def test_picture_without_steps_has_one_panel() -> None:
+    picture = make_cards.card(FakeSeries(plan=Plan(), recommended=Plan())).picture
+    assert picture is not None
+    assert picture.after is None
+    assert size(before_after(picture)) == (1065, 316)
+
+
+def test_picture_of_a_series_that_cannot_be_checked() -> None:
+    view = FakeSeries(problem="Column 'passengers' is constant.", verdict="infeasible", plan=Plan(), recommended=Plan())
+    picture = make_cards.card(view).picture
+    assert picture is not None
+    assert size(before_after(picture)) == (1065, 316)
+    assert before_after_alt(picture).startswith("Series as given, 120 months")
+
+
+@pytest.mark.parametrize(
+    "series",
+    [
+        pd.Series([5.0] * 30, index=pd.RangeIndex(30)),
+        pd.Series([1.0, np.nan, 3.0, np.nan, 5.0] * 8, index=pd.date_range("2020-01-01", periods=40, freq="D")),
+        pd.Series([1e300, -1e300] * 10, index=pd.period_range("1700", periods=20, freq="Y")),
+    ],
+)
+def test_odd_series_can_be_drawn(series: pd.Series) -> None:
+    empty = np.empty(0)
+    assert size(before_after(Picture(series, None, empty, None, np.nan, 1, (), "step", ""))) == (1065, 316)
+
+
+def test_shift_is_marked(picture: Picture) -> None:
+    marked = replace(picture, shifts=(picture.before.index[60],))
+    assert not np.array_equal(dots(before_after(picture)), dots(before_after(marked)))
+
+
+def test_roots_strip(strip: RootsPicture) -> None:
+    png = roots_strip(strip)
+    assert size(png) == (1065, 273)
+    fewer = roots_strip(replace(strip, roots=strip.roots[:1]))
+    assert (dots(png) > 0).sum() > (dots(fewer) > 0).sum()
+
+
+@pytest.mark.parametrize(
+    "many", [(), (Root("AR", 1.3, np.inf, 0.1),), (Root("MA", 0.2, 365.25, np.inf), Root("AR", np.nan, 2.0, np.nan))]
+)
+def test_any_roots_can_be_drawn(strip: RootsPicture, many: tuple[Root, ...]) -> None:
+    assert size(roots_strip(replace(strip, roots=many))) == (1065, 273)
+
+
+def test_alt_texts_tell_the_numbers(picture: Picture, strip: RootsPicture) -> None:
+    told = before_after_alt(picture)
+    assert "120 months from 2014-05 to 2024-04" in told
+    assert "2 values missing" in told
+    least, greatest = values().min(), values().max()
+    assert f"least {least:,.0f}, greatest {greatest:,.0f}" in told
+    assert f"as given largest {picture.correlogram_before[0]:.2f} at lag 1" in told
+    assert picture.correlogram_after is not None
+    outside = int((np.abs(picture.correlogram_after) > picture.band).sum())
+    assert f"{outside} of 25 lags outside the band of ±0.2" in told
+    assert roots_alt(strip) == (
+        "Inverse roots of ARMA(1,1)(0,1) at 12. 2 AR roots, largest modulus 0.8 ± 0.14, a cycle of 5.3 months. "
+        "8 MA roots, largest modulus 0.95 ± 0.04, no cycle."
+    )
+
+
+def test_small_pictures() -> None:
+    rng = np.random.default_rng(5)
+    many = [values().to_numpy(), np.full(9, 2.0), np.array([np.nan, 1.0]), rng.normal(size=9000)]
+    made = sparklines(many)
+    assert [size(png) for png in made] == [(180, 42)] * 4
+    inked = [(dots(png) > 0).sum() for png in made]
+    assert inked[0] > 200
+    assert inked[1] > 100
+    assert inked[2] == 0
+    assert len(sparklines([np.arange(9.0)] * 205)) == 205
+    row = make_cards.overview(FakeReport(FakeSeries())).rows[0]
+    assert spark_alt(row).startswith("120 months, 2014-05 to 2024-04, 2 missing: from ")
+
+
+def test_small_pictures_do_not_run_into_each_other() -> None:
+    rising, falling = np.arange(50.0), -np.arange(50.0)
+    together, apart = sparklines([rising, falling, rising]), sparklines([falling])
+    first, second, third = (dots(png).astype(int) for png in together)
+    assert np.abs(first - third).max() <= 4, "but for rounding, where a picture stood does not matter"
+    assert np.abs(second - dots(apart[0])).max() <= 4
+    assert np.abs(first - second).max() > 100
+
+
+def test_first_picture_is_fast(picture: Picture) -> None:
+    before_after(picture)
+    took = []
+    for _ in range(5):
+        start = time.perf_counter()
+        before_after(picture)
+        took.append(time.perf_counter() - start)
+    assert min(took) < 0.15
+
+
+def test_pyplot_is_not_loaded() -> None:
+    code = (
+        "import sys; from tests.present.fakes import FakeSeries; from preflight_magic.present import html, make_cards; "
+        "assert 'matplotlib' not in sys.modules; html.card_html(make_cards.card(FakeSeries())); "
+        "assert 'matplotlib.figure' in sys.modules; assert 'matplotlib.pyplot' not in sys.modules"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+
+
+def test_png_is_whole(picture: Picture) -> None:
+    png = before_after(picture)
+    assert png.endswith(b"IEND" + struct.pack(">I", zlib.crc32(b"IEND")))
+
+
+def test_shift_step_is_found_in_the_plan() -> None:
+    at = values().index[60]
+    view = FakeSeries(plan=Plan((), (Log(), Difference(1), RemoveShift(at))))
+    picture = make_cards.card(view).picture
+    assert picture is not None
+    assert picture.shifts == (at,)
+    assert len(roots()) == 10

@@ -19,7 +19,8 @@ if TYPE_CHECKING:
     from preflight_magic import demo
     from preflight_magic.batch import check, stream
     from preflight_magic.plan.plan import Plan
-    from preflight_magic.report import Report, SeriesReport
+    from preflight_magic.report import Report
+    from preflight_magic.series_report import SeriesReport
 
 __version__ = "0.1.0"
 __all__ = ["CheckError", "Plan", "Report", "SeriesReport", "check", "demo", "stream"]
@@ -30,7 +31,7 @@ _HOMES = {
     "stream": "preflight_magic.batch",
     "Plan": "preflight_magic.plan.plan",
     "Report": "preflight_magic.report",
-    "SeriesReport": "preflight_magic.report",
+    "SeriesReport": "preflight_magic.series_report",
 }
 _STEPS = ("PerDay", "Log", "Power", "Logit", "Difference", "RemoveTrend", "RemoveShift", "RemovePattern")
 

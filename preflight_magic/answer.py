@@ -9,7 +9,6 @@ from preflight_magic.model import Finding, Verdict
 from preflight_magic.plan.plan import Plan
 
 
-
 def answer_of(
     verdict: Verdict, plan: Plan, recommended: Plan, findings: Mapping[str, Finding], problem: str | None
 ) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import operator
 from collections import OrderedDict
-from collections.abc import Callable, Hashable, Iterable, Iterator, Sequence
+from collections.abc import Hashable, Iterable, Iterator, Sequence
 from concurrent.futures import Executor
 from typing import Any
 
@@ -16,7 +16,8 @@ from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
 from preflight_magic.progress import Progress, follow
-from preflight_magic.report import Report, SeriesReport
+from preflight_magic.report import Report
+from preflight_magic.series_report import SeriesReport
 
 CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
@@ -95,12 +96,12 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     SeriesReport
         In the order of the table.
     """
-    given = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
+    given: dict[str, Any] = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
     given |= {"exclude": None, "repair": True, "cache": True, "pool": None, "progress": None, "significance": 0.05}
     unknown = sorted(options.keys() - given.keys())
     if unknown:
         raise TypeError(f"stream() has no option {', '.join(unknown)}")
-    o: dict[str, Any] = given | options
+    o = given | options
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
     settings = _settings(o["season"], o["horizon"], o["significance"])
     return follow(_stream(every, settings, o["cache"], o["pool"]), len(every), o["progress"])
@@ -109,9 +110,7 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
 def _read(
     frame: Any, season: Any, time: Any, series: Any, value: Any, only: Any, exclude: Any, repair: Any
 ) -> tuple[TimeSeries, ...]:
-    return read(
-        frame, season=season, time=time, series=series, value=value, only=only, exclude=exclude, repair=repair
-    )
+    return read(frame, season=season, time=time, series=series, value=value, only=only, exclude=exclude, repair=repair)
 
 
 def _settings(season: Any, horizon: Any, significance: Any) -> Settings:

@@ -21,7 +21,6 @@ from preflight_magic.model import (
     Evidence,
     Finding,
     Judgement,
-    Step,
     TimeSeries,
     Verdict,
 )

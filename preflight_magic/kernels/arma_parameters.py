@@ -90,7 +90,8 @@ def free_parameters(order: Order, values: Array, limit: float = 0.999) -> Array:
     """Unconstrained numbers from coefficients, with partial autocorrelations held within `limit`."""
     ar, ma, sar, sma = split(order, values)
     partial = np.concatenate([to_partial(ar), -to_partial(-ma), to_partial(sar), -to_partial(-sma)])
-    return np.arctanh(np.clip(np.nan_to_num(partial, posinf=limit, neginf=-limit), -limit, limit))
+    held = np.clip(np.nan_to_num(partial, posinf=limit, neginf=-limit), -limit, limit)
+    return np.asarray(np.arctanh(held), dtype=float)
 
 
 def polynomials(order: Order, values: Array) -> tuple[Array, Array]:

@@ -9,7 +9,7 @@ from scipy.optimize import leastsq
 
 from preflight_magic.kernels.arma_parameters import Order, coefficients, free_parameters, polynomials
 from preflight_magic.kernels.restricted_likelihood import Array, Contrasts, evaluate
-from preflight_magic.kernels.whiten import NotPositiveDefinite
+from preflight_magic.kernels.whiten import NotPositiveDefiniteError
 
 EDGE = 4.0
 """Unconstrained parameters stay within this bound: tanh(4) = 0.9993 is as near the circle as a search goes."""
@@ -98,7 +98,7 @@ def fit(view: Contrasts, order: Order, seasonal_start: float = -0.5) -> Fitted |
         free = free_parameters(order, np.array([*start, *[seasonal_start] * (order.P + order.Q)]))
         try:
             value, height, _ = at(free)
-        except NotPositiveDefinite:
+        except NotPositiveDefiniteError:
             continue
         if best is None or height > best[1]:
             best = (value, height, free)
@@ -112,21 +112,19 @@ def fit(view: Contrasts, order: Order, seasonal_start: float = -0.5) -> Fitted |
     def residuals(point: Array) -> Array:
         try:
             return at(point)[2]
-        except NotPositiveDefinite:
+        except NotPositiveDefiniteError:
             return far
 
     # A relative change of 2e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
-    found = leastsq(
-        residuals, free, ftol=2e-5, xtol=1e-3, epsfcn=1e-10, maxfev=12 * (order.size + 1), full_output=True
-    )
-    curvature = m * np.eye(order.size)
+    found = leastsq(residuals, free, ftol=2e-5, xtol=1e-3, epsfcn=1e-10, maxfev=12 * (order.size + 1), full_output=True)
+    curvature: Array = m * np.eye(order.size)
     try:
         value_there, height_there, scaled = at(found[0])
         if height_there >= height:
             value, height, free = value_there, height_there, np.asarray(found[0], dtype=float)
             if found[1] is not None:
-                curvature = m / float(scaled @ scaled) * np.linalg.pinv(found[1])
-    except NotPositiveDefinite:
+                curvature = np.asarray(m / float(scaled @ scaled) * np.linalg.pinv(found[1]), dtype=float)
+    except NotPositiveDefiniteError:
         pass
     precision = curvature + np.diag(width**-2.0)
     evidence = height - float(np.log(width).sum()) - 0.5 * float(np.linalg.slogdet(precision)[1])

@@ -28,7 +28,6 @@ from preflight_magic.kernels.restricted_likelihood import (
 )
 from preflight_magic.kernels.seasonal_presence import Presence, season_presence
 
-
 _LOG_2PI = float(np.log(2.0 * np.pi))
 _SHORTEST_WITH_SHIFT = 24
 """Fewest observed values in which a level shift is looked for. Common practice: a dozen on each side."""
@@ -192,7 +191,8 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
 def _cycles(values: Array, period: int) -> bool:
     """Enough cycles to speak of a season: two and a half, and every position seen."""
     seen = np.isfinite(values)
-    return len(values) >= 2.5 * period and bool(np.bincount(np.arange(len(values))[seen] % period, minlength=period).all())
+    position = np.flatnonzero(seen) % period
+    return len(values) >= 2.5 * period and bool(np.bincount(position, minlength=period).all())
 
 
 def _spread_of_changes(filled: Array, period: int) -> float:
@@ -242,7 +242,8 @@ def _candidate(subject: _Subject, d: int, D: int, trend: bool, dated: DatedShift
         base.append(line_column(n)[:, None])
     if dated is not None:
         # unit information (Kass and Wasserman 1995): as much as one observation tells
-        evidence -= _log_size(step, base) + 0.5 * _LOG_2PI + 0.5 * float(np.log(view.count)) + float(np.log(deviations[-1]))
+        width = float(np.sqrt(view.count) * deviations[-1])
+        evidence -= _log_size(step, base) + 0.5 * _LOG_2PI + float(np.log(width))
         evidence -= prior.shift + float(np.log(n))
     evidence -= prior.trend * free_trend + prior.second * (d + D == 2) + prior.wandering * D
     place = 0 if d + D else 1

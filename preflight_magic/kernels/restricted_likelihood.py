@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.linalg.lapack import dpotrf, dpotrs
 
-from preflight_magic.kernels.whiten import NotPositiveDefinite, whiten
+from preflight_magic.kernels.whiten import NotPositiveDefiniteError, whiten
 
 Array = NDArray[np.float64]
 
@@ -114,7 +114,8 @@ def contrasts(levels: Levels, d: int, D: int) -> Contrasts | None:
     Returns
     -------
     Contrasts or None
-        None where too few rows remain or the regressors repeat each other. The constant is ``1/2 log|L L'| + 1/2 log|X'(L L')^-1 X|`` for the differencing filter L and the remaining
+        None where too few rows remain or the regressors repeat each other. The constant is
+        ``1/2 log|L L'| + 1/2 log|X'(L L')^-1 X|`` for the differencing filter L and the remaining
         regressors X, found from the columns that the filter annihilates: for N spanning its null space,
         ``|L L'| = |N'N| / |N_r|^2`` with N_r the first r rows, and ``X_2' L'(L L')^-1 L X_2 = X_2'(I - P_N) X_2``.
     """
@@ -147,7 +148,7 @@ def contrasts(levels: Levels, d: int, D: int) -> Contrasts | None:
         size = np.abs(rotation.diagonal())
         if size.min() < 1e-9 * size.max():
             return None
-        jacobian += float(np.log(np.abs(np.linalg.qr(residual, mode="r").diagonal())).sum())
+        jacobian += float(np.log(np.abs(np.diag(np.asarray(np.linalg.qr(residual, mode="r"))))).sum())
         jacobian -= float(np.log(size).sum())
     return Contrasts(
         stacked=np.asfortranarray(np.column_stack([stacked[:, 0], q2])),
@@ -175,7 +176,7 @@ def evaluate(view: Contrasts, ar: Array, ma: Array) -> tuple[float, Array]:
 
     Raises
     ------
-    NotPositiveDefinite
+    NotPositiveDefiniteError
         At parameters on the boundary.
     """
     whitened, log_determinant = whiten(ar, ma, view.stacked)
@@ -183,7 +184,7 @@ def evaluate(view: Contrasts, ar: Array, ma: Array) -> tuple[float, Array]:
     if regressors.shape[1]:
         factor, info = dpotrf(regressors.T @ regressors, lower=1)
         if info != 0:
-            raise NotPositiveDefinite
+            raise NotPositiveDefiniteError
         effects = dpotrs(factor, regressors.T @ series, lower=1)[0]
         series = series - regressors @ effects
         log_determinant += 2.0 * float(np.log(factor.diagonal()).sum())

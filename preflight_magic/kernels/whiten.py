@@ -16,7 +16,7 @@ from scipy.linalg.lapack import dgesv, dpbtrf, dtbtrs
 Array = NDArray[np.float64]
 
 
-class NotPositiveDefinite(ArithmeticError):
+class NotPositiveDefiniteError(ArithmeticError):
     """The covariance is singular to working precision: the parameters lie on the boundary."""
 
 
@@ -60,7 +60,7 @@ def autocovariances(ar: Array, ma: Array) -> Array:
 
     Raises
     ------
-    NotPositiveDefinite
+    NotPositiveDefiniteError
         When the AR polynomial has a root on the circle.
 
     Notes
@@ -93,13 +93,13 @@ def _autocovariances(ar: Array, cross: Array) -> Array:
         first, second = right.tolist()
         rest = 1.0 - phi * phi
         if rest <= 0.0:
-            raise NotPositiveDefinite
+            raise NotPositiveDefiniteError
         return np.array([first + phi * second, second + phi * first]) / rest
     rows, lags, terms = _autocovariance_indices(p)
     matrix = np.bincount(rows * (p + 1) + lags, ar[terms], (p + 1) ** 2).reshape(p + 1, p + 1)
     _, _, solution, info = dgesv(matrix, right)
     if info != 0:
-        raise NotPositiveDefinite
+        raise NotPositiveDefiniteError
     return np.asarray(solution, dtype=float)
 
 
@@ -131,7 +131,7 @@ def whiten(ar: Array, ma: Array, values: Array) -> tuple[Array, float]:
 
     Raises
     ------
-    NotPositiveDefinite
+    NotPositiveDefiniteError
         When the AR polynomial has a root on the circle, or the matrix is singular to working precision.
 
     Notes
@@ -144,7 +144,7 @@ def whiten(ar: Array, ma: Array, values: Array) -> tuple[Array, float]:
     if p == 0 and q == 0:
         return values, 0.0
     if p >= n:
-        raise NotPositiveDefinite
+        raise NotPositiveDefiniteError
     rotated = _filter(ar, values) if p else values
     cross = _cross(ar, ma) if p else None
     gamma = _autocovariances(ar, cross) if cross is not None else None
@@ -154,16 +154,16 @@ def whiten(ar: Array, ma: Array, values: Array) -> tuple[Array, float]:
         try:
             factor = np.linalg.cholesky(block)
         except np.linalg.LinAlgError as error:
-            raise NotPositiveDefinite from error
+            raise NotPositiveDefiniteError from error
         rotated[:p] = solve_triangular(factor, rotated[:p], lower=True, check_finite=False)
         return rotated, 2.0 * float(np.log(factor.diagonal()).sum())
     band = _band(ma, n, p, gamma, cross)
     factor, info = dpbtrf(band, lower=1, overwrite_ab=1)
     if info != 0:
-        raise NotPositiveDefinite
+        raise NotPositiveDefiniteError
     whitened, info = dtbtrs(factor, rotated, uplo="L")
     if info != 0:
-        raise NotPositiveDefinite
+        raise NotPositiveDefiniteError
     return whitened, 2.0 * float(np.log(factor[0]).sum())
 
 

@@ -35,6 +35,8 @@ def fill_gaps(x: pd.Series, history: pd.Series, period: int) -> pd.Series:
     -------
     Series, shape (n,)
     """
+    if not x.isna().any():
+        return x
     known = history.reindex(x.index)
     seasonal = period > 1 and history.count() >= 2 * period
     pattern = _mean_pattern(known, period) if seasonal else np.zeros(len(x))

@@ -111,7 +111,7 @@ def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
     sheet.side(panel, [-1, 0, 1], [f"{words.MINUS}1", "0", "1"])
     sheet.base(panel, ticks, [str(t) for t in ticks])
     sheet.words(panel.left, panel.top + 0.09, "correlogram", TITLE)
-    sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95 % band", color=FAINT)
+    sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95% band", color=FAINT)
 
 
 def _key(sheet: Sheet, panel: Panel) -> None:

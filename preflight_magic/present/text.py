@@ -24,7 +24,7 @@ def wrap(text: str, width: int, first: str = "", rest: str | None = None) -> lis
     rest = " " * words.width_of(first) if rest is None else rest
     lines: list[str] = []
     line, empty = first, True
-    for word in filter(None, text.split(" ")):  # a no-break space holds
+    for word in text.split():
         pieces = _break(word, max(1, width - words.width_of(rest)))
         for piece in pieces:
             gap = "" if empty else " "

@@ -87,12 +87,15 @@ def number(value: float, digits: int = 3) -> str:
     sign = MINUS if value < 0 else ""
     if not 1e-4 <= size < 1e9:
         mantissa, exponent = f"{size:.{digits - 1}e}".split("e")
-        return f"{sign}{mantissa}e{int(exponent)}".replace("e-", f"e{MINUS}")
+        return f"{sign}{_short(mantissa, size / 10.0 ** int(exponent))}e{int(exponent)}".replace("e-", f"e{MINUS}")
     decimals = max(0, digits - 1 - math.floor(math.log10(float(f"{size:.{digits - 1}e}"))))
-    told = f"{size:,.{decimals}f}"
-    if decimals and math.isclose(float(told.replace(",", "")), size, rel_tol=1e-12):
-        told = told.rstrip("0").rstrip(".")  # zeros would claim digits that were rounded
-    return f"{sign}{told}"
+    return f"{sign}{_short(f'{size:,.{decimals}f}', size)}"
+
+
+def _short(told: str, value: float) -> str:
+    """Without zeros at the end where nothing was rounded: they would claim digits that are not there."""
+    exact = "." in told and math.isclose(float(told.replace(",", "")), value, rel_tol=1e-12)
+    return told.rstrip("0").rstrip(".") if exact else told
 
 
 def p_value(value: float, bound: str = "exact") -> str:
@@ -109,8 +112,8 @@ def p_value(value: float, bound: str = "exact") -> str:
 
 
 def share(value: float) -> str:
-    """Share as percent: ``2.5 %``."""
-    return f"{number(100 * value, 2)} %"
+    """Share as percent: ``2.5%``."""
+    return f"{number(100 * value, 2)}%"
 
 
 def plural(noun: str, count: float = 2) -> str:
@@ -200,14 +203,10 @@ def test_details(test: HypothesisTest) -> str:
     parts.append(TERMS[test.terms])
     parts.append(f"{test.nobs:,} observations")
     if test.critical_values:
-        values = ", ".join(f"{_level(level)} {number(v)}" for level, v in test.critical_values.items())
+        values = ", ".join(f"{level} {number(v)}" for level, v in test.critical_values.items())
         parts.append(f"critical values {values}")
     parts.extend(f"{label_text(key)} {value_text(value)}" for key, value in options.items())
     return "; ".join(plain(part) for part in parts)
-
-
-def _level(level: str) -> str:
-    return level.replace("%", "\u00a0%") if level.endswith("%") and not level.endswith(" %") else level
 
 
 def label_text(key: str) -> str:

@@ -99,7 +99,8 @@ RUNG = Rung(
     after=("shift and trend",),
     method=METHOD,
     sources=(
-        "Harville (1974), Bayesian inference for variance components using only error contrasts, Biometrika 61, 383-385",
+        "Harville (1974), Bayesian inference for variance components using only error contrasts, "
+        "Biometrika 61, 383-385",
         "Kass and Raftery (1995), Bayes factors, Journal of the American Statistical Association 90, 773-795",
     ),
     examine=examine,

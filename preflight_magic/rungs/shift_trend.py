@@ -8,7 +8,7 @@ from typing import cast
 import pandas as pd
 
 from preflight_magic.kernels.plan_likelihood import Candidate
-from preflight_magic.model import Evidence, Judgement, RemoveShift, RemoveTrend, Step, TimeSeries
+from preflight_magic.model import Evidence, Judgement, RemoveShift, RemoveTrend, Step, TimeSeries, Verdict
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.rungs.shares import shares, told
@@ -105,7 +105,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     if even:
         reason += " That is too even to call."
     headline = " and ".join(heads) or ("nothing to remove" if trend == "second" else "no trend, no level shift")
-    verdict = "inconclusive" if even else "transform" if steps else "clear"
+    verdict: Verdict = "inconclusive" if even else "transform" if steps else "clear"
     return Judgement(verdict, headline, reason.strip(), tuple(steps))
 
 

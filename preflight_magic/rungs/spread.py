@@ -46,7 +46,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         return Judgement("clear", "as given", f"The smallest value is {seen}, so no logarithm can be taken.")
     if math.isnan(gain):
         return Judgement("clear", "as given", "Too few values, or too regular ones, to tell whether a log would help.")
-    told = f"the log lowers -2 log likelihood by {gain:.1f}" if gain >= 0 else f"the log costs {-gain:.1f} in -2 log likelihood"
+    told = f"the log {'lowers' if gain >= 0 else 'raises'} -2 log likelihood by {abs(gain):.1f}"
     even = abs(gain - margin) < thresholds.log_even
     if gain > margin:
         headline = "the spread grows with the level"

@@ -11,15 +11,24 @@ from numpy.typing import NDArray
 
 from preflight_magic.kernels.restricted_likelihood import difference, pattern_columns
 from preflight_magic.kernels.unit_root import adf, kpss
-from preflight_magic.model import Difference, Evidence, HypothesisTest, Judgement, Log, RemovePattern, TimeSeries
+from preflight_magic.model import (
+    Difference,
+    Evidence,
+    HypothesisTest,
+    Judgement,
+    Log,
+    RemovePattern,
+    TimeSeries,
+    Verdict,
+)
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.rungs.shares import shares, told
 
 METHOD = (
     "Plans with no, one and two differences are models of the same contrasts of the data, so their restricted "
-    "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF (null: a unit root) and "
-    "KPSS (null: stationary) are shown beside it: with a moving average near -1 ADF rejects too often, with strong "
+    "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF (null: a unit root) "
+    "and KPSS (null: stationary) are shown beside it: with a moving average near -1 ADF rejects too often, with strong "
     "dependence KPSS does, and neither can tell a root of 0.95 from one in a hundred values."
 )
 
@@ -129,7 +138,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         )
     beside = _beside(evidence.tests, d, thresholds.significance)
     steps = tuple(Difference(1) for _ in range(d))
-    verdict = "inconclusive" if even else "transform" if d else "clear"
+    verdict: Verdict = "inconclusive" if even else "transform" if d else "clear"
     return Judgement(verdict, _HEADLINES[d], f"{reason} {beside}".strip(), steps)
 
 
@@ -153,8 +162,8 @@ def _beside(tests: tuple[HypothesisTest, ...], d: int, significance: float) -> s
         return f"{text}: {why}."
     if rejects_root == (d == 0):
         return f"{text}: they agree with it."
-    why = "too many rejections of ADF with a moving average near -1, or a break" if d else "the low power of ADF near one"
-    return f"{text}: they differ from it; a known reason is {why}."
+    why = "a moving average near -1, where ADF rejects too often" if d else "a break, or the low power of ADF near one"
+    return f"{text}: they differ from it; known reasons are {why}."
 
 
 def _does(rejects: bool) -> str:
@@ -172,7 +181,8 @@ RUNG = Rung(
     after=("season",),
     method=METHOD,
     sources=(
-        "Harville (1974), Bayesian inference for variance components using only error contrasts, Biometrika 61, 383-385",
+        "Harville (1974), Bayesian inference for variance components using only error contrasts, "
+        "Biometrika 61, 383-385",
         "Said and Dickey (1984), Testing for unit roots in autoregressive-moving average models of unknown order, "
         "Biometrika 71, 599-607",
         "MacKinnon (1994), Approximate asymptotic distribution functions for unit-root and cointegration tests, "

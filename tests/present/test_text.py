@@ -46,5 +46,5 @@ def test_overview_lines_up() -> None:
     assert lines[1].index("verdict") == lines[2].index("◆") == lines[3].index("◆")
 
 
-def test_wrap_keeps_no_break_spaces() -> None:
-    assert text.wrap("critical 5\u00a0% value", 12) == ["critical", "5\u00a0% value"]
+def test_words_longer_than_a_line_are_broken() -> None:
+    assert text.wrap("a bcdefghij k", 4, "- ") == ["- a", "  bc", "  de", "  fg", "  hi", "  j", "  k"]

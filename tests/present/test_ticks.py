@@ -5,7 +5,6 @@ import pytest
 
 from preflight_magic.present import ticks
 
-
 HALF_YEARS = ["Jan 2015", "Jul 2015", "Jan 2016", "Jul 2016", "Jan 2017", "Jul 2017"]
 MONTHS = ["Feb 2021", "Mar 2021", "Apr 2021", "May 2021", "Jun 2021", "Jul 2021"]
 

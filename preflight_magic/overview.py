@@ -1,0 +1,44 @@
+"""The row of a series in the overview."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import pandas as pd
+
+from preflight_magic.answer import note_of
+from preflight_magic.model import Difference, Log, Power, RemovePattern, RemoveShift, RemoveTrend
+
+if TYPE_CHECKING:
+    from preflight_magic.series_report import SeriesReport
+
+
+def row_of(report: SeriesReport) -> dict[str, object]:
+    """Verdict, plan and their parts as the columns of the overview; NA throughout where infeasible."""
+    if report.problem is not None:
+        empty = dict.fromkeys(("log", "power", "trend", "shift", "season", "D", "d", "period", "n", "missing"), pd.NA)
+        return {"verdict": report.verdict, "plan": "", **empty, "note": report.problem}
+    steps = report.plan.steps
+    lags = [step.lag for step in steps if isinstance(step, Difference)]
+    period = report.season[0]
+    seasonal = sum(lag == period and lag > 1 for lag in lags)
+    pattern = any(isinstance(step, RemovePattern) for step in steps)
+    power = next((step.exponent for step in steps if isinstance(step, Power)), 0.0 if Log() in steps else 1.0)
+    trend = RemoveTrend() in steps
+    if len(lags) == 1:
+        trend = next(iter(report.findings["shift and trend"].measures.get("trend_shares", ())), "") == "trend"  # type: ignore[call-overload]
+    return {
+        "verdict": report.verdict,
+        "plan": str(report.plan),
+        "log": Log() in steps,
+        "power": power,
+        "trend": trend,
+        "shift": any(isinstance(step, RemoveShift) for step in steps),
+        "season": "difference" if seasonal else "fixed" if pattern else "none",
+        "D": seasonal,
+        "d": len(lags) - seasonal,
+        "period": period,
+        "n": int(report.series.notna().sum()),
+        "missing": int(report.series.isna().sum()),
+        "note": note_of(report.findings),
+    }

@@ -1,0 +1,200 @@
+"""A JupyterLab server of one's own and a notebook in a real browser."""
+
+from __future__ import annotations
+
+import json
+import os
+import shutil
+import socket
+import subprocess
+import sys
+import time
+import urllib.error
+import urllib.request
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
+from importlib.util import find_spec
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from playwright.sync_api import Browser, Locator, Page
+
+ROOT = Path(__file__).resolve().parents[2]
+FLAGS = [
+    "--headless",
+    "--no-sandbox",
+    "--disable-gpu",
+    "--disable-quic",
+    "--no-first-run",
+    "--disable-background-networking",
+    "--disable-component-update",
+    "--disable-sync",
+]
+_READY = """async () => {
+  const panel = window.jupyterapp.shell.currentWidget;
+  await panel.sessionContext.ready;
+  await panel.sessionContext.session.kernel.info;
+}"""
+_SETTINGS = {
+    "apputils-extension/notification.jupyterlab-settings": {"fetchNews": "false", "checkForUpdates": False},
+    "apputils-extension/themes.jupyterlab-settings": {"adaptive-theme": False},
+}
+
+
+def missing() -> str | None:
+    """The one command that would make these tests run here, or None where they can."""
+    if find_spec("playwright") is None or find_spec("jupyterlab") is None:
+        return 'pip install "preflight-magic[test]"'
+    return None if chromium() else "apt-get install chromium"
+
+
+def chromium() -> str | None:
+    """Path of the browser."""
+    return shutil.which("chromium") or shutil.which("chromium-browser")
+
+
+def free_port() -> int:
+    """A port that nobody listens on."""
+    with socket.socket() as held:
+        held.bind(("127.0.0.1", 0))
+        return int(held.getsockname()[1])
+
+
+@contextmanager
+def server(home: Path) -> Iterator[Lab]:
+    """JupyterLab with folders of its own under `home`, stopped at the end."""
+    notebooks = home / "notebooks"
+    notebooks.mkdir()
+    environment = dict(os.environ)
+    for name in ("CONFIG", "DATA", "RUNTIME"):
+        environment[f"JUPYTER_{name}_DIR"] = str(home / name.lower())
+    environment["JUPYTERLAB_SETTINGS_DIR"] = str(home / "settings")
+    environment["JUPYTERLAB_WORKSPACES_DIR"] = str(home / "workspaces")
+    environment["IPYTHONDIR"] = str(home / "ipython")
+    environment["PYTHONPATH"] = str(ROOT)
+    environment["OPENBLAS_NUM_THREADS"] = "1"
+    for name, content in _SETTINGS.items():
+        path = home / "settings" / "@jupyterlab" / name
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_text(json.dumps(content))
+    port = free_port()
+    command = [
+        *(sys.executable, "-m", "jupyterlab", "--no-browser", "--allow-root", "--ServerApp.ip=127.0.0.1"),
+        *(f"--ServerApp.port={port}", "--ServerApp.port_retries=0", "--IdentityProvider.token=", "--ServerApp.password="),
+        *(f"--ServerApp.root_dir={notebooks}", "--LabApp.expose_app_in_browser=True"),
+    ]
+    with (home / "server.log").open("w") as log:
+        process = subprocess.Popen(command, env=environment, cwd=home, stdout=log, stderr=subprocess.STDOUT)
+        try:
+            _wait_for(f"http://127.0.0.1:{port}/api/status", process, home / "server.log")
+            yield Lab(f"http://127.0.0.1:{port}", notebooks)
+        finally:
+            process.terminate()
+            try:
+                process.wait(20)
+            except subprocess.TimeoutExpired:
+                process.kill()
+                process.wait()
+
+
+def _wait_for(url: str, process: subprocess.Popen[bytes], log: Path, seconds: float = 60) -> None:
+    end = time.monotonic() + seconds
+    while time.monotonic() < end:
+        if process.poll() is not None:
+            break
+        try:
+            with urllib.request.urlopen(url, timeout=2):
+                return
+        except (urllib.error.URLError, ConnectionError, TimeoutError):
+            time.sleep(0.2)
+    raise RuntimeError(f"JupyterLab did not start:\n{log.read_text()[-3000:]}")
+
+
+class Lab:
+    """A running server and the folder of its notebooks."""
+
+    def __init__(self, url: str, folder: Path) -> None:
+        self.url, self.folder = url, folder
+        self._count = 0
+
+    def write(self, cells: Sequence[str]) -> str:
+        """Write a notebook of code cells; its file name."""
+        self._count += 1
+        name = f"walk{self._count}.ipynb"
+        made = [
+            {"cell_type": "code", "id": f"cell-{i}", "metadata": {}, "source": source, "outputs": [], "execution_count": None}
+            for i, source in enumerate(cells)
+        ]  # fmt: skip
+        kernel = {"kernelspec": {"name": "python3", "display_name": "Python 3", "language": "python"}}
+        content = {"cells": made, "metadata": kernel, "nbformat": 4, "nbformat_minor": 5}
+        (self.folder / name).write_text(json.dumps(content))
+        return name
+
+    def read(self, name: str) -> dict[str, Any]:
+        """A notebook as it was saved."""
+        content: dict[str, Any] = json.loads((self.folder / name).read_text())
+        return content
+
+    @contextmanager
+    def notebook(
+        self, browser: Browser, cells: Sequence[str] | str, width: int = 1280, height: int = 1000, dark: bool = False
+    ) -> Iterator[Notebook]:
+        """Open a notebook in a new page: cells, or the file name of one that was written before."""
+        name = cells if isinstance(cells, str) else self.write(cells)
+        context = browser.new_context(viewport={"width": width, "height": height})
+        context.grant_permissions(["clipboard-read", "clipboard-write"])
+        page = context.new_page()
+        try:
+            page.goto(f"{self.url}/lab/tree/{name}?reset")
+            opened = Notebook(page, name)
+            opened.ready(dark)
+            yield opened
+        finally:
+            page.close()
+            context.close()
+
+
+class Notebook:
+    """An open notebook."""
+
+    def __init__(self, page: Page, name: str) -> None:
+        self.page, self.name = page, name
+
+    def ready(self, dark: bool) -> None:
+        """Wait until the kernel answers."""
+        self.page.wait_for_selector(".jp-NotebookPanel .jp-Cell .cm-content", timeout=60_000)
+        self.page.wait_for_function("() => window.jupyterapp?.shell?.currentWidget?.sessionContext", timeout=60_000)
+        self.page.evaluate(_READY)
+        self.command("application:toggle-left-area") if self.page.locator(".jp-SidePanel:visible").count() else None
+        if dark:
+            self.command("apputils:change-theme", {"theme": "JupyterLab Dark"})
+            self.page.wait_for_selector('body[data-jp-theme-light="false"]')
+
+    def command(self, name: str, arguments: dict[str, Any] | None = None) -> None:
+        """Execute a command of JupyterLab."""
+        self.page.evaluate("([n, a]) => window.jupyterapp.commands.execute(n, a)", [name, arguments or {}])
+
+    def run_all(self) -> None:
+        """Run every cell and wait for the end."""
+        self.command("notebook:run-all-cells")
+
+    def cell(self, position: int) -> Locator:
+        """A cell of the notebook."""
+        return self.page.locator(".jp-NotebookPanel .jp-Notebook-cell").nth(position)
+
+    def output(self, position: int) -> Locator:
+        """Output of a cell."""
+        return self.cell(position).locator(".jp-Cell-outputArea")
+
+    def picture_of(self, path: Path, everything: bool = True) -> None:
+        """Screenshot; `everything` makes the page as high as the notebook first."""
+        if everything:
+            size = self.page.viewport_size or {"width": 1280, "height": 1000}
+            reach = "() => Math.max(...[...document.querySelectorAll('.jp-WindowedPanel-outer')].map(e => e.scrollHeight))"
+            self.page.set_viewport_size({"width": size["width"], "height": int(self.page.evaluate(reach)) + 120})
+            self.page.wait_for_timeout(300)
+            self.page.screenshot(path=path)
+            self.page.set_viewport_size(size)
+        else:
+            self.page.screenshot(path=path)

@@ -135,6 +135,8 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
             context = replace(context, steps=recommended.steps)
         if rung.name == "roots":
             context = _with_fit(context, finding)
+    if transformed is None and series.problem is None:
+        transformed = (plan if plan is not None else recommended).apply(series.values).dropna()
     return Climb(findings, context.comparison, recommended, recommended if plan is None else plan, transformed)
 
 

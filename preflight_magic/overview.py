@@ -16,8 +16,8 @@ if TYPE_CHECKING:
 def row_of(report: SeriesReport) -> dict[str, object]:
     """Verdict, plan and their parts as the columns of the overview; NA throughout where infeasible."""
     if report.problem is not None:
-        empty = dict.fromkeys(("log", "power", "trend", "shift", "season", "D", "d", "period", "n", "missing"), pd.NA)
-        return {"verdict": report.verdict, "plan": "", **empty, "note": report.problem}
+        unknown = ("plan", "log", "power", "trend", "shift", "season", "D", "d", "period", "n", "missing")
+        return {"verdict": report.verdict, **dict.fromkeys(unknown, pd.NA), "note": report.problem}
     steps = report.plan.steps
     lags = [step.lag for step in steps if isinstance(step, Difference)]
     period = report.season[0]

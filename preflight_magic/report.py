@@ -50,6 +50,7 @@ class Report:
         index = pd.Index(self.names, name="series", tupleize_cols=False)
         frame = pd.DataFrame(rows, index=index)
         kinds = dict.fromkeys(("log", "trend", "shift"), "boolean")
+        kinds |= dict.fromkeys(("verdict", "plan", "season", "note"), "string")
         kinds |= dict.fromkeys(("D", "d", "period", "n", "missing"), "Int64") | {"power": "Float64"}
         return frame.astype(kinds)
 

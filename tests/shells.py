@@ -38,12 +38,12 @@ def running_shell(folder: Path) -> Iterator[InteractiveShell]:
     config = Config()
     config.HistoryManager.enabled = False
     config.InteractiveShell.colors = "nocolor"
-    recorder = types.ModuleType("preflight_magic.report")
+    recorder = types.ModuleType("preflight_magic.batch")
     recorder.check = lambda frame, **options: Report(frame, options)  # type: ignore[attr-defined]
     InteractiveShell.clear_instance()
     with pytest.MonkeyPatch.context() as patch:
         patch.setenv("IPYTHONDIR", str(folder))
-        patch.setitem(sys.modules, "preflight_magic.report", recorder)
+        patch.setitem(sys.modules, "preflight_magic.batch", recorder)
         shell = InteractiveShell.instance(config=config)
         shell.user_ns["monthly"] = frame()
         magic.load(shell)

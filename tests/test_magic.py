@@ -198,7 +198,7 @@ def test_complaint_of_the_check_becomes_one_line(shell: InteractiveShell, monkey
     def check(frame: Any, **options: Any) -> None:
         raise CheckError("column 'passengers' has\n  3 values; give it more.")
 
-    monkeypatch.setattr(sys.modules["preflight_magic.report"], "check", check)
+    monkeypatch.setattr(sys.modules["preflight_magic.batch"], "check", check)
     message = refused(shell, "%checkseries monthly --into kept")
     assert message == "column 'passengers' has 3 values; give it more."
     assert "kept" not in shell.user_ns

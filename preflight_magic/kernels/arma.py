@@ -43,7 +43,8 @@ class ArmaFit:
     parameters : int
         Numbers estimated: coefficients, mean and variance.
     innovations : ndarray, shape (n,)
-        Standardised one-step errors; NaN where the value is missing.
+        Standardised one-step errors; NaN where the value is missing. Near such a value they are approximate, since it
+        enters with its expectation given all others.
     correction : ndarray, shape (n,)
         What the nuisance columns explain: the series less this holds, at missing values, their expectations.
     exact : bool
@@ -62,6 +63,9 @@ class ArmaFit:
     innovations: Array
     correction: Array
     exact: bool = True
+
+    def __str__(self) -> str:
+        return f"{self.order}, innovation variance {self.variance:.3g}"
 
     @property
     def polynomials(self) -> tuple[Array, Array]:

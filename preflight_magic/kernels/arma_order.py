@@ -107,7 +107,9 @@ def _rank(sample: Sample, found: Regression, period: int, seasonal: bool, most: 
     if seasonal:
         middle = min(1, most[0]), min(1, most[1])
         pairs = [(P, Q) for P in (0, 1) for Q in (0, 1)]
-        terms = sorted(pairs, key=lambda pair: ranked(Order(*middle, *pair, period)).criterion)[:2]
+        terms = sorted(pairs, key=lambda pair: ranked(Order(middle[0], middle[1], pair[0], pair[1], period)).criterion)[
+            :2
+        ]
     for P, Q in terms:
         for p, q in plain:
             order = Order(p, q, P, Q, period if P or Q else 1)

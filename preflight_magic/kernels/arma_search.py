@@ -35,8 +35,10 @@ _STARTS: dict[tuple[int, int], tuple[tuple[float, ...], ...]] = {
     (0, 2): ((0.3, 0.1), (-0.3, -0.1), (-1.2, 0.4), (-0.6, 0.1)),
     (2, 1): ((1.2, -0.4, 0.1), (1.5, -0.55, -0.6), (0.4, 0.1, 0.3), (0.4, 0.1, -0.8), (1.6, -0.8, -0.3)),
 }
-ORDERS = tuple(_STARTS)
-"""The plain orders (p, q) that are tried."""
+_SEASONAL_START = -0.5
+FIRST_ORDERS = ((0, 0), (1, 0), (0, 1), (1, 1))
+FURTHER_ORDERS = ((2, 0), (0, 2), (2, 1))
+"""The plain orders (p, q) that are tried, the further ones only where a plan is not far behind."""
 
 
 @dataclass(frozen=True)
@@ -61,16 +63,16 @@ def _prior(order: Order) -> tuple[Array, Array]:
     return table[:, 0], table[:, 1]
 
 
-def fit(view: Contrasts, order: Order, seasonal_start: float = -0.5) -> Fitted | None:
+def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | None:
     """Fit one order to one plan and integrate its likelihood.
 
     Parameters
     ----------
     view : Contrasts
     order : Order
-        ``(p, q)`` must be one of `ORDERS`.
-    seasonal_start : float
-        Where the seasonal coefficients start.
+        Without a hint, ``(p, q)`` must be one of `FIRST_ORDERS` or `FURTHER_ORDERS`.
+    hint : ndarray, shape (order.size,), optional
+        Coefficients to start from, instead of the usual points.
 
     Returns
     -------
@@ -94,8 +96,9 @@ def fit(view: Contrasts, order: Order, seasonal_start: float = -0.5) -> Fitted |
         return value, value - penalty, scaled * np.exp(min(penalty / m, 50.0))
 
     best: tuple[float, float, Array] | None = None
-    for start in _STARTS[order.p, order.q]:
-        free = free_parameters(order, np.array([*start, *[seasonal_start] * (order.P + order.Q)]))
+    usual = ((*start, *(_SEASONAL_START,) * (order.P + order.Q)) for start in _STARTS.get((order.p, order.q), ()))
+    for start in (hint,) if hint is not None else usual:
+        free = free_parameters(order, np.asarray(start, dtype=float))
         try:
             value, height, _ = at(free)
         except NotPositiveDefiniteError:

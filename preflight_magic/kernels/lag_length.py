@@ -5,12 +5,16 @@ from __future__ import annotations
 from typing import Literal
 
 import numpy as np
+from scipy.linalg.lapack import dtrtrs
 
-from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.least_squares import FloatArray, leading_rank, residual_sums
 
 _TINY = float(np.finfo(np.float64).tiny)  # stands for a perfect fit, whose logarithm does not exist
 
-Criterion = Literal["AIC", "BIC"]
+_SIGNIFICANT = 1.6448536269514722  # two-sided 10 % of the normal distribution: Ng and Perron (1995)
+
+InformationCriterion = Literal["AIC", "BIC"]
+Criterion = Literal["AIC", "BIC", "t-stat", "MAIC"]
 
 
 def schwert(nobs: int) -> int:
@@ -32,7 +36,7 @@ def schwert(nobs: int) -> int:
     return int(np.ceil(12.0 * (nobs / 100.0) ** 0.25))
 
 
-def smallest_criterion(rss: FloatArray, nobs: int, parameters: int, criterion: Criterion) -> int:
+def smallest_criterion(rss: FloatArray, nobs: int, parameters: int, criterion: InformationCriterion) -> int:
     """Lag length with the smallest information criterion; the shorter one where two tie.
 
     Parameters
@@ -52,3 +56,55 @@ def smallest_criterion(rss: FloatArray, nobs: int, parameters: int, criterion: C
     penalty = 2.0 if criterion == "AIC" else float(np.log(nobs))
     value = nobs * np.log(np.maximum(rss, _TINY)) + penalty * np.arange(parameters, parameters + rss.size)
     return int(value.argmin())
+
+
+def searched_lags(factor: FloatArray, fixed: int, nobs: int, criterion: Criterion) -> int | None:
+    """Lag length of a Dickey-Fuller regression, all lengths read from one triangular factor.
+
+    Parameters
+    ----------
+    factor : ndarray, shape (k + 1, k + 1)
+        From `least_squares.triangle`: deterministic terms, the lagged level, lagged differences from the shortest lag
+        to the longest, and the response, all on the same `nobs` observations.
+    fixed : int
+        Columns before the lagged differences, the level being the last of them.
+    nobs : int
+    criterion : {"AIC", "BIC", "t-stat", "MAIC"}
+        ``t-stat`` takes the longest length whose last lag is significant at 10 % (Ng and Perron 1995, Journal of the
+        American Statistical Association 90). ``MAIC`` is the modified AIC of Ng and Perron (2001), Econometrica 69:
+        its penalty grows where few lags leave a moving average near -1 in the level's coefficient. Its
+        sum of squared levels is taken after the deterministic terms.
+
+    Returns
+    -------
+    int or None
+        Lags that depend on others are not considered; None where the columns before the lags already do.
+
+    Raises
+    ------
+    ValueError
+        For an unknown criterion.
+    """
+    independent = leading_rank(factor)
+    if independent < fixed:
+        return None
+    rss = residual_sums(factor)[fixed : independent + 1]
+    if criterion == "AIC" or criterion == "BIC":
+        return smallest_criterion(rss, nobs, fixed, criterion)
+    rss = np.maximum(rss, _TINY)
+    lost = factor[fixed - 1 : independent, -1]  # what the response loses to the level and to each lag
+    if criterion == "t-stat":
+        t_squared = lost[1:] ** 2 / rss[1:] * (nobs - np.arange(fixed + 1, independent + 1))
+        significant = np.flatnonzero(t_squared >= _SIGNIFICANT**2)
+        return int(significant[-1]) + 1 if significant.size else 0
+    if criterion != "MAIC":
+        raise ValueError(f"there is no lag choice {criterion!r}; use 'AIC', 'BIC', 't-stat' or 'MAIC'")
+    # The leading blocks of a triangular inverse are the inverses of the leading blocks, so that the level's
+    # coefficient with 0, 1, ... lags is a running sum along one row of the inverse.
+    block = factor[fixed - 1 : independent, fixed - 1 : independent]
+    first = np.zeros(block.shape[0])
+    first[0] = 1.0
+    inverse_row: FloatArray = dtrtrs(block, first, trans=1)[0].ravel()
+    coefficient = (inverse_row * lost).cumsum()
+    tau = coefficient**2 * block[0, 0] ** 2 / (rss / nobs)
+    return int((nobs * np.log(rss) + 2.0 * (tau + np.arange(rss.size))).argmin())

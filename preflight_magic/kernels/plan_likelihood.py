@@ -7,89 +7,23 @@ priors, so that plans with and without them are comparable too.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from scipy.special import logsumexp
 
-from preflight_magic.kernels.arma_parameters import Order, polynomials
-from preflight_magic.kernels.arma_search import ORDERS, Fitted, fit
 from preflight_magic.kernels.breaks import DatedShift, date_shift
+from preflight_magic.kernels.plan_evidence import Assessed, Candidate, PlanPrior, Subject, assess, base_columns, step_t
 from preflight_magic.kernels.power_transform import log_gain
-from preflight_magic.kernels.restricted_likelihood import (
-    Array,
-    Contrasts,
-    Levels,
-    contrasts,
-    effects,
-    line_column,
-    missing_columns,
-    pattern_columns,
-)
+from preflight_magic.kernels.restricted_likelihood import Array, Levels, missing_columns
 from preflight_magic.kernels.seasonal_presence import Presence, season_presence
 
-_LOG_2PI = float(np.log(2.0 * np.pi))
+__all__ = ["Candidate", "Comparison", "PlanPrior", "compare"]
+
 _SHORTEST_WITH_SHIFT = 24
 """Fewest observed values in which a level shift is looked for. Common practice: a dozen on each side."""
-
-
-@dataclass(frozen=True)
-class PlanPrior:
-    """What is believed before the data, and the two margins outside the comparison. Natural logarithms.
-
-    Attributes
-    ----------
-    log_margin : float
-        Fall of -2 log likelihood from which a log is taken.
-    season_p : float
-        p-value below which a season is there.
-    trend, shift, second, wandering : float
-        Log odds against a trend, a shift (besides the number of its dates), a second difference, and a seasonal
-        difference where there is a season.
-    slope : float
-        Prior standard deviation of the slope a step, in units of the spread of the first differences.
-    """
-
-    log_margin: float
-    season_p: float
-    trend: float
-    shift: float
-    second: float
-    wandering: float
-    slope: float
-
-
-@dataclass(frozen=True)
-class Candidate:
-    """One plan with its evidence.
-
-    Attributes
-    ----------
-    d, D : int
-        Ordinary and seasonal differences.
-    trend, pattern : bool
-        In the model; with d + D of two a trend is implied and `trend` is False.
-    shift : int or None
-        First position of the new level, where the model has one.
-    evidence : float
-        Log of the integrated likelihood times the prior odds of the plan.
-    order : Order
-        The ARMA order that contributes most.
-    coefficients : ndarray
-    trend_t, shift_t : float
-        Generalised least squares t-values, NaN where not in the model.
-    """
-
-    d: int
-    D: int
-    trend: bool
-    pattern: bool
-    shift: int | None
-    evidence: float
-    order: Order
-    coefficients: Array
-    trend_t: float
-    shift_t: float
+_SMALLEST_STEP = 2.0
+"""t-value in the model without it below which a shift cannot win against its prior odds: it is not looked into."""
 
 
 @dataclass(frozen=True)
@@ -113,13 +47,6 @@ class Comparison:
     def best(self) -> Candidate:
         """The leading plan."""
         return self.candidates[0]
-
-
-@dataclass(frozen=True)
-class _Subject:
-    levels: Levels
-    prior: PlanPrior
-    spread: float
 
 
 def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
@@ -157,24 +84,12 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     seen = np.isfinite(x)
     filled = np.where(seen, x, np.interp(np.arange(n), np.flatnonzero(seen), x[seen]))
     levels = Levels(filled, usable if pattern else 1, True, pattern, missing_columns(x))
-    subject = _Subject(levels, prior, _spread_of_changes(filled, levels.period))
-    found: list[Candidate] = []
-    for D in (0, 1) if pattern else (0,):
-        for d in (0, 1) if D else (0, 1, 2):
-            for trend in (True, False) if d + D < 2 else (True,):
-                found += _candidate(subject, d, D, trend, None)
-    dates: dict[bool, DatedShift] = {}
-    if int(seen.sum()) >= _SHORTEST_WITH_SHIFT:
-        for trend in (True, False):
-            dated = date_shift(x, np.column_stack(_base(levels, trend)))
-            if dated is not None:
-                dates[trend] = dated
-                found += _candidate(subject, 0, 0, trend, dated)
+    subject = Subject(levels, prior, _spread_of_changes(filled, levels.period))
+    found, dates = _assessed(subject, x)
     if not found:
         return None
     found.sort(key=lambda candidate: -candidate.evidence)
     evidence = np.array([candidate.evidence for candidate in found])
-    weights = np.exp(evidence - logsumexp(evidence))
     shifted = next((candidate for candidate in found if candidate.shift is not None), None)
     return Comparison(
         log=log,
@@ -183,9 +98,40 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
         presence=presence,
         dated=dates[shifted.trend] if shifted else None,
         candidates=tuple(found),
-        weights=tuple(weights.tolist()),
+        weights=tuple(np.exp(evidence - logsumexp(evidence)).tolist()),
         count=int(seen.sum()),
     )
+
+
+def _assessed(subject: Subject, x: Array) -> tuple[list[Candidate], dict[bool, DatedShift]]:
+    """Every candidate that can be computed, and the dates of the shifts among them by whether there is a trend."""
+    found: dict[tuple[int, int, bool], Assessed] = {}
+    best = -np.inf
+    orders = [(1, 0), (0, 0), (2, 0), *(((1, 1), (0, 1)) if subject.levels.pattern else ())]
+    for d, D in orders:
+        one = assess(subject, d, D, trend=True, best=best)
+        if one is not None:
+            found[d, D, True] = one
+            best = max(best, one.candidate.evidence)
+    for d, D in orders:
+        if d + D < 2 and (d, D, True) in found:
+            one = assess(subject, d, D, trend=False, hints=found[d, D, True].hints)
+            if one is not None:
+                found[d, D, False] = one
+                best = max(best, one.candidate.evidence)
+    candidates = [one.candidate for one in found.values()]
+    dates: dict[bool, DatedShift] = {}
+    if np.isfinite(x).sum() >= _SHORTEST_WITH_SHIFT:
+        for trend in (True, False):
+            dated = date_shift(x, np.column_stack(base_columns(subject.levels, trend)))
+            without = found.get((0, 0, trend))
+            if dated is None or without is None or abs(step_t(subject, without, dated)) < _SMALLEST_STEP:
+                continue
+            one = assess(subject, 0, 0, trend=trend, dated=dated, best=best)
+            if one is not None:
+                dates[trend] = dated
+                candidates.append(one.candidate)
+    return candidates, dates
 
 
 def _cycles(values: Array, period: int) -> bool:
@@ -203,79 +149,3 @@ def _spread_of_changes(filled: Array, period: int) -> float:
         changes = changes - (np.bincount(position, changes) / np.bincount(position))[position]
     spread = 1.4826 * float(np.median(np.abs(changes - np.median(changes))))
     return spread if spread > 0.0 else max(float(changes.std()), 1e-12)
-
-
-def _base(levels: Levels, trend: bool) -> list[Array]:
-    n = len(levels.values)
-    columns = [np.ones((n, 1))]
-    if trend:
-        columns.append(line_column(n)[:, None])
-    if levels.pattern:
-        columns.append(pattern_columns(n, levels.period))
-    return columns
-
-
-def _candidate(subject: _Subject, d: int, D: int, trend: bool, dated: DatedShift | None) -> list[Candidate]:
-    """The plan with its evidence, in a list that is empty where it cannot be computed."""
-    levels = replace(subject.levels, trend=trend)
-    n = len(levels.values)
-    step = (np.arange(n) >= dated.position).astype(float)[:, None] if dated else np.empty((n, 0))
-    levels = replace(levels, others=np.column_stack([levels.others, step]))
-    view = contrasts(levels, d, D)
-    if view is None:
-        return []
-    fits = _fits(view, levels.period, D)
-    if not fits:
-        return []
-    leading = max(fits, key=lambda one: one.evidence)
-    estimates, covariance = effects(view, *polynomials(leading.order, leading.coefficients))
-    deviations = np.sqrt(np.maximum(covariance.diagonal(), 1e-300))
-    # Restricted likelihoods that condition on a slope or a step become densities of the same contrasts as those
-    # without by the prior density of the slope or step, over the scale of its contrast.
-    evidence = float(logsumexp([one.evidence for one in fits]) - np.log(len(ORDERS)))
-    base = [*_base(levels, False), subject.levels.others]
-    prior = subject.prior
-    free_trend = trend and d + D < 2
-    if trend:
-        width = prior.slope * subject.spread * n
-        evidence -= _log_size(line_column(n)[:, None], base) + 0.5 * _LOG_2PI + float(np.log(width))
-        base.append(line_column(n)[:, None])
-    if dated is not None:
-        # unit information (Kass and Wasserman 1995): as much as one observation tells
-        width = float(np.sqrt(view.count) * deviations[-1])
-        evidence -= _log_size(step, base) + 0.5 * _LOG_2PI + float(np.log(width))
-        evidence -= prior.shift + float(np.log(n))
-    evidence -= prior.trend * free_trend + prior.second * (d + D == 2) + prior.wandering * D
-    place = 0 if d + D else 1
-    return [
-        Candidate(
-            d=d,
-            D=D,
-            trend=free_trend,
-            pattern=levels.pattern and D == 0,
-            shift=dated.position if dated else None,
-            evidence=evidence,
-            order=leading.order,
-            coefficients=leading.coefficients,
-            trend_t=float(estimates[place] / deviations[place]) if free_trend else float("nan"),
-            shift_t=float(estimates[-1] / deviations[-1]) if dated else float("nan"),
-        )
-    ]
-
-
-def _log_size(column: Array, base: list[Array]) -> float:
-    """Log of the length of a column after what the base explains is taken out."""
-    basis = np.linalg.qr(np.column_stack(base))[0]
-    rest = column - basis @ (basis.T @ column)
-    return 0.5 * float(np.log(max(float((rest**2).sum()), 1e-300)))
-
-
-def _fits(view: Contrasts, period: int, D: int) -> list[Fitted]:
-    orders = [Order(p, q, 0, D, period) for p, q in ORDERS]
-    fits = [one for order in orders if order.size + 2 < view.count and (one := fit(view, order)) is not None]
-    if D and fits:
-        # the leading order once more without its seasonal moving average: a season that wanders freely
-        leading = max(fits, key=lambda one: one.evidence).order
-        free = fit(view, Order(leading.p, leading.q, 0, 0, period))
-        fits += [free] if free is not None else []
-    return fits

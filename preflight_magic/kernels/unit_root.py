@@ -8,11 +8,11 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from math import isfinite, sqrt
 from typing import Literal
 
 import numpy as np
 
+from preflight_magic.kernels.dickey_fuller import ROUNDING, finite_range, level_regression, longest_lag
 from preflight_magic.kernels.distributions import (
     Bound,
     Terms,
@@ -20,16 +20,8 @@ from preflight_magic.kernels.distributions import (
     dickey_fuller_p_value,
     kpss_p_value,
 )
-from preflight_magic.kernels.lag_length import Criterion, schwert, smallest_criterion
-from preflight_magic.kernels.least_squares import (
-    FloatArray,
-    detrend,
-    last_t_ratio,
-    leading_rank,
-    polynomial,
-    residual_sums,
-    triangle,
-)
+from preflight_magic.kernels.lag_length import Criterion, schwert
+from preflight_magic.kernels.least_squares import FloatArray, detrend
 from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum, within_rounding
 
 _DEGREE: Mapping[Terms, int] = {"n": -1, "c": 0, "ct": 1, "ctt": 2}
@@ -109,8 +101,8 @@ def adf(
         Lagged differences, where they are not to be searched.
     max_lags : int, optional
         Longest length in the search, by default that of Schwert (1989), shortened for a short series.
-    criterion : {"AIC", "BIC"} or None
-        None takes `max_lags` itself.
+    criterion : {"AIC", "BIC", "t-stat", "MAIC"} or None
+        How the length is searched, see `lag_length.searched_lags`; None takes `max_lags` itself.
 
     Returns
     -------
@@ -120,40 +112,24 @@ def adf(
     Raises
     ------
     ValueError
-        For missing or infinite values, unknown terms or negative lags.
+        For missing or infinite values, unknown terms, an unknown criterion or negative lags.
 
     References
     ----------
     Said and Dickey (1984), Biometrika 71. P-values: MacKinnon (1994); critical values: MacKinnon (2010).
     """
     degree = _degree(terms)
-    n = y.size
-    low, high = _range(y)
-    room = min(n // 2 - degree - 2, (n - 4 - degree) // 2)  # leaves more observations than coefficients
-    longest = lags if lags is not None else max_lags
-    if longest is None:
-        longest = min(schwert(n), room)
-    elif longest < 0:
-        raise ValueError(f"the lag length is {longest}; it must not be negative")
-    if room < 0 or longest > room or within_rounding(low, high):
+    low, high = finite_range(y)
+    longest = longest_lag(y.size, degree, lags if lags is not None else max_lags)
+    if longest is None or within_rounding(low, high):
         return None
-    columns = _dickey_fuller_columns(y, degree, longest)
-    common = triangle(columns[longest:].copy(order="F"))
-    chosen = longest
-    if lags is None and criterion is not None:
-        independent = leading_rank(common)
-        if independent < degree + 2:
-            return None
-        rss = residual_sums(common)[degree + 2 : independent + 1]
-        chosen = smallest_criterion(rss, n - 1 - longest, degree + 2, criterion)
-    nobs = n - 1 - chosen
-    factor = _with_level_last(common, columns[chosen:longest], degree, chosen)
-    noise = 4.0 * _EPSILON * max(abs(low), abs(high))
-    if abs(factor[-1, -1]) <= noise * nobs**0.5 or leading_rank(factor) < degree + 2 + chosen:
+    noise = ROUNDING * max(abs(low), abs(high))
+    found = level_regression(y, degree, longest, None if lags is not None else criterion, noise)
+    if found is None:
         return None
-    statistic = last_t_ratio(factor, nobs)
-    p_value, bound = dickey_fuller_p_value(statistic, terms)
-    return AdfResult(statistic, p_value, bound, chosen, nobs, terms, dickey_fuller_critical_values(terms, nobs))
+    p_value, bound = dickey_fuller_p_value(found.statistic, terms)
+    critical = dickey_fuller_critical_values(terms, found.nobs)
+    return AdfResult(found.statistic, p_value, bound, found.lags, found.nobs, terms, critical)
 
 
 def kpss(
@@ -190,7 +166,7 @@ def kpss(
     if terms not in ("c", "ct"):
         raise ValueError(f"the KPSS test has no terms {terms!r}; use 'c' or 'ct'")
     n = y.size
-    low, high = _range(y)
+    low, high = finite_range(y)
     if n < 4 or within_rounding(low, high):
         return None
     residual = detrend(y, _DEGREE[terms])
@@ -209,57 +185,7 @@ def kpss(
     return KpssResult(statistic, kpss_p_value(statistic, terms), lags, n, terms)
 
 
-def _dickey_fuller_columns(y: FloatArray, degree: int, lags: int) -> FloatArray:
-    """Deterministic terms, level, lagged differences and difference, shape (n - 1, degree + 3 + lags).
-
-    The first `lags` rows hold unset values where a lagged difference does not exist.
-    """
-    difference = y[1:] - y[:-1]
-    columns = np.empty((difference.size, degree + 3 + lags), order="F")
-    columns[:, : degree + 1] = polynomial(difference.size, degree)
-    # With a constant the mean of the level is free; without it the sum of squares stays exact far from zero.
-    columns[:, degree + 1] = y[:-1] - y.sum() / y.size if degree >= 0 else y[:-1]
-    for lag in range(1, lags + 1):
-        columns[lag:, degree + 1 + lag] = difference[:-lag]
-    columns[:, -1] = difference
-    return columns
-
-
-def _with_level_last(common: FloatArray, freed: FloatArray, degree: int, lags: int) -> FloatArray:
-    """Factor of the regression with `lags` lags on all its rows, the level as last regressor.
-
-    Parameters
-    ----------
-    common : ndarray, shape (k + 1, k + 1)
-        Factor of the longest regression on the common sample.
-    freed : ndarray, shape (rows, k + 1)
-        Rows of the same columns that only the shorter regression can use.
-    degree, lags : int
-    """
-    level = degree + 1
-    order = [*range(level), *range(level + 1, level + 1 + lags), level, common.shape[1] - 1]
-    size = len(order)
-    stacked = np.empty((size + freed.shape[0], size), order="F")
-    stacked[: size - 1] = common[: size - 1, order]
-    # Below its first rows the response is all residual: one row with its norm stands for them.
-    stacked[size - 1] = 0.0
-    unexplained = common[size - 1 :, -1]
-    stacked[size - 1, -1] = sqrt(unexplained @ unexplained)
-    stacked[size:] = freed[:, order]
-    return triangle(stacked)
-
-
 def _degree(terms: Terms) -> int:
     if terms not in _DEGREE:
         raise ValueError(f"there are no deterministic terms {terms!r}; use one of {', '.join(_DEGREE)}")
     return _DEGREE[terms]
-
-
-def _range(y: FloatArray) -> tuple[float, float]:
-    """Smallest and largest value; they carry any NaN or infinity, so that nothing else has to look for it."""
-    if not y.size:
-        return 0.0, 0.0
-    low, high = float(y.min()), float(y.max())
-    if not isfinite(high - low):
-        raise ValueError("a unit-root test needs finite values; it got missing or infinite ones")
-    return low, high

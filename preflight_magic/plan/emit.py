@@ -7,7 +7,7 @@ from collections.abc import Hashable, Mapping
 import pandas as pd
 
 from preflight_magic.model import CheckError, PerDay, Power, Repair, Step
-from preflight_magic.plan import emit_helpers as helpers
+from preflight_magic.plan import emit_functions as shared
 from preflight_magic.plan.emit_steps import Draft, Reasons, fixed_part_lines, prepare_lines, restore_lines
 from preflight_magic.plan.fixed_part import lags_of
 from preflight_magic.plan.literals import comment, key_lines, literal, one_line
@@ -45,7 +45,7 @@ def emit(plans: Mapping[Hashable, tuple[Plan, Reasons]], indexes: Mapping[Hashab
         Draft(plan, _reasons(names, plans), monthly, f"_{i}" if len(groups) > 1 else "")
         for i, ((plan, monthly), names) in enumerate(groups.items(), 1)
     ]
-    blocks = [part for draft in drafts for part in _helpers(draft, drafts)]
+    blocks = [part for draft in drafts for part in _shared(draft, drafts)]
     blocks = list(dict.fromkeys(blocks))
     for draft, names in zip(drafts, groups.values(), strict=True):
         blocks += _functions(draft, names)
@@ -93,20 +93,20 @@ def _reasons(
     return found
 
 
-def _helpers(draft: Draft, drafts: list[Draft]) -> list[str]:
-    """Sources of the helper functions that a plan needs."""
+def _shared(draft: Draft, drafts: list[Draft]) -> list[str]:
+    """Sources of the shared functions that a plan needs."""
     plan = draft.plan
     parts: list[str] = []
     if any(repair.period > 1 for repair in plan.repairs):
-        parts.append(helpers.FILL_GAPS)
+        parts.append(shared.FILL_GAPS)
     if draft.counted:
         unit = next(step.unit for step in plan.steps if isinstance(step, PerDay))
-        parts += [helpers.PERIOD_BOUNDS, helpers.DAYS if unit == "days" else helpers.WORKDAYS]
+        parts += [shared.PERIOD_BOUNDS, shared.DAYS if unit == "days" else shared.WORKDAYS]
     if any(lag > 1 for lag in lags_of(plan.steps)):
-        parts.append(helpers.UNDO_DIFFERENCE)
+        parts.append(shared.UNDO_DIFFERENCE)
     if any("mean_of(" in line for line in restore_lines(draft)):
         negative = any(isinstance(s, Power) and s.exponent < 0 for other in drafts for s in other.plan.steps)
-        parts.append(helpers.MEAN_OF_FINITE if negative else helpers.MEAN_OF)
+        parts.append(shared.MEAN_OF_FINITE if negative else shared.MEAN_OF)
     return [part.rstrip("\n") for part in parts]
 
 

@@ -11,9 +11,6 @@ import pandas as pd
 
 from preflight_magic.model import Root, Verdict
 
-EVEN = 2.0
-"""BIC difference that is not worth more than a bare mention (Kass and Raftery 1995)."""
-
 
 @dataclass(frozen=True)
 class StepMark:
@@ -55,10 +52,10 @@ class RungCard:
 
 @dataclass(frozen=True)
 class PlanRow:
-    """A candidate plan and how much worse than the best it is."""
+    """A candidate plan and the odds of the best plan against it."""
 
     text: str
-    cost: str
+    odds: str
     shown: bool
 
 

@@ -65,7 +65,7 @@ class SeriesView(Protocol):
 
     @property
     def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
-        """Candidate plans as (text, BIC above the best, steps)."""
+        """Candidate plans as (text, natural log of the odds of the best against it, steps)."""
 
     @property
     def methods(self) -> Mapping[str, tuple[str, tuple[str, ...]]]:

@@ -111,7 +111,7 @@ def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
     sheet.side(panel, [-1, 0, 1], [f"{words.MINUS}1", "0", "1"])
     sheet.base(panel, ticks, [str(t) for t in ticks])
     sheet.words(panel.left, panel.top + 0.09, "correlogram", TITLE)
-    sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95% band", color=FAINT)
+    sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95 % band", color=FAINT)
 
 
 def _key(sheet: Sheet, panel: Panel) -> None:
@@ -153,7 +153,7 @@ def sparklines(many: Sequence[np.ndarray], width: int = 180, height: int = 42) -
         some = many[start : start + 100]
         sheet = Sheet(width / DPI, len(some) * height / DPI)
         lines = [line for row, values in enumerate(some) for line in _spark(values, len(some) - 1 - row, width, height)]
-        sheet.lines([line / DPI for line in lines], 0.7)
+        sheet.lines([line / DPI for line in lines], 1.0)
         dots = sheet.dots()
         pieces += [encode(dots[row * height : (row + 1) * height]) for row in range(len(some))]
     return pieces

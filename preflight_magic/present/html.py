@@ -139,11 +139,11 @@ def _plans(card: Card, key: str) -> Markup | None:
     rows = []
     for row in card.plans:
         plan = el("td", el("b", row.text), " (shown)") if row.shown else el("td", row.text)
-        rows.append(el("tr", plan, el("td", row.cost)))
-    header = el("thead", el("tr", el("th", "plan", scope="col"), el("th", "BIC above the best", scope="col")))
+        rows.append(el("tr", plan, el("td", row.odds)))
+    header = el("thead", el("tr", el("th", "plan", scope="col"), el("th", "odds of the best against it", scope="col")))
     return el(
         "details",
-        el("summary", "Plans that were compared, and what each costs"),
+        el("summary", "Plans that were compared, and the odds against each"),
         el("table", header, el("tbody", rows), class_="pfm-table"),
         class_="pfm-more",
         id=f"pfm-{key}-plans",
@@ -175,9 +175,10 @@ def overview(card: OverviewCard, linked: bool = False) -> Markup:
     from preflight_magic.present.figures import sparklines
 
     pictures = sparklines([row.values for row in card.rows])
-    heads = [el("th", text, scope="col") for text in ("series", "", "verdict", "plan", "note")]
+    noted = any(row.note for row in card.rows)
+    heads = [el("th", text, scope="col") for text in ("series", "", "verdict", "plan", *(["note"] if noted else []))]
     links = [f"#pfm-series-{i}" if linked else None for i in range(len(card.rows))]
-    rows = [_row(*parts) for parts in zip(card.rows, pictures, links, strict=True)]
+    rows = [_row(*parts, noted) for parts in zip(card.rows, pictures, links, strict=True)]
     more = f"and {card.left_out:,} more; report.overview holds them all" if card.left_out else None
     return el(
         "div",
@@ -188,7 +189,7 @@ def overview(card: OverviewCard, linked: bool = False) -> Markup:
     )
 
 
-def _row(row: OverviewRow, png: bytes, link: str | None) -> Markup:
+def _row(row: OverviewRow, png: bytes, link: str | None, noted: bool) -> Markup:
     full, name = words.name_text(row.name), words.name_text(row.name, 40)
     shown = el("a", name, href=link) if link else name
     said = [el("li", question, " ", verdict(value), ". ", headline) for question, value, headline in row.rungs]
@@ -199,7 +200,7 @@ def _row(row: OverviewRow, png: bytes, link: str | None) -> Markup:
         el("td", picture(png, spark_alt(row), 120, "pfm-spark")),
         el("td", verdict(row.verdict)),
         el("td", plan),
-        el("td", row.note),
+        el("td", row.note) if noted else None,
     )
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import Counter
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Literal, cast
 
 import numpy as np
@@ -14,7 +14,6 @@ from preflight_magic.model import Difference, Finding, HypothesisTest, RemovePat
 from preflight_magic.plan.words import describe
 from preflight_magic.present import words
 from preflight_magic.present.cards import (
-    EVEN,
     Card,
     OverviewCard,
     OverviewRow,
@@ -25,6 +24,7 @@ from preflight_magic.present.cards import (
     StepMark,
     TestRow,
 )
+from preflight_magic.present.measures import measure_rows
 
 if TYPE_CHECKING:
     from preflight_magic.present.contract import ReportView, SeriesView
@@ -128,15 +128,16 @@ def _picture(view: SeriesView) -> Picture | None:
 
 
 def season_of(view: SeriesView) -> int:
-    """Seasonal period for the ticks of a correlogram: from the steps, else what the first rung measured, else 1."""
+    """Seasonal period for the ticks of a correlogram: of a step, else the shortest of the first rung, else 1."""
     for step in (*view.plan.steps, *view.recommended.steps):
         if isinstance(step, RemovePattern):
             return step.period
         if isinstance(step, Difference) and step.lag > 1:
             return step.lag
     finding = view.findings.get("time index")
-    measured = finding.measures.get("period") if finding else None
-    return int(measured) if isinstance(measured, int | np.integer) and measured > 1 else 1
+    measured = finding.measures.get("season") if finding else None
+    first = measured[0] if isinstance(measured, tuple) and measured else measured
+    return int(first) if isinstance(first, int | np.integer) and first > 1 else 1
 
 
 def _roots(view: SeriesView) -> RootsPicture | None:
@@ -145,13 +146,7 @@ def _roots(view: SeriesView) -> RootsPicture | None:
         return None
     roots = cast("tuple[Root, ...]", tuple(cast("Sequence[Root]", finding.measures.get("roots", ()))))
     keys = ("psi_sum", "variance_implied", "variance_sample", "half_life")
-    notes = []
-    for key in keys:
-        value = finding.measures.get(key)
-        if isinstance(value, int | float | np.number) and not math.isnan(float(value)):
-            told = words.number(float(value))
-            unit = f" {words.plural(view.noun, float(value))}" if key == "half_life" else ""
-            notes.append((words.label_text(key), told + unit))
+    notes = measure_rows({key: finding.measures[key] for key in keys if key in finding.measures}, view.noun)
     return RootsPicture(roots, words.plain(str(finding.measures["order"])), view.noun, tuple(notes))
 
 
@@ -177,7 +172,7 @@ def _rung(position: int, finding: Finding, view: SeriesView, earlier: Finding | 
         reason=words.plain(finding.reason),
         steps=tuple(describe(step) for step in finding.steps),
         tests=tuple(_test(test) for test in finding.tests),
-        measures=tuple(_measures(finding.measures, view.noun)),
+        measures=tuple(measure_rows(finding.measures, view.noun)),
         method=words.plain(method),
         sources=tuple(words.plain(source) for source in sources),
         before=before,
@@ -194,34 +189,12 @@ def _test(test: HypothesisTest) -> TestRow:
     )
 
 
-def _measures(measures: Mapping[str, object], noun: str) -> Iterator[tuple[str, str]]:
-    for key, value in measures.items():
-        if isinstance(value, tuple | list) and value and all(isinstance(item, Root) for item in value):
-            yield from _root_rows(cast("Sequence[Root]", value), noun)
-        else:
-            yield words.label_text(key), words.value_text(value, noun)
-
-
-def _root_rows(roots: Sequence[Root], noun: str) -> Iterator[tuple[str, str]]:
-    """One row a root; the roots of a seasonal polynomial share a row, since they share their modulus."""
-    groups: dict[tuple[str, str], list[Root]] = {}
-    for root in roots:
-        place = f"{root.modulus:.6f}" if root.seasonal else repr(root)
-        groups.setdefault((root.part, place), []).append(root)
-    for (part, _), group in groups.items():
-        if len(group) == 1:
-            yield f"{part} root", words.root_text(group[0], noun).removeprefix(f"{part} ")
-        else:
-            one = words.root_text(group[0], noun).removeprefix(f"{part} ").split(",")[0]
-            yield f"{part} seasonal roots", f"{one}, {len(group)} roots at the seasonal frequencies"
-
-
 def _plans(view: SeriesView) -> tuple[PlanRow, ...]:
-    rows = []
-    for text, cost, steps in sorted(view.alternatives, key=lambda item: item[1]):
-        told = "best" if cost <= 0 else f"{words.number(cost, 2)} worse" + (", nearly even" if cost < EVEN else "")
-        rows.append(PlanRow(words.plain(text), told, tuple(steps) == tuple(view.plan.steps)))
-    return tuple(rows)
+    ordered = sorted(view.alternatives, key=lambda item: item[1])
+    return tuple(
+        PlanRow(words.plain(text), words.odds(below), tuple(steps) == tuple(view.plan.steps))
+        for text, below, steps in ordered
+    )
 
 
 # ------------------------------------------------------------------------------------------------- overview

@@ -10,13 +10,12 @@ from typing import TYPE_CHECKING
 from preflight_magic.model import Log, Logit, Power, Step
 from preflight_magic.plan.words import describe
 from preflight_magic.present import words
-from preflight_magic.present.cards import EVEN
 
 if TYPE_CHECKING:
     from preflight_magic.present.contract import SeriesView
 
-CLOSE = 3 * EVEN
-"""BIC above the best up to which a plan's steps are offered: "positive" evidence in Kass and Raftery (1995)."""
+CLOSE = 3.0
+"""Log odds up to which a plan's steps are offered: evidence is "strong" from there on (Kass and Raftery 1995)."""
 
 
 @dataclass(frozen=True)
@@ -33,8 +32,8 @@ def switches(view: SeriesView) -> tuple[Switch, ...]:
     """Steps of the recommendation, of the plan shown, and of the plans that are nearly as good."""
     recommended = Counter(view.recommended.steps)
     offered = recommended | Counter(view.plan.steps)
-    for _, cost, steps in view.alternatives:
-        if cost <= CLOSE:
+    for _, below, steps in view.alternatives:
+        if below <= CLOSE:
             offered |= Counter(steps)
     made: list[Switch] = []
     for step in [*recommended.elements(), *(offered - recommended).elements()]:

@@ -80,8 +80,8 @@ def card_text(card: Card, width: int | None = None) -> str:
     for rung in card.rungs:
         lines += _rung(rung, width)
     if card.plans:
-        rows = [(row.text + (" (shown)" if row.shown else ""), row.cost) for row in card.plans]
-        lines += ["", *wrap("Plans that were compared, and BIC above the best:", width)]
+        rows = [(row.text + (" (shown)" if row.shown else ""), row.odds) for row in card.plans]
+        lines += ["", *wrap("Plans that were compared, and the odds of the best against each:", width)]
         lines += columns(rows, [width - 30, 26], "  ")
     if card.code_problem:
         lines += ["", *wrap(card.code_problem, width)]

@@ -108,6 +108,7 @@ class Controller:
         self._choice = ipywidgets.Dropdown(
             options=_options(names[:SHOWN_NAMES]), value=0, description="Series", tooltip="Series whose card is shown"
         )
+        self._choice.style.description_width = "initial"
         self._choice.add_class("pfm-selector")
         self._choice.observe(lambda _: self._guarded(self._select), names="value")
         parts = [self._choice]
@@ -115,6 +116,7 @@ class Controller:
             find = ipywidgets.Text(
                 placeholder="part of a name", description="Find", tooltip="Narrow the list of series"
             )
+            find.style.description_width = "initial"
             self._find = find
             find.add_class("pfm-find")
             find.observe(lambda _: self._guarded(self._narrow), names="value")

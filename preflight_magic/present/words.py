@@ -60,15 +60,6 @@ CAUTION = (
     "hurt someone, local rules and qualified people decide."
 )
 
-LABELS: Mapping[str, str] = {
-    "psi_sum": "sum of absolute psi weights",
-    "variance_implied": "variance the model implies",
-    "variance_sample": "variance of the sample",
-    "half_life": "half-life",
-    "bic": "BIC",
-    "aic": "AIC",
-}
-
 
 # -------------------------------------------------------------------------------------------------- numbers
 def number(value: float, digits: int = 3) -> str:
@@ -111,9 +102,11 @@ def p_value(value: float, bound: str = "exact") -> str:
     return "> 0.999" if value > 0.9995 else f"{value:.3f}"
 
 
-def share(value: float) -> str:
-    """Share as percent: ``2.5%``."""
-    return f"{number(100 * value, 2)}%"
+def odds(log_odds: float) -> str:
+    """Odds against a plan from their natural logarithm: ``4.1 to 1``; ``best`` where there are none."""
+    if log_odds <= 0:
+        return "best"
+    return "over 1,000 to 1" if log_odds > math.log(1000) else f"{number(math.exp(log_odds), 2)} to 1"
 
 
 def plural(noun: str, count: float = 2) -> str:
@@ -210,8 +203,8 @@ def test_details(test: HypothesisTest) -> str:
 
 
 def label_text(key: str) -> str:
-    """Label of a measure or option."""
-    return LABELS.get(key, plain(str(key).replace("_", " ")))
+    """Label of an option or of a part of a measure."""
+    return plain(str(key).replace("_", " "))
 
 
 def value_text(value: object, noun: str = "") -> str:

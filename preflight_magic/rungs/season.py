@@ -10,7 +10,7 @@ from preflight_magic.kernels.plan_likelihood import Candidate
 from preflight_magic.model import Difference, Evidence, HypothesisTest, Judgement, RemovePattern, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
-from preflight_magic.rungs.shares import shares, told
+from preflight_magic.rungs.shares import capital, shares, told
 
 METHOD = (
     "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level. "
@@ -48,6 +48,8 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     presence = comparison.presence
     if presence is not None and math.isfinite(presence.p_value):
         measures |= {"presence_p": presence.p_value, "season_shares": shares(comparison, _kind)}
+    # An exact pattern leaves nothing to divide by: there is a season, and no test to show.
+    if presence is not None and math.isfinite(presence.p_value) and math.isfinite(presence.statistic):
         tests = (
             HypothesisTest(
                 test="F test of the pattern",
@@ -70,14 +72,15 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     """Difference at the seasonal lag, remove the pattern, or leave it."""
     if evidence.problem is not None:
-        return Judgement("inconclusive", "not examined", evidence.problem.capitalize())
+        return Judgement("inconclusive", "not examined", capital(evidence.problem))
     found = evidence.measures
     asked, period = cast(int, found["asked"]), cast(int, found["period"])
     p = cast(float, found["presence_p"])
     if asked == 1:
-        return Judgement("clear", "no season asked for", "The series is read without a seasonal period.")
+        return Judgement("clear", "no seasonal period", "The series is read without a seasonal period.")
     if period == 1 or math.isnan(p):
-        return Judgement("clear", "no season can be shown", f"There are too few cycles of {asked} to tell a season.")
+        reason = f"There are too few complete cycles of {asked} to tell a season."
+        return Judgement("clear", "no season can be shown", reason)
     p_text = "p < 0.001" if p < 0.001 else f"p = {p:.3f}"
     if not p < thresholds.season_p:
         reason = f"The F test of a pattern of {period} does not reject at {thresholds.season_p:g} ({p_text})."
@@ -85,7 +88,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     split = cast("Mapping[Hashable, float]", found["season_shares"])
     kind = next(iter(split))
     even = split[kind] < thresholds.even_share
-    reason = f"There is a season of {period} ({p_text}). {told(split, _WORDS)}."
+    reason = f"There is a season of {period} ({p_text}). {told(split, _WORDS)}"
     if even:
         reason += " That is too even to call: both plans are worth a forecast."
     if kind == "difference":

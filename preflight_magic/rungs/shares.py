@@ -36,10 +36,15 @@ def per_cent(share: float) -> str:
 
 
 def told(found: Mapping[Hashable, float], words: Mapping[Hashable, str]) -> str:
-    """Shares in a sentence, the leading answer first: ``92 % of the evidence is for A, 7 % for B``."""
+    """Shares in a sentence, the leading answer first: ``92 % of the evidence is for A, 7 % for B.``"""
     items = list(found.items())
     text = f"{per_cent(items[0][1])} of the evidence is for {words[items[0][0]]}"
     if len(items) > 1:
         rest = max(items[1:], key=lambda item: item[1])
         text += f", {per_cent(rest[1])} for {words[rest[0]]}"
-    return text
+    return f"{capital(text)}."
+
+
+def capital(text: str) -> str:
+    """Text with a capital first letter, the rest as it is."""
+    return text[:1].upper() + text[1:]

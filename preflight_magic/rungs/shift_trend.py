@@ -11,7 +11,7 @@ from preflight_magic.kernels.plan_likelihood import Candidate
 from preflight_magic.model import Evidence, Judgement, RemoveShift, RemoveTrend, Step, TimeSeries, Verdict
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
-from preflight_magic.rungs.shares import shares, told
+from preflight_magic.rungs.shares import capital, shares, told
 from preflight_magic.stamps import stamp_text
 
 METHOD = (
@@ -77,7 +77,7 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     """Remove a shift, and a line where nothing is differenced, when the leading plan has them."""
     if evidence.problem is not None:
-        return Judgement("inconclusive", "not examined", evidence.problem.capitalize())
+        return Judgement("inconclusive", "not examined", capital(evidence.problem))
     found = evidence.measures
     shift_shares = cast("Mapping[Hashable, float]", found["shift_shares"])
     trend_shares = cast("Mapping[Hashable, float]", found["trend_shares"])
@@ -93,15 +93,16 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     if shift == "shift":
         steps.append(RemoveShift(cast("pd.Period", found["shift_at"])))
         heads.append(f"a level shift at {found['shift_text']}")
-    reason = _sentence(told(shift_shares, _WORDS)) if len(shift_shares) > 1 else ""
+    even_trend = trend_shares[trend] < thresholds.even_share
+    even = even_trend or shift_shares[shift] < thresholds.even_share
+    reason = told(shift_shares, _WORDS) if len(shift_shares) > 1 else ""
     if shift == "shift":
-        reason += f" The level changes at {found['shift_text']} (t = {found['shift_t']:.1f})."
-    reason += f" {_sentence(told(trend_shares, _WORDS))}" if trend != "second" else ""
+        reason += f" The level changes at {found['shift_text']} ({_t(cast(float, found['shift_t']))})."
+    reason += f" {told(trend_shares, _WORDS)}" if trend != "second" or even_trend else ""
     if trend == "trend" and differences:
         reason += " It is the mean of the changes, so no step of its own is needed."
     if trend == "second":
         reason += " Two differences leave no trend to remove."
-    even = shift_shares[shift] < thresholds.even_share or trend_shares[trend] < thresholds.even_share
     if even:
         reason += " That is too even to call."
     headline = " and ".join(heads) or ("nothing to remove" if trend == "second" else "no trend, no level shift")
@@ -109,8 +110,11 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     return Judgement(verdict, headline, reason.strip(), tuple(steps))
 
 
-def _sentence(text: str) -> str:
-    return text[:1].upper() + text[1:] + "."
+def _t(value: float) -> str:
+    """t-value in a sentence; beyond a thousand, where only rounding is left unexplained, its size says nothing."""
+    if abs(value) <= 1000.0:
+        return f"t = {value:.1f}"
+    return "t > 1000" if value > 0 else "t < -1000"
 
 
 RUNG = Rung(

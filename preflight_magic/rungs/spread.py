@@ -7,6 +7,7 @@ import math
 from preflight_magic.model import Evidence, Judgement, Log, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
+from preflight_magic.rungs.shares import capital
 
 METHOD = (
     "The series and its logarithm are each described by a line, a seasonal pattern and three lags, and their "
@@ -36,7 +37,7 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     """A log where its gain passes the margin; inconclusive close to it."""
     if evidence.problem is not None:
-        return Judgement("inconclusive", "spread not examined", evidence.problem.capitalize())
+        return Judgement("inconclusive", "spread not examined", capital(evidence.problem))
     gain, smallest = evidence.measures["log_gain"], evidence.measures["smallest"]
     assert isinstance(gain, float)
     assert isinstance(smallest, float)

@@ -23,7 +23,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
-from preflight_magic.rungs.shares import shares, told
+from preflight_magic.rungs.shares import capital, shares, told
 
 METHOD = (
     "Plans with no, one and two differences are models of the same contrasts of the data, so their restricted "
@@ -126,11 +126,11 @@ def _tests(values: NDArray[np.float64], told_series: str) -> list[HypothesisTest
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     """As many differences as the leading plan has."""
     if evidence.problem is not None:
-        return Judgement("inconclusive", "not examined", evidence.problem.capitalize())
+        return Judgement("inconclusive", "not examined", capital(evidence.problem))
     split = cast("Mapping[Hashable, float]", evidence.measures["d_shares"])
     d = cast(int, next(iter(split)))
     even = split[d] < thresholds.even_share
-    reason = f"{told(split, _WORDS)}."
+    reason = told(split, _WORDS)
     if even:
         reason += (
             " That is too even to call: near a unit root no method can tell on so few values, and both forecasts "

@@ -81,8 +81,8 @@ def server(home: Path) -> Iterator[Lab]:
     port = free_port()
     command = [
         *(sys.executable, "-m", "jupyterlab", "--no-browser", "--allow-root", "--ServerApp.ip=127.0.0.1"),
-        *(f"--ServerApp.port={port}", "--ServerApp.port_retries=0", "--IdentityProvider.token=", "--ServerApp.password="),
-        *(f"--ServerApp.root_dir={notebooks}", "--LabApp.expose_app_in_browser=True"),
+        *(f"--ServerApp.port={port}", "--ServerApp.port_retries=0", f"--ServerApp.root_dir={notebooks}"),
+        *("--IdentityProvider.token=", "--ServerApp.password=", "--LabApp.expose_app_in_browser=True"),
     ]
     with (home / "server.log").open("w") as log:
         process = subprocess.Popen(command, env=environment, cwd=home, stdout=log, stderr=subprocess.STDOUT)
@@ -122,10 +122,8 @@ class Lab:
         """Write a notebook of code cells; its file name."""
         self._count += 1
         name = f"walk{self._count}.ipynb"
-        made = [
-            {"cell_type": "code", "id": f"cell-{i}", "metadata": {}, "source": source, "outputs": [], "execution_count": None}
-            for i, source in enumerate(cells)
-        ]  # fmt: skip
+        blank = {"cell_type": "code", "metadata": {}, "outputs": [], "execution_count": None}
+        made = [blank | {"id": f"cell-{i}", "source": source} for i, source in enumerate(cells)]
         kernel = {"kernelspec": {"name": "python3", "display_name": "Python 3", "language": "python"}}
         content = {"cells": made, "metadata": kernel, "nbformat": 4, "nbformat_minor": 5}
         (self.folder / name).write_text(json.dumps(content))
@@ -166,18 +164,19 @@ class Notebook:
         self.page.wait_for_selector(".jp-NotebookPanel .jp-Cell .cm-content", timeout=60_000)
         self.page.wait_for_function("() => window.jupyterapp?.shell?.currentWidget?.sessionContext", timeout=60_000)
         self.page.evaluate(_READY)
-        self.command("application:toggle-left-area") if self.page.locator(".jp-SidePanel:visible").count() else None
+        self.page.evaluate("() => window.jupyterapp.shell.collapseLeft()")
         if dark:
             self.command("apputils:change-theme", {"theme": "JupyterLab Dark"})
-            self.page.wait_for_selector('body[data-jp-theme-light="false"]')
+            self.page.wait_for_selector('body[data-jp-theme-light="false"]', state="attached")
 
     def command(self, name: str, arguments: dict[str, Any] | None = None) -> None:
         """Execute a command of JupyterLab."""
         self.page.evaluate("([n, a]) => window.jupyterapp.commands.execute(n, a)", [name, arguments or {}])
 
-    def run_all(self) -> None:
-        """Run every cell and wait for the end."""
-        self.command("notebook:run-all-cells")
+    def run(self, position: int) -> None:
+        """Run one cell and wait for its end."""
+        self.page.evaluate("i => { window.jupyterapp.shell.currentWidget.content.activeCellIndex = i }", position)
+        self.command("notebook:run-cell")
 
     def cell(self, position: int) -> Locator:
         """A cell of the notebook."""
@@ -191,8 +190,10 @@ class Notebook:
         """Screenshot; `everything` makes the page as high as the notebook first."""
         if everything:
             size = self.page.viewport_size or {"width": 1280, "height": 1000}
-            reach = "() => Math.max(...[...document.querySelectorAll('.jp-WindowedPanel-outer')].map(e => e.scrollHeight))"
-            self.page.set_viewport_size({"width": size["width"], "height": int(self.page.evaluate(reach)) + 120})
+            panel = self.page.locator(".jp-WindowedPanel-outer").first
+            reach = int(panel.evaluate("e => e.querySelector('.jp-WindowedPanel-viewport').offsetHeight"))
+            self.page.set_viewport_size({"width": size["width"], "height": reach + 140})
+            panel.evaluate("e => { e.scrollTop = 0 }")
             self.page.wait_for_timeout(300)
             self.page.screenshot(path=path)
             self.page.set_viewport_size(size)

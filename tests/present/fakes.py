@@ -60,7 +60,7 @@ def findings(steps: tuple[Step, ...]) -> dict[str, Finding]:
         if name == "unit root":
             differences = tuple(s for s in steps if isinstance(s, Difference))
             verdict, headline, proposed = "transform", f"{len(differences)} differences", differences
-        measures: dict[str, object] = {"share missing": 0.0167, "lambda": (0.05, -0.12, 0.21)}
+        measures: dict[str, object] = {"missing_share": 0.0167, "lambda": (0.05, -0.12, 0.21)}
         if name == "roots":
             measures = {
                 "roots": roots(),

@@ -24,7 +24,7 @@ def test_card_of_a_series() -> None:
     assert len(card.picture.correlogram_before) == 25
     assert card.roots is not None
     assert ("half-life", "1.45 months") in card.roots.notes
-    assert [row.cost for row in card.plans] == ["best", "1.4 worse, nearly even", "8.2 worse"]
+    assert [row.odds for row in card.plans] == ["best", "4.1 to 1", "over 1,000 to 1"]
     assert [row.shown for row in card.plans] == [True, False, False]
     assert card.code is not None
     assert card.code.startswith("import numpy")

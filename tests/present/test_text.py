@@ -25,7 +25,7 @@ def test_text_holds_every_finding() -> None:
     for finding in view.findings.values():
         assert finding.question in told
         assert f"{finding.verdict}: {finding.headline}" in told
-    for part in ("◆ transform", view.answer, "log → difference 12", "at most 0.010", "critical values", "1.4 worse"):
+    for part in ("◆ transform", view.answer, "log → difference 12", "at most 0.010", "critical values", "4.1 to 1"):
         assert part in told
     assert "Sources" not in told
 

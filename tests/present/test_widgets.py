@@ -252,7 +252,10 @@ def test_running_a_cell_again_closes_its_last_controls(displayed: list[Handle], 
     assert len(set(widget._instances) - before) == 2 * once
 
 
-def test_cells_without_identity_are_bounded(displayed: list[Handle], kernel: FakeKernel) -> None:
+def test_cells_without_identity_are_bounded(
+    displayed: list[Handle], kernel: FakeKernel, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(registry, "KEPT", 4)
     registry.close_all()
     made = [widgets.show(FakeSeries()) for _ in range(registry.KEPT + 2)]
     closed = [one._closed for one in made if one is not None]

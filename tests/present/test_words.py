@@ -97,6 +97,13 @@ def test_long_name_is_cut() -> None:
     assert words.name_text("x" * 200, 40) == "x" * 39 + "…"
 
 
+@pytest.mark.parametrize(
+    ("log_odds", "text"), [(0.0, "best"), (0.1, "1.1 to 1"), (3.0, "20 to 1"), (9.0, "over 1,000 to 1")]
+)
+def test_odds(log_odds: float, text: str) -> None:
+    assert words.odds(log_odds) == text
+
+
 def test_verdicts_differ_in_shape() -> None:
     assert len(set(words.SHAPES.values())) == 4
     assert words.verdict_text("inconclusive") == "◐ inconclusive"

@@ -1,0 +1,102 @@
+"""p-values and critical values from simulated quantiles, each a surface in the sample size.
+
+A table holds, for each case and level, the coefficients of a quantile of the statistic:
+``a + b / n + c / n**2``, and ``+ d lags / n + e (lags / n)**2`` where the table says so (Cheung and Lai 1995, Journal of
+Business and Economic Statistics 13). Between the levels of the table the normal quantile of the p-value runs straight
+in the statistic (MacKinnon 1996, Journal of Applied Econometrics 11, fits it locally the same way).
+"""
+
+from __future__ import annotations
+
+from functools import cache
+
+import numpy as np
+from scipy.special import ndtr, ndtri
+
+from preflight_magic.kernels.distributions import Bound
+from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.tables import read
+
+_NAMED = ("1%", "5%", "10%")
+
+
+def surface_basis(n: FloatArray, lags: FloatArray) -> FloatArray:
+    """Regressors of a response surface.
+
+    Parameters
+    ----------
+    n, lags : ndarray, shape (cells,)
+        Length of the series and lagged differences in the regression.
+
+    Returns
+    -------
+    ndarray, shape (cells, 5)
+    """
+    return np.stack([np.ones_like(n), 1.0 / n, 1.0 / n**2, lags / n, (lags / n) ** 2], axis=-1)
+
+
+def lower_tail(statistic: float, table: str, case: str, n: int, lags: int = 0) -> tuple[float, Bound]:
+    """Probability of a smaller statistic under the null hypothesis.
+
+    Parameters
+    ----------
+    statistic : float
+    table : str
+        Name of the file without its suffix.
+    case : str
+        Which rows of it.
+    n : int
+        Length of the series.
+    lags : int
+        Lagged differences in the regression.
+
+    Returns
+    -------
+    p_value : float
+    bound : {"exact", "at most", "at least"}
+        Beyond the outermost levels of the table these are returned, as a bound.
+    """
+    levels, quantiles = _quantiles(table, case, n, lags)
+    if statistic <= quantiles[0]:
+        return float(levels[0]), "at most"
+    if statistic >= quantiles[-1]:
+        return float(levels[-1]), "at least"
+    return float(ndtr(np.interp(statistic, quantiles, _probits(table, case)))), "exact"
+
+
+def critical_values(table: str, case: str, n: int, lags: int = 0) -> dict[str, float]:
+    """Quantiles at the usual levels.
+
+    Parameters
+    ----------
+    table, case, n, lags
+        As for `lower_tail`.
+
+    Returns
+    -------
+    dict
+        By level: ``1%``, ``5%`` and ``10%``.
+    """
+    levels, quantiles = _quantiles(table, case, n, lags)
+    return {name: float(quantiles[levels.searchsorted(float(name[:-1]) / 100.0 - 1e-9)]) for name in _NAMED}
+
+
+def _quantiles(table: str, case: str, n: int, lags: int) -> tuple[FloatArray, FloatArray]:
+    levels, coefficients = _surfaces(table, case)
+    basis = surface_basis(np.float64(n), np.float64(lags))
+    # Surfaces of neighbouring levels could cross in a very short series.
+    quantiles: FloatArray = np.maximum.accumulate(coefficients @ basis)
+    return levels, quantiles
+
+
+@cache
+def _surfaces(table: str, case: str) -> tuple[FloatArray, FloatArray]:
+    rows = [row for row in read(table) if row["case"] == case]
+    levels = np.array([float(row["level"]) for row in rows])
+    return levels, np.array([[float(row[name]) for name in "abcde"] for row in rows])
+
+
+@cache
+def _probits(table: str, case: str) -> FloatArray:
+    found: FloatArray = ndtri(_surfaces(table, case)[0])
+    return found

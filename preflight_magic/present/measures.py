@@ -1,0 +1,113 @@
+"""The measures of a rung as labels and values, fit to be read."""
+
+from __future__ import annotations
+
+import datetime as dt
+import math
+from collections.abc import Iterator, Mapping, Sequence
+from typing import cast
+
+import numpy as np
+import pandas as pd
+
+from preflight_magic.model import Root
+from preflight_magic.present import words
+
+LABELS: Mapping[str, str] = {
+    "n": "observations",
+    "kind": "calendar",
+    "freq": "pandas frequency",
+    "season_asked": "season given by the person",
+    "asked": "season asked about",
+    "presence_p": "p-value of a season",
+    "log_gain": "fall of \u22122 log-likelihood with the log",
+    "shift_f": "largest F of a level shift",
+    "shift_t": "t of the level shift",
+    "trend_t": "t of the trend",
+    "differences": "differences, ordinary and seasonal",
+    "d_shares": "evidence by number of differences",
+    "season_shares": "evidence by kind of season",
+    "shift_shares": "evidence for a level shift",
+    "trend_shares": "evidence for a trend",
+    "unit_interval": "all values between 0 and 1",
+    "demand_interval": "mean interval between demands",
+    "demand_variation": "squared coefficient of variation of demands",
+    "psi_sum": "sum of absolute psi weights",
+    "variance_implied": "variance the model implies",
+    "variance_sample": "variance of the sample",
+    "half_life": "half-life",
+}
+"""Labels of measures that cannot be read from their key."""
+
+_HIDDEN = frozenset({"shift_text"})
+_TOLD = (
+    str, bool, int, float, np.bool_, np.number, pd.Period, pd.Timestamp, dt.date, Mapping, np.ndarray, pd.Series,
+    pd.Index, Sequence, frozenset, set,
+)  # fmt: skip
+
+
+def measure_rows(measures: Mapping[str, object], noun: str) -> Iterator[tuple[str, str]]:
+    """Label and value of each measure; what is empty or no plain value is left out.
+
+    Parameters
+    ----------
+    measures : Mapping
+        Of a finding. Keys that end in ``_p`` are p-values, those that end in ``share`` or ``shares`` are shares.
+    noun : str
+        A step of the calendar.
+    """
+    for key, value in measures.items():
+        if key in _HIDDEN or not isinstance(value, _TOLD):
+            continue
+        if isinstance(value, tuple | list) and value and all(isinstance(item, Root) for item in value):
+            yield from root_rows(cast("Sequence[Root]", value), noun)
+            continue
+        told = _value(key, value, noun)
+        if told not in ("", words.NONE):
+            yield label(key), told
+
+
+def label(key: str) -> str:
+    """Label of a measure."""
+    return LABELS.get(key, words.label_text(key))
+
+
+def _value(key: str, value: object, noun: str) -> str:
+    number = isinstance(value, float | int | np.number) and not isinstance(value, bool)
+    if key.endswith("_p") and number:
+        return words.p_value(float(cast(float, value)))
+    if key.endswith("share") and number:
+        return share(float(cast(float, value)))
+    if key.endswith("shares") and isinstance(value, Mapping):
+        return ", ".join(f"{words.plain(str(name))}: {rough_share(float(part))}" for name, part in value.items())
+    if key == "half_life" and number:
+        return f"{words.number(float(cast(float, value)))} {words.plural(noun, float(cast(float, value)))}"
+    return words.value_text(value, noun)
+
+
+def share(value: float) -> str:
+    """Share as percent: ``2.5 %``."""
+    return words.NONE if math.isnan(value) else f"{words.number(100 * value, 2)} %"
+
+
+def rough_share(value: float) -> str:
+    """Share as whole percent, never nothing and never all: ``under 1 %``, ``74 %``, ``over 99 %``."""
+    if math.isnan(value):
+        return words.NONE
+    if value < 0.01:
+        return "under 1 %"
+    return "over 99 %" if value > 0.99 else f"{100 * value:.0f} %"
+
+
+def root_rows(roots: Sequence[Root], noun: str) -> Iterator[tuple[str, str]]:
+    """One row a root; the roots of a seasonal polynomial share a row, since they share their modulus."""
+    groups: dict[tuple[str, str], list[Root]] = {}
+    for root in roots:
+        place = f"{root.modulus:.6f}" if root.seasonal else repr(root)
+        groups.setdefault((root.part, place), []).append(root)
+    for (part, _), group in groups.items():
+        if len(group) == 1:
+            yield f"{part} root", words.root_text(group[0], noun).removeprefix(f"{part} ")
+        else:
+            one = words.root_text(group[0], noun).removeprefix(f"{part} ").split(",")[0]
+            yield f"{part} seasonal roots", f"{one}, {len(group)} roots at the seasonal frequencies"

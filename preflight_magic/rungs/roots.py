@@ -1,0 +1,345 @@
+"""Rung 8: the roots of an ARMA model of the transformed series."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import cast
+
+import numpy as np
+from numpy.typing import NDArray
+
+from preflight_magic.kernels.arma import ArmaFit
+from preflight_magic.kernels.arma_order import search
+from preflight_magic.kernels.arma_parameters import split
+from preflight_magic.kernels.arma_response import implied_variance, response
+from preflight_magic.kernels.arma_roots import CommonFactor, common_factors, inverse_roots
+from preflight_magic.model import (
+    Difference,
+    Evidence,
+    Judgement,
+    Log,
+    Logit,
+    Power,
+    RemovePattern,
+    RemoveShift,
+    RemoveTrend,
+    Root,
+    Step,
+    TimeSeries,
+)
+from preflight_magic.policy import Thresholds
+from preflight_magic.rungs.contract import Context, Rung
+
+MA_AT_ONE = 0.98
+"""Modulus from which an MA root counts as one. Common practice: in a hundred values no estimate tells it from one, and
+an MA root at one is found exactly there with a probability that does not vanish (Sargan and Bhargava 1983,
+Econometrica 51, 799-820)."""
+CYCLE_AT_ONE = 0.98
+"""Modulus from which a cycle hardly fades. Common practice."""
+VARIANCE_FACTOR = 2.0
+"""Ratio from which the variance implied and that of the sample disagree. Common practice."""
+_MOST_WORK = 2e7
+"""Rows times squared number of missing values beyond which their fills are taken for observations."""
+
+METHOD = (
+    "An ARMA model is fitted to the transformed series by exact Gaussian likelihood, its order chosen by corrected "
+    "AIC; missing values are skipped, not filled. The inverse roots of its polynomials are shown with standard errors "
+    "by the delta method. The psi weights are those of the infinite moving average: where their absolute values have a "
+    "finite sum, the model is stationary. Half-life is the time after which the effect of one innovation stays below "
+    "one half. This rung proposes no step; its notes question those already chosen."
+)
+SOURCES = (
+    "Ansley, C. F. (1979). An algorithm for the exact likelihood of a mixed autoregressive-moving average process. "
+    "Biometrika 66, 59-65.",
+    "Brockwell, P. J. and Davis, R. A. (1991). Time Series: Theory and Methods, 2nd ed. Springer.",
+    "Hannan, E. J. and Rissanen, J. (1982). Recursive estimation of mixed autoregressive-moving average order. "
+    "Biometrika 69, 81-94.",
+    "Hurvich, C. M. and Tsai, C.-L. (1989). Regression and time series model selection in small samples. "
+    "Biometrika 76, 297-307.",
+)
+
+
+# --------------------------------------------------------------------------------------------------------- examine
+def examine(series: TimeSeries, context: Context) -> Evidence:
+    """Fit an ARMA model to the transformed series and find its roots.
+
+    Parameters
+    ----------
+    series : TimeSeries
+    context : Context
+        `transformed`, `nuisance` and `steps` are read.
+
+    Returns
+    -------
+    Evidence
+        Measures `order`, `roots`, `ar`, `ma`, `seasonal_ar`, `seasonal_ma` (coefficients: ``1 - c B`` and
+        ``1 + c B``), `psi_sum`, `half_life` (steps), `variance_implied`, `variance_sample`, `common_factors`,
+        `mean_fitted`, `mean`, `log_likelihood`, `aicc`, `differences` and `seasonal_difference` (lag, 0 for none) of
+        the plan, `season` (lag of the seasonal terms tried, 1 for none), `gaps` and `fit`.
+    """
+    if context.transformed is None:
+        return Evidence(problem=series.problem or "there is no transformed series.")
+    values = context.transformed.to_numpy(dtype=np.float64)
+    if not _varies(values, series, context.steps):
+        return Evidence(problem=f"nothing varies in the {len(values)} values left after the plan.")
+    lags = [step.lag for step in context.steps if isinstance(step, Difference)]
+    season = _season(context.steps)
+    removed = any(isinstance(step, RemoveTrend | RemoveShift | RemovePattern) for step in context.steps)
+    mean = not removed and len(lags) < 2
+    nuisance = context.nuisance
+    gaps = 0 if nuisance is None else nuisance.shape[1]
+    skipped = len(values) * gaps**2 <= _MOST_WORK
+    fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance if skipped else None)
+    if fit is None:
+        return Evidence(problem=f"the {len(values) - gaps} values left after the plan are too few for an ARMA model.")
+    return Evidence(
+        {
+            **_described(fit),
+            "variance_sample": float(
+                (values - fit.correction).var() if mean else np.mean((values - fit.correction) ** 2)
+            ),
+            "mean_fitted": mean,
+            "mean": fit.mean,
+            "log_likelihood": fit.log_likelihood,
+            "aicc": fit.aicc,
+            "differences": lags.count(1),
+            "seasonal_difference": max((lag for lag in lags if lag > 1), default=0),
+            "season": season,
+            "gaps": "none" if not gaps else "skipped" if skipped else "filled",
+            "fit": fit,
+        }
+    )
+
+
+def _varies(values: NDArray[np.float64], series: TimeSeries, steps: tuple[Step, ...]) -> bool:
+    """Whether more than the rounding errors of differencing is left."""
+    if not len(values):
+        return False
+    size = float(np.nanmax(np.abs(series.values.to_numpy(dtype=np.float64)), initial=0.0))
+    for step in steps:
+        match step:
+            case Log() | Logit():
+                size = 1.0
+            case Power(exponent=exponent):
+                size = max(size, 1.0) ** exponent
+            case _:
+                pass
+    return float(np.ptp(values)) > 1e-13 * size
+
+
+def _season(steps: tuple[Step, ...]) -> int:
+    """Lag of the seasonal terms to try: that of the seasonal step of the plan, 1 without one."""
+    for step in steps:
+        match step:
+            case Difference(lag=lag) if lag > 1:
+                return lag
+            case RemovePattern(period=period):
+                return period
+            case _:
+                pass
+    return 1
+
+
+def _described(fit: ArmaFit) -> dict[str, object]:
+    order, values = fit.order, fit.coefficients
+    parts = zip(("ar", "ma", "seasonal_ar", "seasonal_ma"), split(order, values), strict=True)
+    found = response(order, values)
+    return {
+        "order": str(order),
+        "roots": inverse_roots(order, values, fit.covariance),
+        **{name: tuple(block.tolist()) for name, block in parts},
+        "psi_sum": found.psi_sum,
+        "half_life": found.half_life,
+        "variance_implied": implied_variance(order, values, fit.variance),
+        "common_factors": common_factors(order, values, fit.covariance),
+    }
+
+
+# ----------------------------------------------------------------------------------------------------------- judge
+def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
+    """Notes on the plan from the roots; no steps."""
+    if evidence.problem is not None:
+        return Judgement("inconclusive", "not examined", evidence.problem[:1].upper() + evidence.problem[1:])
+    found = evidence.measures
+    roots = cast("tuple[Root, ...]", found["roots"])
+    doubts = [*_ar_notes(found, roots, thresholds), *_ma_notes(found, roots)]
+    remarks = _remarks(found)
+    if doubts:
+        headline = doubts[0][0]
+    elif remarks:
+        headline = remarks[0][0]
+    else:
+        headline = _all_well(roots)
+    reason = " ".join(text for _, text in (*doubts, *remarks)) or _reason(found, roots)
+    return Judgement("inconclusive" if doubts else "clear", headline, reason)
+
+
+Note = tuple[str, str]
+"""Headline and sentence."""
+
+
+def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: Thresholds) -> list[Note]:
+    """What AR roots near one say about the differences taken."""
+    cancelled = [factor.ar for factor in cast("tuple[CommonFactor, ...]", found["common_factors"])]
+    notes = []
+    for root in roots:
+        if root.part != "AR" or root in cancelled:
+            continue
+        per_lag = _per_lag(root)
+        near = _reaches_one(per_lag, thresholds.near_unit_modulus)
+        if root.seasonal and near and _is_positive(root, found):
+            wanders = "the season still wanders" if found["seasonal_difference"] else "the season may wander"
+            notes.append(
+                (
+                    wanders,
+                    f"The seasonal AR coefficient is {_told(per_lag)}, so {wanders}: a difference at lag "
+                    f"{found['season']} may be needed.",
+                )
+            )
+        elif not root.seasonal and near and np.isinf(root.period):
+            notes.append(
+                (
+                    "one more difference may be needed",
+                    f"The largest AR root is {_told(per_lag)}, too near one to tell it from one: a shock "
+                    f"{_lasting(found)}, and one more difference may be needed.",
+                )
+            )
+        elif not root.seasonal and np.isfinite(root.period) and root.modulus >= CYCLE_AT_ONE:
+            notes.append(
+                (
+                    "a cycle that hardly fades",
+                    f"A cycle of {root.period:.3g} steps has the AR root {_told(per_lag)} and hardly fades: a season of "
+                    "that length may have been missed.",
+                )
+            )
+    return notes[:2]
+
+
+def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note]:
+    """What MA roots at one say about the differences taken: the model is then not invertible."""
+    notes = []
+    for root in roots:
+        per_lag = _per_lag(root)
+        if root.part != "MA" or not _reaches_one(per_lag, MA_AT_ONE) or not _is_positive(root, found):
+            continue
+        size = f"{_told(per_lag)}: at one the model is not invertible"
+        if root.seasonal and found["seasonal_difference"]:
+            notes.append(
+                (
+                    "a fixed pattern was differenced",
+                    f"The seasonal MA root is {size}, which is what differencing a fixed pattern leaves behind; removing "
+                    "the pattern instead would lose nothing.",
+                )
+            )
+        elif not root.seasonal and (found["differences"] or found["seasonal_difference"]):
+            notes.append(
+                (
+                    "one difference too many",
+                    f"The largest MA root is {size}, which is what one difference too many leaves behind; the plan "
+                    "with one less is worth a look.",
+                )
+            )
+        elif not root.seasonal:
+            notes.append(
+                (
+                    "it may already have been differenced",
+                    f"The largest MA root is {size}, though the plan takes no difference: the series may already have "
+                    "been differenced, or be a change and not a level.",
+                )
+            )
+    return notes[:2]
+
+
+def _remarks(found: Mapping[str, object]) -> list[Note]:
+    """What leaves the plan alone but not the model."""
+    notes = []
+    if np.isinf(cast(float, found["psi_sum"])):
+        notes.append(
+            (
+                "not stationary",
+                "The psi weights have no finite sum: the model is not stationary, and no variance is implied.",
+            )
+        )
+    factors = cast("tuple[CommonFactor, ...]", found["common_factors"])
+    if factors:
+        one = factors[0]
+        within = "" if np.isnan(one.standard_error) else f", {one.distance / one.standard_error:.1f} standard errors"
+        notes.append(
+            (
+                "the order may be too high",
+                f"An AR root of modulus {one.ar.modulus:.2f} and an MA root of {one.ma.modulus:.2f} lie "
+                f"{one.distance:.2f} apart{within}: they may cancel, so one AR and one MA term fewer may do.",
+            )
+        )
+    implied, sample = cast(float, found["variance_implied"]), cast(float, found["variance_sample"])
+    ratio = implied / sample
+    if np.isfinite(ratio) and not 1.0 / VARIANCE_FACTOR <= ratio <= VARIANCE_FACTOR:
+        notes.append(
+            (
+                "model and sample differ in variance",
+                f"The model implies a variance of {implied:.3g} where the sample has {sample:.3g}, "
+                f"{max(ratio, 1.0 / ratio):.1f} times {'less' if ratio > 1.0 else 'more'}: with roots near one a sample "
+                "shows only part of the variance."
+                if ratio > 1.0
+                else f"The model implies a variance of {implied:.3g} where the sample has {sample:.3g}: it does not describe "
+                "all that varies.",
+            )
+        )
+    return notes
+
+
+def _all_well(roots: tuple[Root, ...]) -> str:
+    if not roots:
+        return "white noise"
+    largest = max(roots, key=lambda root: root.modulus if root.part == "AR" else -1.0)
+    return f"stationary, largest AR root {largest.modulus:.2f}" if largest.part == "AR" else "stationary, no AR root"
+
+
+def _reason(found: Mapping[str, object], roots: tuple[Root, ...]) -> str:
+    if not roots:
+        return "Corrected AIC chooses no ARMA term: what the plan leaves is white noise."
+    psi, half = cast(float, found["psi_sum"]), cast(float, found["half_life"])
+    parts = [f"All roots of the {found['order']} lie inside the circle"]
+    cycle = next((r for r in roots if r.part == "AR" and not r.seasonal and 2.0 < r.period < np.inf), None)
+    if cycle is not None:
+        parts.append(f"one pair makes a cycle of {cycle.period:.3g} steps with modulus {cycle.modulus:.2f}")
+    parts.append(f"the absolute psi weights sum to {psi:.3g}, and a shock is halved after {half:.2g} steps")
+    return "; ".join(parts) + "."
+
+
+def _lasting(found: Mapping[str, object]) -> str:
+    half = cast(float, found["half_life"])
+    return f"is halved only after {half:.3g} steps" if np.isfinite(half) else "never fades"
+
+
+def _per_lag(root: Root) -> Root:
+    """A seasonal root per season, as its coefficient; others as they are."""
+    if not root.seasonal:
+        return root
+    span = root.period
+    slope = span * root.modulus ** (span - 1.0)
+    return Root(root.part, root.modulus**span, root.period, root.standard_error * slope, True)
+
+
+def _is_positive(root: Root, found: Mapping[str, object]) -> bool:
+    return root.period == found["season"] if root.seasonal else bool(np.isinf(root.period))
+
+
+def _reaches_one(root: Root, bound: float) -> bool:
+    return root.modulus >= bound or root.modulus + root.standard_error >= 1.0
+
+
+def _told(root: Root) -> str:
+    error = "" if np.isnan(root.standard_error) else f" with a standard error of {root.standard_error:.2g}"
+    return f"{root.modulus:.3f}{error}"
+
+
+RUNG = Rung(
+    name="roots",
+    question="Do the roots of an ARMA model lie inside the circle, and was the right number of differences taken?",
+    after=("unit root",),
+    method=METHOD,
+    sources=SOURCES,
+    examine=examine,
+    judge=judge,
+)

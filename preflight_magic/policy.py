@@ -57,6 +57,9 @@ class Thresholds:
     wandering_odds: float = 0.0
     # Prior standard deviation of a trend's slope, in spreads of the first differences a step.
     slope_scale: float = 0.25
+    # Absolute t-value from which one value stands alone and is left out of the comparison. Common practice is 3 to 4
+    # for one place; the place is searched.
+    outlier_bound: float = 4.5
     # Share of the evidence below which the leading answer to a question is too even to call: odds of 7 to 3.
     # Common practice: Kass and Raftery (1995) call odds below 3 to 1 "not worth more than a bare mention".
     even_share: float = 0.7

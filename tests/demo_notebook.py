@@ -39,7 +39,9 @@ def tidied(notebook: NotebookNode) -> NotebookNode:
     for cell in notebook.cells:
         cell.metadata.pop("execution", None)
         if cell.cell_type == "code":
-            cell.outputs = [one for one in cell.outputs if one.get("name") != "stderr" and WIDGET not in one.get("data", {})]
+            cell.outputs = [
+                one for one in cell.outputs if one.get("name") != "stderr" and WIDGET not in one.get("data", {})
+            ]
     notebook.metadata = {
         "kernelspec": {"display_name": "Python 3", "language": "python", "name": "python3"},
         "language_info": {"file_extension": ".py", "mimetype": "text/x-python", "name": "python"},

@@ -36,8 +36,8 @@ _STARTS: dict[tuple[int, int], tuple[tuple[float, ...], ...]] = {
     (2, 1): ((1.2, -0.4, 0.1), (1.5, -0.55, -0.6), (0.4, 0.1, 0.3), (0.4, 0.1, -0.8), (1.6, -0.8, -0.3)),
 }
 _SEASONAL_START = -0.5
-FIRST_ORDERS = ((0, 0), (1, 0), (0, 1), (1, 1))
-FURTHER_ORDERS = ((2, 0), (0, 2), (2, 1))
+FIRST_ORDERS = ((0, 0), (1, 0), (0, 1), (1, 1), (2, 0))
+FURTHER_ORDERS = ((0, 2), (2, 1))
 """The plain orders (p, q) that are tried, the further ones only where a plan is not far behind."""
 
 

@@ -143,7 +143,8 @@ def quasi_difference_detrend(y: FloatArray, terms: Literal["c", "ct"]) -> FloatA
     quasi[1:] -= root * columns[:-1]
     products = quasi[:, 1:].T @ quasi
     if terms == "c":
-        return start - products[0, 0] / products[0, 1]
+        around: FloatArray = start - products[0, 0] / products[0, 1]
+        return around
     (ay, aa, ab), (by, _, bb) = products.tolist()
     determinant = aa * bb - ab * ab
     level, slope = (bb * ay - ab * by) / determinant, (aa * by - ab * ay) / determinant

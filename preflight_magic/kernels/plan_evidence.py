@@ -44,6 +44,8 @@ class PlanPrior:
         difference where there is a season.
     slope : float
         Prior standard deviation of the slope a step, in units of the spread of the first differences.
+    outlier_bound : float
+        Absolute t-value from which one value stands alone and is left out.
     """
 
     log_margin: float
@@ -53,6 +55,7 @@ class PlanPrior:
     second: float
     wandering: float
     slope: float
+    outlier_bound: float
 
 
 @dataclass(frozen=True)
@@ -248,7 +251,7 @@ def _fits(view: Contrasts, period: int, D: int, best: float, hints: Mapping[Orde
     if hints is not None:
         return _tried(view, hints.keys(), hints)
     fits = _tried(view, [Order(p, q, 0, D, period) for p, q in FIRST_ORDERS], {})
-    if fits and max(one.evidence for one in fits) > best - _HOPELESS:
+    if fits and max(one.evidence for one in fits) > best - _HOPELESS - 0.1 * view.count:
         fits += _tried(view, [Order(p, q, 0, D, period) for p, q in FURTHER_ORDERS], {})
     if D and fits:
         # the leading order once more without its seasonal moving average: a season that wanders freely

@@ -12,16 +12,20 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.special import logsumexp
 
+from preflight_magic.kernels.arma_parameters import polynomials
 from preflight_magic.kernels.breaks import DatedShift, date_shift
+from preflight_magic.kernels.outliers import additive_outliers
 from preflight_magic.kernels.plan_evidence import Assessed, Candidate, PlanPrior, Subject, assess, base_columns, step_t
 from preflight_magic.kernels.power_transform import log_gain
-from preflight_magic.kernels.restricted_likelihood import Array, Levels, missing_columns
+from preflight_magic.kernels.restricted_likelihood import Array, Levels, missing_columns, residuals
 from preflight_magic.kernels.seasonal_presence import Presence, season_presence
 
 __all__ = ["Candidate", "Comparison", "PlanPrior", "compare"]
 
 _SHORTEST_WITH_SHIFT = 24
 """Fewest observed values in which a level shift is looked for. Common practice: a dozen on each side."""
+_MOST_OUTLIERS = 0.05
+"""Share of values above which outliers are not isolated but the way of the series. Common practice."""
 _SMALLEST_STEP = 2.0
 """t-value in the model without it below which a shift cannot win against its prior odds: it is not looked into."""
 
@@ -32,6 +36,7 @@ class Comparison:
 
     `candidates` are sorted, the best first; `weights` are their shares of the evidence, summing to one. `dated` is
     the most likely level shift, whether taken or not. `count` is the number of observed values.
+    `outliers` are positions of isolated outliers, which the comparison left out as if missing.
     """
 
     log: bool
@@ -42,6 +47,7 @@ class Comparison:
     candidates: tuple[Candidate, ...]
     weights: tuple[float, ...]
     count: int
+    outliers: tuple[int, ...]
 
     @property
     def best(self) -> Candidate:
@@ -70,7 +76,6 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     Harville (1974), Bayesian inference for variance components using only error contrasts, Biometrika 61, 383-385;
     Kass and Raftery (1995), Bayes factors, Journal of the American Statistical Association 90, 773-795.
     """
-    n = len(values)
     usable = period if period > 1 and _cycles(values, period) else 1
     gain = log_gain(values, usable)
     log = bool(gain > prior.log_margin)
@@ -79,32 +84,68 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     if not scale > 0.0:
         return None
     x = (x - centre) / scale
-    presence = season_presence(x, usable) if usable > 1 else None
-    pattern = presence is not None and presence.p_value < prior.season_p
-    seen = np.isfinite(x)
-    filled = np.where(seen, x, np.interp(np.arange(n), np.flatnonzero(seen), x[seen]))
-    levels = Levels(filled, usable if pattern else 1, True, pattern, missing_columns(x))
-    subject = Subject(levels, prior, _spread_of_changes(filled, levels.period))
-    found, dates = _assessed(subject, x)
-    if not found:
+    found = _best_plans(x, usable, prior)
+    if found is None:
         return None
-    found.sort(key=lambda candidate: -candidate.evidence)
-    evidence = np.array([candidate.evidence for candidate in found])
-    shifted = next((candidate for candidate in found if candidate.shift is not None), None)
+    outliers = _outliers(found, x, prior.outlier_bound)
+    if outliers:
+        kept = x.copy()
+        kept[list(outliers)] = np.nan
+        found = _best_plans(kept, usable, prior) or found
+    candidates = sorted((one.candidate for one in found.assessed), key=lambda candidate: -candidate.evidence)
+    evidence = np.array([candidate.evidence for candidate in candidates])
+    shifted = next((candidate for candidate in candidates if candidate.shift is not None), None)
     return Comparison(
         log=log,
         log_gain=gain,
         period=usable,
-        presence=presence,
-        dated=dates[shifted.trend] if shifted else None,
-        candidates=tuple(found),
+        presence=found.presence,
+        dated=found.dates[shifted.trend] if shifted else None,
+        candidates=tuple(candidates),
         weights=tuple(np.exp(evidence - logsumexp(evidence)).tolist()),
-        count=int(seen.sum()),
+        count=int(np.isfinite(values).sum()),
+        outliers=outliers,
     )
 
 
-def _assessed(subject: Subject, x: Array) -> tuple[list[Candidate], dict[bool, DatedShift]]:
-    """Every candidate that can be computed, and the dates of the shifts among them by whether there is a trend."""
+@dataclass(frozen=True)
+class _Found:
+    """All assessed plans of a series; dates of shifts by whether there is a trend beside them."""
+
+    assessed: tuple[Assessed, ...]
+    dates: dict[bool, DatedShift]
+    presence: Presence | None
+
+
+def _best_plans(x: Array, period: int, prior: PlanPrior) -> _Found | None:
+    n = len(x)
+    presence = season_presence(x, period) if period > 1 and _cycles(x, period) else None
+    pattern = presence is not None and presence.p_value < prior.season_p
+    seen = np.isfinite(x)
+    filled = np.where(seen, x, np.interp(np.arange(n), np.flatnonzero(seen), x[seen]))
+    levels = Levels(filled, period if pattern else 1, True, pattern, missing_columns(x))
+    assessed, dates = _assessed(Subject(levels, prior, _spread_of_changes(filled, levels.period)), x)
+    return _Found(tuple(assessed), dates, presence) if assessed else None
+
+
+def _outliers(found: _Found, x: Array, bound: float) -> tuple[int, ...]:
+    """Isolated outliers under the leading plan; none where they are too many to be called isolated."""
+    leading = max(found.assessed, key=lambda one: one.candidate.evidence)
+    fit = max(leading.fits, key=lambda one: one.evidence)
+    view = fit.contrasts
+    ar, ma = polynomials(fit.order, fit.coefficients)
+    errors = np.zeros(len(x))
+    errors[len(x) - len(view.stacked) :] = residuals(view, ar, ma)
+    candidate = leading.candidate
+    for lag in (*(fit.order.period,) * candidate.D, *(1,) * candidate.d):
+        ar = np.convolve(ar, np.r_[1.0, np.zeros(lag - 1), -1.0])
+    most = max(2, round(_MOST_OUTLIERS * len(x)))
+    places = additive_outliers(errors, ar, ma, bound=bound, most=most + 1)
+    return () if len(places) > most else tuple(place for place in places if np.isfinite(x[place]))
+
+
+def _assessed(subject: Subject, x: Array) -> tuple[list[Assessed], dict[bool, DatedShift]]:
+    """Every plan that can be computed, and the dates of the shifts among them by whether there is a trend."""
     found: dict[tuple[int, int, bool], Assessed] = {}
     best = -np.inf
     orders = [(1, 0), (0, 0), (2, 0), *(((1, 1), (0, 1)) if subject.levels.pattern else ())]
@@ -119,7 +160,7 @@ def _assessed(subject: Subject, x: Array) -> tuple[list[Candidate], dict[bool, D
             if one is not None:
                 found[d, D, False] = one
                 best = max(best, one.candidate.evidence)
-    candidates = [one.candidate for one in found.values()]
+    every = list(found.values())
     dates: dict[bool, DatedShift] = {}
     if np.isfinite(x).sum() >= _SHORTEST_WITH_SHIFT:
         for trend in (True, False):
@@ -130,8 +171,8 @@ def _assessed(subject: Subject, x: Array) -> tuple[list[Candidate], dict[bool, D
             one = assess(subject, 0, 0, trend=trend, dated=dated, best=best)
             if one is not None:
                 dates[trend] = dated
-                candidates.append(one.candidate)
-    return candidates, dates
+                every.append(one)
+    return every, dates
 
 
 def _cycles(values: Array, period: int) -> bool:

@@ -1,9 +1,9 @@
 """p-values and critical values from simulated quantiles, each a surface in the sample size.
 
-A table holds, for each case and level, the coefficients of a quantile of the statistic:
-``a + b / n + c / n**2``, and ``+ d lags / n + e (lags / n)**2`` where the table says so (Cheung and Lai 1995, Journal of
-Business and Economic Statistics 13). Between the levels of the table the normal quantile of the p-value runs straight
-in the statistic (MacKinnon 1996, Journal of Applied Econometrics 11, fits it locally the same way).
+A table holds, for each case and level, the coefficients of a quantile of the statistic in a series of n values:
+``a + b / n + c / n**2 + d / n**3 + e lags / n + f (lags / n)**2``, the lags as in Cheung and Lai (1995), Journal of
+Business and Economic Statistics 13. Between the levels of the table the normal quantile of the p-value runs straight
+in the statistic; MacKinnon (1996), Journal of Applied Econometrics 11, fits it locally in much the same way.
 """
 
 from __future__ import annotations
@@ -20,19 +20,21 @@ from preflight_magic.kernels.tables import read
 _NAMED = ("1%", "5%", "10%")
 
 
-def surface_basis(n: FloatArray, lags: FloatArray) -> FloatArray:
+def surface_basis(n: FloatArray | float, lags: FloatArray | float) -> FloatArray:
     """Regressors of a response surface.
 
     Parameters
     ----------
-    n, lags : ndarray, shape (cells,)
+    n, lags : float or ndarray, shape (cells,)
         Length of the series and lagged differences in the regression.
 
     Returns
     -------
-    ndarray, shape (cells, 5)
+    ndarray, shape (6,) or (cells, 6)
     """
-    return np.stack([np.ones_like(n), 1.0 / n, 1.0 / n**2, lags / n, (lags / n) ** 2], axis=-1)
+    x = 1.0 / np.asarray(n, dtype=np.float64)
+    basis: FloatArray = np.stack([np.ones_like(x), x, x**2, x**3, lags * x, (lags * x) ** 2], axis=-1)
+    return basis
 
 
 def lower_tail(statistic: float, table: str, case: str, n: int, lags: int = 0) -> tuple[float, Bound]:
@@ -83,7 +85,7 @@ def critical_values(table: str, case: str, n: int, lags: int = 0) -> dict[str, f
 
 def _quantiles(table: str, case: str, n: int, lags: int) -> tuple[FloatArray, FloatArray]:
     levels, coefficients = _surfaces(table, case)
-    basis = surface_basis(np.float64(n), np.float64(lags))
+    basis = surface_basis(n, lags)
     # Surfaces of neighbouring levels could cross in a very short series.
     quantiles: FloatArray = np.maximum.accumulate(coefficients @ basis)
     return levels, quantiles
@@ -93,7 +95,7 @@ def _quantiles(table: str, case: str, n: int, lags: int) -> tuple[FloatArray, Fl
 def _surfaces(table: str, case: str) -> tuple[FloatArray, FloatArray]:
     rows = [row for row in read(table) if row["case"] == case]
     levels = np.array([float(row["level"]) for row in rows])
-    return levels, np.array([[float(row[name]) for name in "abcde"] for row in rows])
+    return levels, np.array([[float(row[name]) for name in "abcdef"] for row in rows])
 
 
 @cache

@@ -194,6 +194,13 @@ def evaluate(view: Contrasts, ar: Array, ma: Array) -> tuple[float, Array]:
     return value, series * np.exp(log_determinant / (2.0 * m))
 
 
+def residuals(view: Contrasts, ar: Array, ma: Array) -> Array:
+    """One-step errors of an ARMA model seen through a plan, regressors taken out; shape (rows,)."""
+    whitened, _ = whiten(ar, ma, view.stacked)
+    found = np.linalg.lstsq(whitened[:, 1:], whitened[:, 0], rcond=None)[0]
+    return np.asarray(whitened[:, 0] - whitened[:, 1:] @ found, dtype=float)
+
+
 def effects(view: Contrasts, ar: Array, ma: Array) -> tuple[Array, Array]:
     """Generalised least squares effects of the regressors in their own units.
 

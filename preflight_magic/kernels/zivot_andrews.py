@@ -12,7 +12,6 @@ from numpy.typing import NDArray
 from scipy.linalg.lapack import dgeqrf, dorgqr
 
 from preflight_magic.kernels.dickey_fuller import (
-    EPSILON,
     ROUNDING,
     finite_range,
     longest_lag,
@@ -21,7 +20,7 @@ from preflight_magic.kernels.dickey_fuller import (
 )
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.lag_length import Criterion
-from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.least_squares import FloatArray, leading_rank
 from preflight_magic.kernels.long_run_variance import within_rounding
 from preflight_magic.kernels.response_surfaces import critical_values, lower_tail
 
@@ -124,9 +123,7 @@ def zivot_andrews(
     p_value, bound = lower_tail(statistic, _TABLE, model, y.size)
     critical = critical_values(_TABLE, model, y.size)
     nobs = y.size - 1 - chosen
-    return ZivotAndrewsResult(
-        statistic, p_value, bound, int(dates[best]), model, chosen, nobs, TRIMMING, critical
-    )
+    return ZivotAndrewsResult(statistic, p_value, bound, int(dates[best]), model, chosen, nobs, TRIMMING, critical)
 
 
 def level_t_ratios(
@@ -163,11 +160,10 @@ def level_t_ratios(
     if base is None or not dates.size or nobs <= coefficients:
         return dates[:0], np.empty(0)
     columns, beside, error = base
-    level, difference, dummies = _breaks(columns, nobs, dates - lags - 1, model)
     # Products of the level, of the part of the difference beyond it, and of both, after the break is taken out.
     kept = np.ones(dates.size, dtype=bool)
     ll, rr, lr = np.ones(dates.size), np.ones(dates.size), np.zeros(dates.size)
-    for to_level, to_difference, squares, full in zip(level, difference, *dummies, strict=True):
+    for to_level, to_difference, squares, full in _breaks(columns, dates - lags - 1, model):
         kept &= squares > _INDEPENDENT * full
         safe = np.where(kept, squares, 1.0)
         ll -= to_level**2 / safe
@@ -200,3 +196,30 @@ def _orthonormal(y: FloatArray, lags: int) -> tuple[FloatArray, float, float] | 
         orthonormal[:, -2] *= -1.0
         beside = -beside
     return orthonormal, beside, error
+
+
+def _breaks(
+    columns: FloatArray, first: NDArray[np.intp], model: BreakModel
+) -> list[tuple[FloatArray, FloatArray, FloatArray, FloatArray]]:
+    """What breaks at each row of `first` share with the level and with the remainder, beyond all other regressors.
+
+    One entry a regressor, each orthogonal to the one before: products with the level, products with the remainder,
+    squared length left, squared length at first.
+    """
+    after: FloatArray = columns[::-1].cumsum(axis=0)
+    rows = columns.shape[0] - 1 - first
+    step = after[rows]
+    m = rows + 1.0
+    step_left = m - (step[:, :-2] ** 2).sum(axis=1)
+    jump = (step[:, -2], step[:, -1], step_left, m)
+    if model == "level":
+        return [jump]
+    slope = after.cumsum(axis=0)[rows]
+    full = m * (m + 1.0) * (2.0 * m + 1.0) / 6.0
+    slope_left = full - (slope[:, :-2] ** 2).sum(axis=1)
+    if model == "trend":
+        return [(slope[:, -2], slope[:, -1], slope_left, full)]
+    shared = m * (m + 1.0) / 2.0 - (step[:, :-2] * slope[:, :-2]).sum(axis=1)
+    share = shared / np.where(step_left > _INDEPENDENT * m, step_left, 1.0)
+    beyond = slope[:, -2] - share * step[:, -2], slope[:, -1] - share * step[:, -1], slope_left - share * shared
+    return [jump, (*beyond, full)]

@@ -22,7 +22,7 @@ def el(tag: str, *children: Child, **attributes: str | int | bool | None) -> Mar
     """Element with children and attributes.
 
     Strings are escaped unless they are `Markup`; None is left out; sequences are flattened. A trailing underscore of
-    an attribute's name is dropped and others become hyphens; True gives an attribute without a value.
+    an attribute's name is dropped and others become hyphens; True gives an attribute its own name as value.
     """
     told = "".join(_attribute(name, value) for name, value in attributes.items())
     if tag in _VOID:
@@ -49,7 +49,8 @@ def _attribute(name: str, value: str | int | bool | None) -> str:
     if value is None or value is False:
         return ""
     name = name.rstrip("_").replace("_", "-")
-    return f" {name}" if value is True else f' {name}="{html.escape(str(value), quote=True)}"'
+    # An attribute without a value is dropped by some hosts that clean markup.
+    return f' {name}="{name if value is True else html.escape(str(value), quote=True)}"'
 
 
 def picture(png: bytes, alt: str, width: int, extra: str = "", onload: str | None = None) -> Markup:

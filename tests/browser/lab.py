@@ -148,6 +148,7 @@ class Lab:
             opened = Notebook(page, name)
             opened.ready(dark)
             yield opened
+            page.evaluate("() => window.jupyterapp.shell.currentWidget.sessionContext.shutdown()")
         finally:
             page.close()
             context.close()

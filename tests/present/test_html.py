@@ -165,7 +165,7 @@ def test_compared_plans_stand_open_where_a_person_decides() -> None:
 
 def test_elements_escape_what_is_not_markup() -> None:
     assert el("p", "<i>", Markup("<b>x</b>"), None, ["&", el("br")], title='"', hidden=True, id=None) == (
-        '<p title="&quot;" hidden>&lt;i&gt;<b>x</b>&amp;<br></p>'
+        '<p title="&quot;" hidden="hidden">&lt;i&gt;<b>x</b>&amp;<br></p>'
     )
     assert join(["\ud800"]) == "?"
 

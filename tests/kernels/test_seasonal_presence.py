@@ -1,0 +1,80 @@
+"""Is there a season at all?"""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from scipy.signal import lfilter
+from statsmodels.regression.linear_model import OLS
+
+from preflight_magic.kernels.seasonal_presence import season_presence
+
+
+def noise(n, ar=(), seed=0):
+    e = np.random.default_rng(seed).standard_normal(n + 100)
+    return lfilter([1.0], np.r_[1.0, -np.asarray(ar)], e)[100:]
+
+
+def referee(values, period):
+    """The same regression in another library, with plain dummies."""
+    n = len(values)
+    lags = np.column_stack([np.r_[np.full(k, np.nan), values[:-k]] for k in (1, 2, 3)])
+    dummies = (np.arange(n)[:, None] % period == np.arange(period)).astype(float)
+    full, without = np.column_stack([dummies, np.arange(n), lags]), np.column_stack([np.ones(n), np.arange(n), lags])
+    rows = np.isfinite(full).all(axis=1) & np.isfinite(values)
+    return OLS(values[rows], full[rows]).fit().compare_f_test(OLS(values[rows], without[rows]).fit())
+
+
+@pytest.mark.parametrize("period", [4, 12])
+@pytest.mark.parametrize("gaps", [(), (9, 30, 31)])
+def test_f_test_of_the_dummies(period, gaps):
+    values = noise(110, (0.5,)) + 0.4 * np.sin(2 * np.pi * np.arange(110) / period)
+    values[list(gaps)] = np.nan
+    found = season_presence(values, period)
+    statistic, p_value, degrees = referee(values, period)
+    assert found.statistic == pytest.approx(statistic, rel=1e-8)
+    assert found.p_value == pytest.approx(p_value, rel=1e-7)
+    assert found.numerator == degrees == period - 1
+
+
+@pytest.mark.parametrize("factor", [1e-8, 1e8])
+def test_unit_and_level_change_nothing(factor):
+    values = noise(96, (0.5,))
+    one, other = season_presence(values, 12), season_presence(factor * (values + 50), 12)
+    assert other.p_value == pytest.approx(one.p_value, rel=1e-5)
+
+
+@pytest.mark.parametrize("ar", [(), (0.8,), (1.0,), (0.5, 0.5)], ids=str)
+def test_dependence_is_seldom_taken_for_a_season(ar):
+    p = np.array([season_presence(noise(120, ar, seed), 12).p_value for seed in range(80)])
+    # 0.001 of 80 is none; two are allowed for.
+    assert (p < 0.001).sum() <= 2
+    assert 0.005 <= (p < 0.05).mean() + 1 / 80 <= 0.2
+
+
+@pytest.mark.parametrize("ar", [(), (0.8,), (1.0,)], ids=str)
+def test_clear_pattern_is_found_on_any_level(ar):
+    pattern = 3.0 * np.array([1, 0, -1, 2, 0, 0, -2, 1, 1, -1, 0, -1.0])
+    for seed in range(5):
+        assert season_presence(noise(96, ar, seed) + pattern[np.arange(96) % 12], 12).p_value < 1e-3
+
+
+def test_wandering_season_is_found():
+    for seed in range(5):
+        values = np.cumsum(noise(96, seed=seed).reshape(8, 12), axis=0).ravel()
+        assert season_presence(values, 12).p_value < 0.01
+
+
+def test_exact_pattern_is_a_season():
+    found = season_presence(np.tile(np.random.default_rng(0).standard_normal(12), 6), 12)
+    assert found.p_value == 0.0
+
+
+def test_constant_has_none():
+    assert season_presence(np.zeros(60), 12).p_value == 1.0
+
+
+def test_too_short():
+    found = season_presence(noise(18), 12)
+    assert np.isnan(found.p_value)
+    assert np.isnan(found.statistic)

@@ -3,8 +3,8 @@
 Examples
 --------
 >>> import preflight_magic as pf
->>> report = pf.check(pf.demo.ferry_line(), progress=False)
->>> str(report["fuel price"].plan)  # doctest: +SKIP
+>>> report = pf.check(pf.demo.ferry_line(), only="fuel_price", progress=False)
+>>> str(report["fuel_price"].plan)
 'difference 1'
 """
 

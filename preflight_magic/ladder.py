@@ -147,6 +147,7 @@ def prior_of(thresholds: Thresholds) -> PlanPrior:
         season_p=thresholds.season_p,
         trend=thresholds.trend_odds,
         shift=thresholds.shift_odds,
+        difference=thresholds.difference_odds,
         second=thresholds.second_difference_odds,
         wandering=thresholds.wandering_odds,
         slope=thresholds.slope_scale,

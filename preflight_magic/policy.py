@@ -47,11 +47,13 @@ class Thresholds:
 
     # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
     # simpler plan is preferred a little; the amounts are common practice and were checked by simulation.
-    # Against a trend: odds of 4.5 to 1.
-    trend_odds: float = 1.5
-    # Against a level shift at any date: odds of 7.4 to 1, besides the number of dates it might have.
-    shift_odds: float = 2.0
-    # Against a second difference: odds of 2.7 to 1.
+    # Against a trend: odds of 2.7 to 1.
+    trend_odds: float = 1.0
+    # Against a level shift at any date: odds of 2.7 to 1, besides the number of dates it might have.
+    shift_odds: float = 1.0
+    # Against a first difference: odds of 1.6 to 1.
+    difference_odds: float = 0.5
+    # Against a second difference on top of it: odds of 2.7 to 1.
     second_difference_odds: float = 1.0
     # Against a seasonal difference where there is a season: even odds.
     wandering_odds: float = 0.0

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable, Mapping
+from collections.abc import Callable, Hashable, Mapping
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -26,6 +26,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
+from preflight_magic.reference import reference_forecast
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -173,18 +174,40 @@ class SeriesReport:
             raise CheckError(f"There is no code of the form {form!r}; use 'pandas'.")
         return proved_code([self])
 
+    def reference_forecast(self, horizon: int | None = None, coverage: float = 0.9) -> pd.DataFrame:
+        """Forecast with the ARMA model of the roots rung: a yardstick for the real model.
+
+        Parameters
+        ----------
+        horizon : int, optional
+            Steps ahead; by default `horizon`.
+        coverage : float
+            Probability of the interval.
+
+        Returns
+        -------
+        DataFrame
+            ``median``, ``mean``, ``lower``, ``upper`` on the future index, in the original units.
+
+        Raises
+        ------
+        CheckError
+            For a series that could not be checked, or options out of range.
+        """
+        return reference_forecast(self, self.horizon if horizon is None else horizon, coverage)
+
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""
-        return self._again(self.plan.without(step))
+        return self._again(lambda plan: plan.without(step))
 
     def put_in(self, step: Step) -> SeriesReport:
         """Examine the series again with one more step, at its place in canonical order."""
-        return self._again(self.plan.with_step(step))
+        return self._again(lambda plan: plan.with_step(step))
 
-    def _again(self, plan: Plan) -> SeriesReport:
+    def _again(self, change: Callable[[Plan], Plan]) -> SeriesReport:
         if self.problem is not None:
             raise CheckError(self.problem)
-        found = climb(self._source, self._settings, plan, self._found)
+        found = climb(self._source, self._settings, change(self.plan), self._found)
         return SeriesReport(self._source, self._settings, found)
 
     @property

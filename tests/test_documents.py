@@ -15,7 +15,6 @@ from importlib import metadata
 from pathlib import Path
 from typing import get_args
 
-import matplotlib as mpl
 import numpy as np
 import pandas as pd
 import pytest
@@ -251,7 +250,7 @@ def test_the_package_works_without_what_only_developers_need(tmp_path: Path) -> 
         "report.save('freight.html')\n"
         "print(report['freight'].plan)\n"
     )
-    environment = os.environ | {"PYTHONPATH": str(ROOT), "MPLCONFIGDIR": mpl.get_configdir()}
+    environment = os.environ | {"PYTHONPATH": str(ROOT)}
     done = subprocess.run(
         [sys.executable, "-W", "error", "-c", code], cwd=tmp_path, env=environment, capture_output=True, text=True
     )

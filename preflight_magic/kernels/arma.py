@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -39,7 +39,7 @@ class ArmaFit:
     covariance : ndarray, shape (order.size, order.size)
         Of the coefficients, from the observed information; NaN for those at the edge of the parameter space.
     nobs : int
-        Observed values: rows less nuisance columns.
+        Observed values, less the number of fixed columns.
     parameters : int
         Numbers estimated: coefficients, mean and variance.
     innovations : ndarray, shape (n,)
@@ -47,6 +47,9 @@ class ArmaFit:
         enters with its expectation given all others.
     correction : ndarray, shape (n,)
         What the nuisance columns explain: the series less this holds, at missing values, their expectations.
+    restricted : ndarray, shape (order.size,)
+        Coefficients at the maximum of the restricted likelihood, into which the mean enters by its contrasts only:
+        less drawn to stationary AR roots and to MA roots at one. The same as `coefficients` where no mean was fitted.
     exact : bool
         Whether the likelihood is exact; else it is conditional on the values before the first being at the mean.
     """
@@ -62,6 +65,7 @@ class ArmaFit:
     parameters: int
     innovations: Array
     correction: Array
+    restricted: Array
     exact: bool = True
 
     def __str__(self) -> str:
@@ -236,7 +240,13 @@ def starts(sample: Sample, order: Order, filled: Array) -> list[Array]:
 
 
 def fit(
-    values: Array, order: Order, *, mean: bool, nuisance: Array | None = None, start: Array | None = None
+    values: Array,
+    order: Order,
+    *,
+    mean: bool,
+    nuisance: Array | None = None,
+    fixed: Array | None = None,
+    start: Array | None = None,
 ) -> ArmaFit | None:
     """Fit one seasonal ARMA model by exact Gaussian maximum likelihood.
 
@@ -250,6 +260,8 @@ def fit(
     nuisance : ndarray, shape (n, k), optional
         Columns with flat effects: one indicator per missing value, differenced as the series was. The likelihood is
         then that of the observed values (see `arma_likelihood.evaluate`).
+    fixed : ndarray, shape (n, l), optional
+        Columns whose effects were taken out of the series before; the likelihood is then restricted.
     start : ndarray, shape (order.size,), optional
         Coefficients where the search starts; by default those of conditional least squares.
 
@@ -258,12 +270,20 @@ def fit(
     ArmaFit or None
         None with too few values, where nothing varies, or where no start has a finite likelihood.
     """
-    sample = prepare(values, mean=mean, nuisance=nuisance)
+    sample = prepare(values, mean=mean, nuisance=nuisance, fixed=fixed)
     if sample is None or order.size + mean + 1 >= sample.count:
         return None
     points = [np.asarray(start, dtype=float)] if start is not None else starts(sample, order, centred(sample))
     found = maximise(sample, order, points)
-    return None if found is None else finish(sample, found)
+    if found is None:
+        return None
+    beside = maximise(contrasts(sample), order, [coefficients(order, found.free)], 1e-6) if mean else None
+    return finish(sample, found, beside)
+
+
+def contrasts(sample: Sample) -> Sample:
+    """The same sample with its mean among the columns that have flat effects: the restricted likelihood."""
+    return replace(sample, mean=False, flat=sample.flat + 1) if sample.mean else sample
 
 
 def centred(sample: Sample) -> Array:
@@ -272,8 +292,8 @@ def centred(sample: Sample) -> Array:
     return series - series.mean() if sample.mean else series
 
 
-def finish(sample: Sample, found: Maximum) -> ArmaFit:
-    """What is reported of a maximum: polished, with covariance, innovations and the unit of the series."""
+def finish(sample: Sample, found: Maximum, beside: Maximum | None = None) -> ArmaFit:
+    """What is reported of a maximum, and of that of the restricted likelihood where it differs."""
     order = found.order
     if order.size:
         found, inverse = _polish(sample, found)
@@ -282,7 +302,7 @@ def finish(sample: Sample, found: Maximum) -> ArmaFit:
         covariance = np.empty((0, 0))
     estimates = coefficients(order, found.free)
     columns, _ = whitened_columns(sample, order, estimates)
-    n, gaps, m = len(columns), sample.gaps, sample.count
+    n, gaps, flat, m = len(columns), sample.gaps, sample.flat, sample.count
     residuals, effects, factor = regress(columns) if columns.shape[1] > 1 else (columns[:, 0], np.empty(0), None)
     variance = float(residuals @ residuals) / m
     innovations = residuals / np.sqrt(variance)
@@ -290,8 +310,8 @@ def finish(sample: Sample, found: Maximum) -> ArmaFit:
     if sample.mean and factor is not None:
         mean = float(effects[-1]) * sample.scale
         mean_error = float(np.sqrt(variance)) * sample.scale / float(factor[-1, -1])
-    if gaps:
-        basis = np.linalg.qr(columns[:, :gaps])[0]
+    if flat:
+        basis = np.linalg.qr(columns[:, :flat])[0]
         innovations = innovations / np.sqrt(np.maximum(1.0 - (basis**2).sum(axis=1), 1e-8))
         innovations[sample.missing] = np.nan
     return ArmaFit(
@@ -306,5 +326,6 @@ def finish(sample: Sample, found: Maximum) -> ArmaFit:
         parameters=order.size + int(sample.mean) + 1,
         innovations=innovations,
         correction=sample.stacked[:, :gaps] @ effects[:gaps] * sample.scale if gaps else np.zeros(n),
+        restricted=estimates if beside is None else coefficients(order, beside.free),
         exact=is_exact(sample, order),
     )

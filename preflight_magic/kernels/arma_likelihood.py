@@ -29,9 +29,11 @@ class Sample:
 
     Attributes
     ----------
-    stacked : ndarray, shape (n, gaps + mean + 1)
-        Orthonormal nuisance columns, ones if there is a mean, and the series divided by `scale`.
-    gaps : int
+    stacked : ndarray, shape (n, flat + mean + 1)
+        Nuisance columns and fixed columns, each set orthonormal, ones if there is a mean, and the series divided by
+        `scale`.
+    gaps, flat : int
+        Nuisance columns; nuisance and fixed columns: all those with flat effects.
     mean : bool
     scale : float
     missing : ndarray of int
@@ -40,25 +42,30 @@ class Sample:
 
     stacked: Array
     gaps: int
+    flat: int
     mean: bool
     scale: float
     missing: NDArray[np.intp]
 
     @property
     def count(self) -> int:
-        """Observed values."""
-        return len(self.stacked) - self.gaps
+        """Rows less columns with flat effects."""
+        return len(self.stacked) - self.flat
 
 
-def prepare(values: Array, *, mean: bool, nuisance: Array | None = None) -> Sample | None:
-    """Scale a series and orthonormalise its nuisance columns.
+def prepare(values: Array, *, mean: bool, nuisance: Array | None = None, fixed: Array | None = None) -> Sample | None:
+    """Scale a series and orthonormalise its columns with flat effects.
 
     Parameters
     ----------
     values : ndarray, shape (n,)
         No NaN.
     mean : bool
+        Whether a mean is estimated.
     nuisance : ndarray, shape (n, k), optional
+        Indicators of missing values.
+    fixed : ndarray, shape (n, l), optional
+        Columns whose effects were taken out of the series before: line, shift, pattern.
 
     Returns
     -------
@@ -66,22 +73,43 @@ def prepare(values: Array, *, mean: bool, nuisance: Array | None = None) -> Samp
         None with fewer than `FEWEST` observed values, with values that are not finite, or where nothing varies.
     """
     series = np.asarray(values, dtype=float)
-    columns = np.empty((len(series), 0)) if nuisance is None else np.asarray(nuisance, dtype=float)
-    if len(series) - columns.shape[1] < FEWEST or not np.isfinite(series).all() or does_not_vary(series):
+    if len(series) < FEWEST or not np.isfinite(series).all() or does_not_vary(series):
         return None
-    observed = series
-    missing = np.unique((columns != 0.0).argmax(axis=0)) if columns.shape[1] else np.empty(0, dtype=np.intp)
-    if columns.shape[1]:
-        basis, triangle, _ = qr(columns, mode="economic", pivoting=True)
-        size = np.abs(triangle.diagonal())
-        columns = basis[:, : int((size > 1e-9 * max(size[0], 1e-300)).sum())]
-        observed = series - columns @ (columns.T @ series)
+    none = np.empty((len(series), 0))
+    given = none if nuisance is None else np.asarray(nuisance, dtype=float)
+    gaps = _basis(given, none)
+    missing = np.unique((given != 0.0).argmax(axis=0)) if given.shape[1] else np.empty(0, dtype=np.intp)
+    others = _basis(none if fixed is None else np.asarray(fixed, dtype=float), gaps)
+    if len(series) - gaps.shape[1] - others.shape[1] < FEWEST:
+        return None
+    observed = series - gaps @ (gaps.T @ series)
     centre = float(observed.mean()) if mean else 0.0
     scale = float(np.sqrt(np.mean((observed - centre) ** 2)))
     if not scale > _ROUNDING * float(np.abs(series).max()):
         return None
-    parts = [columns, np.ones((len(series), int(mean))), series[:, None] / scale]
-    return Sample(np.asfortranarray(np.column_stack(parts)), columns.shape[1], mean, scale, missing)
+    parts = [gaps, others, np.ones((len(series), int(mean))), series[:, None] / scale]
+    flat = gaps.shape[1] + others.shape[1]
+    return Sample(np.asfortranarray(np.column_stack(parts)), gaps.shape[1], flat, mean, scale, missing)
+
+
+def _basis(columns: Array, others: Array) -> Array:
+    """Orthonormal basis of those columns that add something to `others`, itself orthonormal."""
+    if columns.shape[1] == 0:
+        return columns
+    if others.shape[1]:
+        columns = columns[:, _pivoted(columns - others @ (others.T @ columns))[1]]
+        if columns.shape[1] == 0:
+            return columns
+    basis, kept = _pivoted(columns)
+    return basis[:, : len(kept)]
+
+
+def _pivoted(columns: Array) -> tuple[Array, NDArray[np.intp]]:
+    """Orthonormal basis by pivoting, and the columns that are linearly independent."""
+    basis, triangle, order = qr(columns, mode="economic", pivoting=True)
+    size = np.abs(np.asarray(triangle, dtype=np.float64).diagonal())
+    rank = int((size > 1e-9 * max(float(size[0]), 1e-300)).sum())
+    return np.asarray(basis, dtype=np.float64), np.asarray(order, dtype=np.intp)[:rank]
 
 
 def whitened_columns(sample: Sample, order: Order, values: Array) -> tuple[Array, float]:
@@ -131,15 +159,16 @@ def evaluate(sample: Sample, order: Order, values: Array) -> tuple[float, Array]
 
     Notes
     -----
-    The nuisance columns Z have flat effects: the likelihood integrated over them is ``N - k`` observations, the
-    residual sum of squares after them, and ``-1/2 log|Z' V^-1 Z|``. With one indicator per missing value, differenced
-    as the series was, that is the density of the observed values up to a factor without parameters; without
-    differences the factor is one. The columns are orthonormalised first, which also leaves parameters untouched.
+    Nuisance and fixed columns Z have flat effects: the likelihood integrated over them is that of ``N - k``
+    observations, with the residual sum of squares after them and the term ``-1/2 log|Z' V^-1 Z|``. With one indicator
+    per missing value, differenced as the series was, it is the density of the observed values up to a factor without
+    parameters; without differences the factor is one. With the columns of what was removed by least squares it is the
+    restricted likelihood (Harville 1974), which the removal does not bias: it is the same before and after it.
     """
     series, log_determinant = whitened_columns(sample, order, values)
     if series.shape[1] > 1:
         residuals, _, factor = regress(series)
-        log_determinant += 2.0 * float(np.log(factor.diagonal()[: sample.gaps]).sum())
+        log_determinant += 2.0 * float(np.log(factor.diagonal()[: sample.flat]).sum())
     else:
         residuals = series[:, 0]
     m = sample.count

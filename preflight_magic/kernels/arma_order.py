@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from preflight_magic.kernels.arma import ArmaFit, Maximum, centred, corrected_aic, finish, maximise
-from preflight_magic.kernels.arma_conditional import Regression, refine, regression, start
+from preflight_magic.kernels.arma import ArmaFit, Maximum, centred, contrasts, corrected_aic, finish, maximise
+from preflight_magic.kernels.arma_conditional import refine, regression, start
 from preflight_magic.kernels.arma_likelihood import Sample, prepare
 from preflight_magic.kernels.arma_parameters import Array, Order
 from preflight_magic.kernels.arma_parameters import coefficients as bounded
@@ -36,6 +36,7 @@ def search(
     mean: bool,
     seasonal: bool = False,
     nuisance: Array | None = None,
+    fixed: Array | None = None,
     most: tuple[int, int] = (2, 2),
 ) -> ArmaFit | None:
     """Choose an order and fit it.
@@ -52,6 +53,8 @@ def search(
         Whether orders with a seasonal AR or MA coefficient are tried.
     nuisance : ndarray, shape (n, k), optional
         See `arma.fit`. The ranking sees the filled values, the likelihoods do not.
+    fixed : ndarray, shape (n, l), optional
+        See `arma.fit`.
     most : (int, int)
         Largest plain AR and MA orders; with two AR terms or more a pure AR(3) is tried too.
 
@@ -64,18 +67,16 @@ def search(
     -----
     Hurvich and Tsai (1989), Regression and time series model selection in small samples, Biometrika 76, 297-307;
     Hannan and Rissanen (1982), Recursive estimation of mixed autoregressive-moving average order, Biometrika 69,
-    81-94. The seasonal terms are ranked first, with a plain ARMA(1,1); the plain orders then with the two best.
+    81-94. The seasonal terms are ranked first, with a plain ARMA(1,1); the plain orders then with the two best. Orders
+    are compared by the restricted likelihood: with a mean, the ordinary one rises at MA roots of one.
     """
-    sample = prepare(values, mean=mean, nuisance=nuisance)
+    sample = prepare(values, mean=mean, nuisance=nuisance, fixed=fixed)
     if sample is None:
         return None
-    found = regression(centred(sample), period if seasonal else 1, max(*most, 3))
-    ranked = _rank(sample, found, period, seasonal and 1 < period < len(values) // 2, most)
+    judged = contrasts(sample)
     best: tuple[float, Maximum] | None = None
-    for one in ranked[:_FINALISTS]:
-        if one.criterion > ranked[0].criterion + _NEAR:
-            break
-        maximum = maximise(sample, one.order, [one.coefficients, *_typical(one.order)], _COARSE)
+    for one in _finalists(sample, period, seasonal and 1 < period < len(values) // 2, most):
+        maximum = maximise(judged, one.order, [one.coefficients, *_typical(one.order)], _COARSE)
         if maximum is None:
             continue
         criterion = corrected_aic(maximum.log_likelihood, one.order.size + mean + 1, sample.count)
@@ -84,16 +85,15 @@ def search(
     if best is None:
         return None
     coarse = best[1]
-    exact = maximise(sample, coarse.order, [bounded(coarse.order, coarse.free)])
-    return finish(sample, exact if exact is not None else coarse)
+    found = maximise(sample, coarse.order, [bounded(coarse.order, coarse.free)])
+    return None if found is None else finish(sample, found, coarse if mean else None)
 
 
-def _rank(sample: Sample, found: Regression, period: int, seasonal: bool, most: tuple[int, int]) -> list[_Ranked]:
-    """Orders with their conditional estimates, the best first."""
+def _finalists(sample: Sample, period: int, seasonal: bool, most: tuple[int, int]) -> list[_Ranked]:
+    """The best orders by conditional estimates; with two kinds of seasonal terms, the best of each."""
     extra = int(sample.mean) + 1
     room = max(sample.count // 4, 1)
-    plain = [(p, q) for p in range(most[0] + 1) for q in range(most[1] + 1)]
-    plain += [(3, 0)] if most[0] >= 2 else []
+    found = regression(centred(sample), period if seasonal else 1, max(*most, 3))
     done: dict[Order, _Ranked] = {}
 
     def ranked(order: Order) -> _Ranked:
@@ -103,19 +103,20 @@ def _rank(sample: Sample, found: Regression, period: int, seasonal: bool, most: 
             done[order] = _Ranked(corrected_aic(height, order.size + extra, sample.count), order, estimate)
         return done[order]
 
+    plain = [(p, q) for p in range(most[0] + 1) for q in range(most[1] + 1)]
+    plain += [(3, 0)] if most[0] >= 2 else []
     terms = [(0, 0)]
     if seasonal:
-        middle = min(1, most[0]), min(1, most[1])
+        middle = Order(min(1, most[0]), min(1, most[1]), period=period)
         pairs = [(P, Q) for P in (0, 1) for Q in (0, 1)]
-        terms = sorted(pairs, key=lambda pair: ranked(Order(middle[0], middle[1], pair[0], pair[1], period)).criterion)[
-            :2
-        ]
+        terms = sorted(pairs, key=lambda pair: ranked(replace(middle, P=pair[0], Q=pair[1])).criterion)[:2]
+    finalists: list[_Ranked] = []
     for P, Q in terms:
-        for p, q in plain:
-            order = Order(p, q, P, Q, period if P or Q else 1)
-            if order.size <= room:
-                ranked(order)
-    return sorted(done.values(), key=lambda one: one.criterion)
+        orders = [Order(p, q, P, Q, period if P or Q else 1) for p, q in plain]
+        group = sorted((ranked(order) for order in orders if order.size <= room), key=lambda one: one.criterion)
+        finalists += group[: _FINALISTS // len(terms)]
+    lowest = min((one.criterion for one in finalists), default=0.0)
+    return [one for one in finalists if one.criterion <= lowest + _NEAR]
 
 
 def _typical(order: Order) -> list[Array]:

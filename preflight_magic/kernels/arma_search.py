@@ -22,7 +22,7 @@ _PRIOR = {
     "ar": ((0.3, 1.0), (0.0, 0.7)),
     "ma": ((-0.2, 1.0), (0.0, 0.5)),
     "sar": ((0.3, 0.7), (0.0, 0.5)),
-    "sma": ((-0.6, 0.7), (0.0, 0.5)),
+    "sma": ((-0.6, 0.5), (0.0, 0.5)),
 }
 
 # Where a search may start, by (p, q): a few typical points, the best of which is taken.
@@ -118,8 +118,8 @@ def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | No
         except NotPositiveDefiniteError:
             return far
 
-    # A relative change of 2e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
-    found = leastsq(residuals, free, ftol=2e-5, xtol=1e-3, epsfcn=1e-10, maxfev=12 * (order.size + 1), full_output=True)
+    # A relative change of 5e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
+    found = leastsq(residuals, free, ftol=5e-5, xtol=3e-3, epsfcn=1e-10, maxfev=12 * (order.size + 1), full_output=True)
     curvature: Array = m * np.eye(order.size)
     try:
         value_there, height_there, scaled = at(found[0])

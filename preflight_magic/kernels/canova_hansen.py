@@ -33,7 +33,7 @@ class FrequencyStability:
         Length of the cycle in steps, from the period down to 2.
     statistic : float
     p_value : float
-        Of the upper tail, in the limiting distribution.
+        Of the upper tail; see `canova_hansen`.
     degrees : int
         2 for a pair of waves, 1 at frequency pi.
     """
@@ -53,7 +53,7 @@ class CanovaHansenResult:
     statistic : float
         Joint statistic of all seasonal frequencies.
     p_value : float
-        Of the joint statistic, in the limiting distribution with ``period - 1`` degrees of freedom.
+        Of the joint statistic, with ``period - 1`` degrees of freedom; see `canova_hansen`.
     frequencies : tuple of FrequencyStability
         From the longest cycle to the shortest.
     period : int
@@ -109,6 +109,12 @@ def canova_hansen(
     ValueError
         For missing or infinite values, unknown terms, a period below 2, or a bandwidth below 0 or not below n.
 
+    Notes
+    -----
+    p-values are those of the limiting distribution at the statistic times the share of the observations that the
+    regression leaves free: the sums of residuals are as large as those of the errors, but the variance that divides
+    them is too small by that share. It matters where cycles are few.
+
     References
     ----------
     Canova and Hansen (1995), Are seasonal patterns constant over time? A test for seasonal stability, Journal of
@@ -136,7 +142,7 @@ def canova_hansen(
         width = bandwidth
     else:
         raise ValueError(f"the bandwidth is {bandwidth}; it must be from 0 to {n - 1}")
-    return _result(products, period, width, terms, lagged)
+    return _result(products, width, period, terms, lagged)
 
 
 @lru_cache(maxsize=32)
@@ -195,7 +201,7 @@ def _automatic(products: FloatArray) -> int:
 
 
 def _result(
-    products: FloatArray, period: int, width: int, terms: Literal["c", "ct"], lagged: bool
+    products: FloatArray, width: int, period: int, terms: Literal["c", "ct"], lagged: bool
 ) -> CanovaHansenResult | None:
     n, count = products.shape
     sums = products.cumsum(axis=0)
@@ -207,6 +213,7 @@ def _result(
     joint = _trace(variance, moments)
     if joint is None:
         return None
+    free = 1.0 - (period + (terms == "ct") + lagged) / n
     found = []
     for k in range(1, period // 2 + 1):
         degrees = 1 if 2 * k == period else 2
@@ -217,8 +224,8 @@ def _result(
         else:
             value = float(a[1, 1] * b[0, 0] - 2.0 * a[0, 1] * b[0, 1] + a[0, 0] * b[1, 1])
             value /= float(a[0, 0] * a[1, 1] - a[0, 1] ** 2)
-        found.append(FrequencyStability(period / k, value, cramer_von_mises_p_value(value, degrees), degrees))
-    p_value = cramer_von_mises_p_value(joint, count)
+        found.append(FrequencyStability(period / k, value, cramer_von_mises_p_value(value * free, degrees), degrees))
+    p_value = cramer_von_mises_p_value(joint * free, count)
     return CanovaHansenResult(joint, p_value, tuple(found), period, width, n, terms, lagged)
 
 

@@ -14,7 +14,7 @@ from preflight_magic.kernels.lag_length import Criterion, schwert, searched_lags
 from preflight_magic.kernels.least_squares import FloatArray, last_t_ratio, leading_rank, polynomial, triangle
 
 EPSILON = float(np.finfo(np.float64).eps)
-ROUNDING = 4.0 * EPSILON  # times the largest value: what rounding may leave of a value
+ROUNDING = 16.0 * EPSILON  # times the largest value: what a factorisation may leave of an exact fit
 
 
 @dataclass(frozen=True)

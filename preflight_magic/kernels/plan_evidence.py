@@ -23,7 +23,7 @@ from preflight_magic.kernels.restricted_likelihood import (
 
 _LOG_2PI = float(np.log(2.0 * np.pi))
 _ORDERS = len(FIRST_ORDERS) + len(FURTHER_ORDERS)
-_HOPELESS = 25.0
+_HOPELESS = 12.0
 """Log evidence behind the best plan so far from which the larger ARMA orders of a plan are not tried."""
 _NEGLIGIBLE = 7.0
 """Log evidence behind the leading order from which an order adds less than a thousandth."""
@@ -39,9 +39,9 @@ class PlanPrior:
         Fall of -2 log likelihood from which a log is taken.
     season_p : float
         p-value below which a season is there.
-    trend, shift, second, wandering : float
-        Log odds against a trend, a shift (besides the number of its dates), a second difference, and a seasonal
-        difference where there is a season.
+    trend, shift, difference, second, wandering : float
+        Log odds against a trend, a shift (besides the number of its dates), a first difference, a second one on top of
+        it, and a seasonal difference where there is a season.
     slope : float
         Prior standard deviation of the slope a step, in units of the spread of the first differences.
     outlier_bound : float
@@ -52,6 +52,7 @@ class PlanPrior:
     season_p: float
     trend: float
     shift: float
+    difference: float
     second: float
     wandering: float
     slope: float
@@ -231,7 +232,7 @@ def _offset(subject: Subject, d: int, D: int, trend: bool) -> float:
     """
     levels, prior = subject.levels, subject.prior
     n = len(levels.values)
-    offset = -prior.second * (d + D == 2) - prior.wandering * D
+    offset = -prior.difference * (d > 0) - prior.second * (d == 2) - prior.wandering * D
     if trend:
         width = prior.slope * subject.spread * n
         base = [*base_columns(levels, False), levels.others]
@@ -251,7 +252,7 @@ def _fits(view: Contrasts, period: int, D: int, best: float, hints: Mapping[Orde
     if hints is not None:
         return _tried(view, hints.keys(), hints)
     fits = _tried(view, [Order(p, q, 0, D, period) for p, q in FIRST_ORDERS], {})
-    if fits and max(one.evidence for one in fits) > best - _HOPELESS - 0.1 * view.count:
+    if fits and max(one.evidence for one in fits) > best - _HOPELESS - 0.05 * view.count:
         fits += _tried(view, [Order(p, q, 0, D, period) for p, q in FURTHER_ORDERS], {})
     if D and fits:
         # the leading order once more without its seasonal moving average: a season that wanders freely

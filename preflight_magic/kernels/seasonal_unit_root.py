@@ -15,7 +15,7 @@ import numpy as np
 from scipy.linalg.lapack import dtrtri
 
 from preflight_magic.kernels.distributions import Bound
-from preflight_magic.kernels.lag_length import Criterion, schwert, smallest_criterion
+from preflight_magic.kernels.lag_length import schwert, smallest_criterion
 from preflight_magic.kernels.least_squares import FloatArray, leading_rank, polynomial, residual_sums, triangle
 from preflight_magic.kernels.long_run_variance import within_rounding
 from preflight_magic.kernels.seasonal_unit_root_surfaces import Kind, hegy_p_values
@@ -88,7 +88,7 @@ def hegy(
     dummies: bool = True,
     lags: int | None = None,
     max_lags: int | None = None,
-    criterion: Criterion | None = "AIC",
+    criterion: Literal["AIC", "BIC"] | None = "AIC",
 ) -> HegyResult | None:
     """HEGY test at every frequency of a seasonal period.
 

@@ -23,8 +23,9 @@ class StepMark:
 
 @dataclass(frozen=True)
 class TestRow:
-    """A hypothesis test in words."""
+    """A hypothesis test in words; `series` says which series it looks at."""
 
+    series: str
     test: str
     null: str
     statistic: str
@@ -119,8 +120,8 @@ class OverviewRow:
 
 @dataclass(frozen=True, eq=False)
 class OverviewCard:
-    """All series of a report, or the first of very many; `left_out` counts the others."""
+    """All series of a report, or the first of very many; `left_out` counts the others, `counts` all of them."""
 
-    summary: str
+    counts: tuple[tuple[Verdict, int], ...]
     rows: tuple[OverviewRow, ...]
     left_out: int = 0

@@ -182,11 +182,17 @@ def overview(card: OverviewCard, linked: bool = False) -> Markup:
     more = f"and {card.left_out:,} more; report.overview holds them all" if card.left_out else None
     return el(
         "div",
-        el("p", card.summary, class_="pfm-summary"),
+        el("p", _summary(card), class_="pfm-summary"),
         el("table", el("thead", el("tr", heads)), el("tbody", rows), class_="pfm-table pfm-overview"),
         el("p", more, class_="pfm-faint") if more else None,
         class_="pfm pfm-many",
     )
+
+
+def _summary(card: OverviewCard) -> Markup:
+    total = sum(count for _, count in card.counts)
+    parts = [join([f"{count:,} ", verdict(value)]) for value, count in card.counts]
+    return join([f"{total:,} series: ", parts[:1], *([", ", part] for part in parts[1:])])
 
 
 def _row(row: OverviewRow, png: bytes, link: str | None, noted: bool) -> Markup:

@@ -168,8 +168,8 @@ def _rung(position: int, finding: Finding, view: SeriesView, earlier: Finding | 
         rung=finding.rung,
         question=words.plain(finding.question),
         verdict=finding.verdict,
-        headline=words.plain(finding.headline),
-        reason=words.plain(finding.reason),
+        headline=words.sentence(finding.headline),
+        reason=words.sentence(finding.reason),
         steps=tuple(describe(step) for step in finding.steps),
         tests=tuple(_test(test) for test in finding.tests),
         measures=tuple(measure_rows(finding.measures, view.noun)),
@@ -181,6 +181,7 @@ def _rung(position: int, finding: Finding, view: SeriesView, earlier: Finding | 
 
 def _test(test: HypothesisTest) -> TestRow:
     return TestRow(
+        series=words.test_series(test),
         test=words.plain(test.test),
         null=words.plain(test.null),
         statistic=words.number(test.statistic),
@@ -203,7 +204,7 @@ def overview(report: ReportView, limit: int | None = OVERVIEW_ROWS) -> OverviewC
     frame, names = report.overview, list(report.names)
     shown = names if limit is None else names[:limit]
     verdicts = [str(v) for v in frame["verdict"]]
-    counts = ", ".join(f"{verdicts.count(v)} {words.verdict_text(v)}" for v in words.SHAPES if v in verdicts)
+    counts = tuple((v, verdicts.count(v)) for v in words.SHAPES if v in verdicts)
     rows = []
     for position, name in enumerate(shown):
         line, view = frame.iloc[position], report[name]
@@ -219,4 +220,4 @@ def overview(report: ReportView, limit: int | None = OVERVIEW_ROWS) -> OverviewC
                 rungs=tuple((f.question, f.verdict, words.plain(f.headline)) for f in view.findings.values()),
             )
         )
-    return OverviewCard(f"{len(names):,} series: {counts}", tuple(rows), len(names) - len(shown))
+    return OverviewCard(counts, tuple(rows), len(names) - len(shown))

@@ -55,16 +55,13 @@ def _inside(rung: RungCard) -> Markup:
 
 def _tests(tests: tuple[TestRow, ...]) -> Markup:
     heads = [el("th", text, scope="col") for text in ("test", "null hypothesis", "statistic", "p-value")]
-    rows = [
-        el(
-            "tr",
-            el("th", test.test, el("br"), el("small", test.details, class_="pfm-faint"), scope="row"),
-            el("td", test.null),
-            el("td", test.statistic, class_="pfm-figures"),
-            el("td", test.p, class_="pfm-figures"),
-        )
-        for test in tests
-    ]
+    rows = []
+    for place, test in enumerate(tests):
+        if test.series and (place == 0 or test.series != tests[place - 1].series):
+            rows.append(el("tr", el("th", f"Series: {test.series}", colspan=4, scope="colgroup"), class_="pfm-group"))
+        name = el("th", test.test, el("br"), el("small", test.details, class_="pfm-faint"), scope="row")
+        figures = [el("td", told, class_="pfm-figures") for told in (test.statistic, test.p)]
+        rows.append(el("tr", name, el("td", test.null), figures))
     return el("table", el("thead", el("tr", heads)), el("tbody", rows), class_="pfm-table pfm-tests")
 
 

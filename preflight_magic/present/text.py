@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from preflight_magic.present import words
 
 if TYPE_CHECKING:
-    from preflight_magic.present.cards import Card, OverviewCard, RungCard, StepMark
+    from preflight_magic.present.cards import Card, OverviewCard, RungCard, StepMark, TestRow
 
 ARROW = " \u2192 "
 
@@ -24,7 +24,7 @@ def wrap(text: str, width: int, first: str = "", rest: str | None = None) -> lis
     rest = " " * words.width_of(first) if rest is None else rest
     lines: list[str] = []
     line, empty = first, True
-    for word in text.split():
+    for word in filter(None, text.split(" ")):  # a no-break space holds
         pieces = _break(word, max(1, width - words.width_of(rest)))
         for piece in pieces:
             gap = "" if empty else " "
@@ -112,16 +112,23 @@ def _rung(rung: RungCard, width: int) -> list[str]:
         lines += wrap(f"Proposes: {', '.join(rung.steps)}.", width, inside)
     if rung.before:
         lines += wrap(f"With the recommended plan: {rung.before}.", width, inside)
-    if rung.tests:
-        rows = [("test", "statistic", "p-value", "null hypothesis")]
-        rows += [(test.test, test.statistic, test.p, test.null) for test in rung.tests]
-        room = width - len(inside)
-        name, null = (room - 30) * 2 // 5, room - 30 - (room - 30) * 2 // 5
-        for row, details in zip(rows, ["", *(test.details for test in rung.tests)], strict=True):
-            lines += columns([row], [name, 9, 15, null], inside)
-            lines += wrap(details, width, inside + "  ") if details else []
+    lines += _tests(rung.tests, width, inside) if rung.tests else []
     if rung.measures:
         lines += wrap("; ".join(f"{label}: {value}" for label, value in rung.measures), width, inside, inside + "  ")
+    return lines
+
+
+def _tests(tests: Sequence[TestRow], width: int, inside: str) -> list[str]:
+    room = width - len(inside) - 30
+    widths = [room * 2 // 5, 9, 15, room - room * 2 // 5]
+    lines = columns([("test", "statistic", "p-value", "null hypothesis")], widths, inside)
+    series = ""
+    for test in tests:
+        if test.series != series:
+            series = test.series
+            lines += wrap(f"Series: {series}", width, inside)
+        lines += columns([(test.test, test.statistic, test.p, test.null)], widths, inside)
+        lines += wrap(test.details, width, inside + "  ")
     return lines
 
 
@@ -136,7 +143,9 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     for row in card.rows:
         told = row.plan if not row.note else f"{row.plan}; {row.note}" if row.plan != words.NONE else row.note
         rows.append((words.fit(words.name_text(row.name), name).rstrip(), words.verdict_text(row.verdict), told))
-    lines = [*wrap(card.summary, width), *columns(rows, [name, 14, rest])]
+    counts = ", ".join(f"{count:,} {words.verdict_text(verdict)}" for verdict, count in card.counts)
+    summary = f"{sum(count for _, count in card.counts):,} series: {counts}"
+    lines = [*wrap(summary, width), *columns(rows, [name, 14, rest])]
     if card.left_out:
         lines += wrap(f"and {card.left_out:,} more; report.overview holds them all", width)
     return "\n".join(lines)

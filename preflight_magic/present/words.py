@@ -32,6 +32,7 @@ from preflight_magic.plan.words import stamp_text
 MINUS = "\u2212"
 NONE = "\u2013"
 ZERO_WIDTH_JOINER = "\u200d"
+NO_BREAK = "\u00a0"
 
 SHAPES: Mapping[Verdict, str] = {
     "clear": "\u25cb",
@@ -186,13 +187,18 @@ def meaning(step: Step | Repair, noun: str = "step") -> str:
 
 
 # ------------------------------------------------------------------------------------------ tests and measures
+def test_series(test: HypothesisTest) -> str:
+    """Which series a test looks at; empty where it does not say."""
+    return value_text(test.options["series"]) if "series" in test.options else ""
+
+
 def test_details(test: HypothesisTest) -> str:
-    """What is needed to repeat a test: series, lags, terms, observations, critical values, options."""
-    options = dict(test.options)
-    parts = [value_text(options.pop("series"))] if "series" in options else []
+    """What else is needed to repeat a test: lags, terms, observations, critical values, options."""
+    options = {key: value for key, value in test.options.items() if key != "series"}
     kernel = options.get("kernel")
+    parts = []
     if test.lags is not None:
-        parts.append(f"bandwidth {test.lags}" if kernel is not None else f"{test.lags} {plural('lag', test.lags)}")
+        parts.append(f"bandwidth {test.lags}" if kernel is not None else count_of(test.lags, "lag"))
     parts.append(TERMS[test.terms])
     parts.append(f"{test.nobs:,} observations")
     if test.critical_values:
@@ -200,6 +206,16 @@ def test_details(test: HypothesisTest) -> str:
         parts.append(f"critical values {values}")
     parts.extend(f"{label_text(key)} {value_text(value)}" for key, value in options.items())
     return "; ".join(plain(part) for part in parts)
+
+
+def sentence(text: str) -> str:
+    """Text on one line that begins with a capital, unless its first word is a symbol of one letter.
+
+    A percent sign stays with its number.
+    """
+    text = plain(text).replace(" %", f"{NO_BREAK}%")
+    symbol = len(text.split(" ", 1)[0]) == 1 and text[:1] != "a"
+    return text if symbol else text[:1].upper() + text[1:]
 
 
 def label_text(key: str) -> str:

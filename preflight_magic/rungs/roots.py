@@ -147,6 +147,7 @@ def _described(fit: ArmaFit) -> dict[str, object]:
     return {
         "order": str(order),
         "roots": inverse_roots(order, values, fit.covariance),
+        "roots_restricted": inverse_roots(order, fit.restricted, fit.covariance),
         **{name: tuple(block.tolist()) for name, block in parts},
         "psi_sum": found.psi_sum,
         "half_life": found.half_life,
@@ -218,7 +219,7 @@ def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: 
 def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note]:
     """What MA roots at one say about the differences taken: the model is then not invertible."""
     notes = []
-    for root in roots:
+    for root in cast("tuple[Root, ...]", found["roots_restricted"]):
         per_lag = _per_lag(root)
         if root.part != "MA" or not _reaches_one(per_lag, MA_AT_ONE) or not _is_positive(root, found):
             continue

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from preflight_magic.kernels.restricted_likelihood import difference, pattern_columns
-from preflight_magic.kernels.unit_root import adf, kpss
+from preflight_magic.kernels.unit_root_evidence import level_tests, root_tests
 from preflight_magic.model import (
     Difference,
     Evidence,
@@ -24,15 +24,38 @@ from preflight_magic.model import (
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.rungs.shares import capital, shares, told
+from preflight_magic.stamps import stamp_text
 
 METHOD = (
     "Plans with no, one and two differences are models of the same contrasts of the data, so their restricted "
-    "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF (null: a unit root) "
-    "and KPSS (null: stationary) are shown beside it: with a moving average near -1 ADF rejects too often, with strong "
-    "dependence KPSS does, and neither can tell a root of 0.95 from one in a hundred values."
+    "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF, DF-GLS, "
+    "Phillips-Perron and Zivot-Andrews (null: a unit root) and KPSS (null: stationary) are shown beside it, each "
+    "resting on an assumption. With a moving average near -1 ADF, and more so Phillips-Perron, rejects too often, which DF-GLS "
+    "avoids by the modified AIC; with strong dependence KPSS does; a break looks like a unit root to all but "
+    "Zivot-Andrews; and none can tell a root of 0.95 from one in a hundred values. The union of rejections asks DF-GLS "
+    "and ADF, with and without a line, at stretched critical values."
 )
 
 _WORDS: Mapping[Hashable, str] = {0: "no difference", 1: "one difference", 2: "two differences"}
+# Known reasons why a test differs from ADF: where the other rejects, and where it does not.
+_OTHERS: Mapping[str, tuple[str, str]] = {
+    "DF-GLS": (
+        "it has more power where the series starts near its line",
+        "its lags allow for a moving average near -1, and it has little power where the series starts far off",
+    ),
+    "Phillips-Perron": (
+        "with a moving average near -1 it rejects too often",
+        "where changes follow each other it rejects too seldom",
+    ),
+    "Zivot-Andrews": (
+        "a break, dated {at}, looks like a unit root to tests that know none",
+        "its search for a break costs power where there is none",
+    ),
+    "union of rejections": (
+        "it also counts tests without a line and tests for a start near or far from it",
+        "it asks more of each of its four tests",
+    ),
+}
 _HEADLINES = {0: "no difference needed", 1: "one difference", 2: "two differences"}
 
 
@@ -47,17 +70,20 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Returns
     -------
     Evidence
-        Measures `d_shares` and `n`; ADF and KPSS with constant, and with constant and line, of the series after log
-        and season, and once more of its first difference where the leading plan takes one.
+        Measures `d_shares` and `n`; ADF, KPSS, DF-GLS and Phillips-Perron with constant, and with constant and line,
+        of the series after log and season, and once more of its first difference where the leading plan takes one;
+        Zivot-Andrews and the union of rejections of the former.
     """
     comparison = context.comparison
     if comparison is None:
         return Evidence(problem="no plan could be computed.")
     measures = {"d_shares": shares(comparison, lambda one: one.d), "n": comparison.count}
     values, told_series = _subject(series, context)
-    tests = [*_tests(values, told_series)]
+    lost = len(series.values) - len(values)  # at the start, to seasonal differences
+    tests = root_tests(values, told_series)
+    tests += level_tests(values, told_series, lambda at: stamp_text(series.values.index[lost + at]))
     if comparison.best.d:
-        tests += _tests(difference(values, 1), f"{told_series}, differenced once")
+        tests += root_tests(difference(values, 1), f"{told_series}, differenced once")
     return Evidence(measures, tuple(tests))
 
 
@@ -86,43 +112,6 @@ def _subject(series: TimeSeries, context: Context) -> tuple[NDArray[np.float64],
     return values, ", ".join(words)
 
 
-def _tests(values: NDArray[np.float64], told_series: str) -> list[HypothesisTest]:
-    found: list[HypothesisTest] = []
-    for terms in ("c", "ct"):
-        one = adf(values, terms)
-        if one is not None:
-            found.append(
-                HypothesisTest(
-                    test="ADF",
-                    null="a unit root",
-                    statistic=one.statistic,
-                    p_value=one.p_value,
-                    p_bound=one.p_bound,
-                    nobs=one.nobs,
-                    lags=one.lags,
-                    terms=one.terms,
-                    critical_values=one.critical_values,
-                    options={"series": told_series, "lag choice": "AIC"},
-                )
-            )
-        two = kpss(values, terms)
-        if two is not None:
-            found.append(
-                HypothesisTest(
-                    test="KPSS",
-                    null="stationary" if terms == "c" else "stationary about a line",
-                    statistic=two.statistic,
-                    p_value=two.p_value,
-                    p_bound="exact",
-                    nobs=two.nobs,
-                    lags=two.bandwidth,
-                    terms=two.terms,
-                    options={"series": told_series, "kernel": "Bartlett"},
-                )
-            )
-    return found
-
-
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     """As many differences as the leading plan has."""
     if evidence.problem is not None:
@@ -143,8 +132,9 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
 
 
 def _beside(tests: tuple[HypothesisTest, ...], d: int, significance: float) -> str:
-    """What ADF and KPSS say of the level, with a line among the terms, and why they may differ from the likelihood."""
-    level = {test.test: test for test in tests if test.terms == "ct" and "once" not in str(test.options["series"])}
+    """What the tests say of the level, with a line among the terms, and why they may differ from the likelihood."""
+    of_level = [test for test in tests if "once" not in str(test.options["series"])]
+    level = {test.test: test for test in of_level if test.terms == "ct"}
     adf_test, kpss_test = level.get("ADF"), level.get("KPSS")
     if adf_test is None or kpss_test is None or math.isnan(adf_test.p_value):
         return ""
@@ -159,11 +149,41 @@ def _beside(tests: tuple[HypothesisTest, ...], d: int, significance: float) -> s
             if rejects_root
             else "neither rejects, as in short samples, where both have little power"
         )
-        return f"{text}: {why}."
-    if rejects_root == (d == 0):
-        return f"{text}: they agree with it."
-    why = "a moving average near -1, where ADF rejects too often" if d else "a break, or the low power of ADF near one"
-    return f"{text}: they differ from it; known reasons are {why}."
+    elif rejects_root == (d == 0):
+        why = "they agree with it"
+    else:
+        known = (
+            "a moving average near -1, where ADF rejects too often"
+            if d
+            else "a break, or the low power of ADF near one"
+        )
+        why = f"they differ from it; known reasons are {known}"
+    others = [level[name] for name in _OTHERS if name in level]
+    alone = next((test for test in of_level if test.test == "ADF" and test.terms == "c"), None)
+    return f"{text}: {why}. {_others(others, alone, rejects_root, significance)}".strip()
+
+
+def _others(
+    others: list[HypothesisTest], without_line: HypothesisTest | None, rejects: bool, significance: float
+) -> str:
+    """Which of the other tests of a unit root differ from ADF with a line, and the known reason."""
+    if not others:
+        return ""
+    differ = [test for test in others if (test.p_value < significance) != rejects]
+    clauses = [
+        f"{test.test} {_does(not rejects)} ({_p(test)}): {_OTHERS[test.test][rejects].format(**_break(test))}"
+        for test in differ
+    ]
+    if without_line is not None and (without_line.p_value < significance) != rejects:
+        why = "a trend that a constant cannot follow looks like a root" if rejects else "a line not needed costs power"
+        clauses.append(f"ADF with a constant alone {_does(not rejects)} ({_p(without_line)}): {why}")
+    if not clauses:
+        return f"The other tests of a unit root ({', '.join(test.test for test in others)}) say the same as ADF."
+    return f"Other tests of a unit root differ from ADF. {capital('; '.join(clauses))}."
+
+
+def _break(test: HypothesisTest) -> dict[str, object]:
+    return {"at": test.options.get("break", "a date of its own")}
 
 
 def _does(rejects: bool) -> str:
@@ -187,6 +207,19 @@ RUNG = Rung(
         "Biometrika 71, 599-607",
         "MacKinnon (1994), Approximate asymptotic distribution functions for unit-root and cointegration tests, "
         "Journal of Business and Economic Statistics 12, 167-176",
+        "Elliott, Rothenberg and Stock (1996), Efficient tests for an autoregressive unit root, Econometrica 64, "
+        "813-836",
+        "Ng and Perron (2001), Lag length selection and the construction of unit root tests with good size and power, "
+        "Econometrica 69, 1519-1554",
+        "Perron and Qu (2007), A simple modification to improve the finite sample properties of Ng and Perron's unit "
+        "root tests, Economics Letters 94, 12-19",
+        "Phillips and Perron (1988), Testing for a unit root in time series regression, Biometrika 75, 335-346",
+        "Schwert (1989), Tests for unit roots: a Monte Carlo investigation, Journal of Business and Economic "
+        "Statistics 7, 147-159",
+        "Zivot and Andrews (1992), Further evidence on the great crash, the oil-price shock, and the unit-root "
+        "hypothesis, Journal of Business and Economic Statistics 10, 251-270",
+        "Harvey, Leybourne and Taylor (2009), Unit root testing in practice: dealing with uncertainty over the trend "
+        "and initial condition, Econometric Theory 25, 587-636",
         "Kwiatkowski, Phillips, Schmidt and Shin (1992), Testing the null hypothesis of stationarity, "
         "Journal of Econometrics 54, 159-178",
     ),

@@ -88,7 +88,7 @@ def server(home: Path) -> Iterator[Lab]:
         process = subprocess.Popen(command, env=environment, cwd=home, stdout=log, stderr=subprocess.STDOUT)
         try:
             _wait_for(f"http://127.0.0.1:{port}/api/status", process, home / "server.log")
-            yield Lab(f"http://127.0.0.1:{port}", notebooks)
+            yield Lab(f"http://127.0.0.1:{port}", notebooks, environment)
         finally:
             process.terminate()
             try:
@@ -112,10 +112,10 @@ def _wait_for(url: str, process: subprocess.Popen[bytes], log: Path, seconds: fl
 
 
 class Lab:
-    """A running server and the folder of its notebooks."""
+    """A running server, the folder of its notebooks and the environment it runs in."""
 
-    def __init__(self, url: str, folder: Path) -> None:
-        self.url, self.folder = url, folder
+    def __init__(self, url: str, folder: Path, environment: dict[str, str]) -> None:
+        self.url, self.folder, self.environment = url, folder, environment
         self._count = 0
 
     def write(self, cells: Sequence[str]) -> str:
@@ -143,6 +143,7 @@ class Lab:
         context = browser.new_context(viewport={"width": width, "height": height})
         context.grant_permissions(["clipboard-read", "clipboard-write"])
         page = context.new_page()
+        page.set_default_timeout(90_000)  # of a machine that is busy with other work
         try:
             page.goto(f"{self.url}/lab/tree/{name}?reset")
             opened = Notebook(page, name)
@@ -166,9 +167,9 @@ class Notebook:
         self.page.wait_for_function("() => window.jupyterapp?.shell?.currentWidget?.sessionContext", timeout=60_000)
         self.page.evaluate(_READY)
         self.page.evaluate("() => window.jupyterapp.shell.collapseLeft()")
-        if dark:
-            self.command("apputils:change-theme", {"theme": "JupyterLab Dark"})
-            self.page.wait_for_selector('body[data-jp-theme-light="false"]', state="attached")
+        # Always said, since the server remembers what the last page chose.
+        self.command("apputils:change-theme", {"theme": f"JupyterLab {'Dark' if dark else 'Light'}"})
+        self.page.wait_for_selector(f'body[data-jp-theme-light="{"false" if dark else "true"}"]', state="attached")
 
     def command(self, name: str, arguments: dict[str, Any] | None = None) -> None:
         """Execute a command of JupyterLab."""

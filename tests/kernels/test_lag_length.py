@@ -1,6 +1,8 @@
 import numpy as np
+import pytest
 
-from preflight_magic.kernels.lag_length import schwert, smallest_criterion
+from preflight_magic.kernels.lag_length import schwert, searched_lags, smallest_criterion
+from preflight_magic.kernels.least_squares import triangle
 
 
 def test_schwert_length() -> None:
@@ -24,3 +26,67 @@ def test_criterion_does_not_see_the_unit() -> None:
 
 def test_perfect_fit_wins_without_warning() -> None:
     assert smallest_criterion(np.array([1.0, 0.5, 0.0]), 30, 2, "AIC") == 2
+
+
+def regression(seed: int, deterministic: int, lags: int, nobs: int = 90) -> np.ndarray:
+    """Columns in the order of a Dickey-Fuller regression; later lags matter less."""
+    rng = np.random.default_rng(seed)
+    columns = rng.standard_normal((nobs, deterministic + 1 + lags))
+    columns[:, :deterministic] = np.vander(np.linspace(-1.0, 1.0, nobs), deterministic, increasing=True)
+    columns[:, deterministic] = columns[:, deterministic].cumsum()
+    weights = rng.standard_normal(columns.shape[1]) * 0.7 ** np.arange(columns.shape[1])
+    weights[deterministic] = -0.05
+    return np.column_stack([columns, columns @ weights + rng.standard_normal(nobs)])
+
+
+def brute(columns: np.ndarray, fixed: int, criterion: str) -> int:
+    """Lag length by refitting every length and writing the definition out."""
+    nobs, y = columns.shape[0], columns[:, -1]
+    deterministic = columns[:, : fixed - 1]
+    level = columns[:, fixed - 1]
+    if fixed > 1:
+        level = level - deterministic @ np.linalg.lstsq(deterministic, level, rcond=None)[0]
+    values, significant = [], 0
+    for k in range(columns.shape[1] - fixed):
+        x = columns[:, : fixed + k]
+        beta, rss = np.linalg.lstsq(x, y, rcond=None)[:2]
+        variance = float(rss[0]) / nobs
+        penalty = {
+            "AIC": 2.0 * k,
+            "BIC": np.log(nobs) * k,
+            # Ng and Perron (2001): log variance + 2 (tau + k) / nobs, tau = b0**2 sum(level**2) / variance
+            "MAIC": 2.0 * (beta[fixed - 1] ** 2 * (level @ level) / variance + k),
+        }.get(criterion, 0.0)
+        values.append(np.log(variance) + penalty / nobs)
+        error = np.sqrt(float(rss[0]) / (nobs - fixed - k) * np.linalg.inv(x.T @ x)[-1, -1])
+        if k and abs(beta[-1] / error) >= 1.6448536:
+            significant = k
+    return significant if criterion == "t-stat" else int(np.argmin(values))
+
+
+@pytest.mark.parametrize("criterion", ["AIC", "BIC", "t-stat", "MAIC"])
+@pytest.mark.parametrize("deterministic", [0, 1, 2])
+def test_search_from_one_factor_is_that_of_refitting_every_length(criterion: str, deterministic: int) -> None:
+    found = []
+    for seed in range(40):
+        columns = regression(seed, deterministic, 7)
+        expected = brute(columns, deterministic + 1, criterion)
+        found.append(searched_lags(triangle(columns.copy(order="F")), deterministic + 1, 90, criterion))
+        assert found[-1] == expected
+    assert len(set(found)) > 2
+
+
+def test_search_leaves_out_lags_that_depend_on_others() -> None:
+    for criterion in ("AIC", "BIC", "t-stat", "MAIC"):
+        columns = regression(1, 1, 5)
+        columns[:, 5] = columns[:, 3] + columns[:, 4]
+        lags = searched_lags(triangle(columns.copy(order="F")), 2, 90, criterion)
+        assert lags is not None
+        assert lags <= 3
+        columns[:, 1] = 1.0  # the level repeats the constant
+        assert searched_lags(triangle(columns.copy(order="F")), 2, 90, criterion) is None
+
+
+def test_search_refuses_an_unknown_rule() -> None:
+    with pytest.raises(ValueError, match="lag choice"):
+        searched_lags(triangle(regression(1, 1, 5)), 2, 90, "HQ")  # type: ignore[arg-type]

@@ -38,7 +38,7 @@ TERMS = ("n", "c", "ct", "ctt")
 
 @pytest.mark.parametrize("kind", KINDS)
 @pytest.mark.parametrize("terms", TERMS)
-@pytest.mark.parametrize("criterion", ["AIC", "BIC"])
+@pytest.mark.parametrize("criterion", ["AIC", "BIC", "t-stat"])
 @pytest.mark.parametrize("n", [24, 61, 300])
 def test_adf_with_searched_lags_is_that_of_statsmodels(kind: str, terms: str, criterion: str, n: int) -> None:
     y = series(kind, n)
@@ -79,10 +79,11 @@ def test_adf_searches_up_to_the_lags_allowed() -> None:
 
 
 @pytest.mark.parametrize("terms", TERMS)
+@pytest.mark.parametrize("criterion", ["AIC", "BIC", "t-stat", "MAIC"])
 @pytest.mark.parametrize("scale", [1e-6, 1e6])
-def test_adf_does_not_see_the_unit(terms: str, scale: float) -> None:
+def test_adf_does_not_see_the_unit(terms: str, criterion: str, scale: float) -> None:
     y = series("ar", 120)
-    plain, scaled = adf(y, terms), adf(scale * y, terms)
+    plain, scaled = adf(y, terms, criterion=criterion), adf(scale * y, terms, criterion=criterion)
     assert plain is not None
     assert scaled is not None
     assert scaled.lags == plain.lags
@@ -100,6 +101,21 @@ def test_adf_does_not_see_the_origin(terms: str, constant: float) -> None:
     assert moved.statistic == pytest.approx(plain.statistic, rel=1e-9)
 
 
+def test_modified_aic_takes_longer_lags_against_a_moving_average_near_minus_one() -> None:
+    # Ng and Perron (2001): AIC stops too early there, and the test then rejects a unit root that is there.
+    rng = np.random.default_rng(7)
+    lags, rejections = {"AIC": 0, "MAIC": 0}, {"AIC": 0, "MAIC": 0}
+    for _ in range(200):
+        y = lfilter([1.0, -0.8], [1.0], rng.standard_normal(200)).cumsum()
+        for criterion in lags:
+            found = adf(y, "c", criterion=criterion)
+            assert found is not None
+            lags[criterion] += found.lags
+            rejections[criterion] += found.p_value < 0.05
+    assert lags["MAIC"] > 1.5 * lags["AIC"]
+    assert rejections["MAIC"] < 0.5 * rejections["AIC"]
+
+
 def test_adf_refuses_what_cannot_carry_it() -> None:
     assert adf(np.full(50, 2.5)) is None
     assert adf(np.array([1.0, 3.0, 2.0])) is None
@@ -114,6 +130,8 @@ def test_adf_refuses_what_cannot_carry_it() -> None:
         adf(series("walk", 20), "cc")  # type: ignore[arg-type]
     with pytest.raises(ValueError, match="negative"):
         adf(series("walk", 20), lags=-1)
+    with pytest.raises(ValueError, match="lag choice"):
+        adf(series("walk", 20), criterion="HQ")  # type: ignore[arg-type]
 
 
 def test_adf_keeps_a_degree_of_freedom_in_short_series() -> None:

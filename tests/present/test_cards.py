@@ -100,7 +100,7 @@ def test_code_that_cannot_be_proved_is_shown_as_a_fault() -> None:
 def test_overview() -> None:
     one, two = FakeSeries(), FakeSeries(name=("a", 1), verdict="infeasible", problem="No values.", plan=Plan())
     card = make_cards.overview(FakeReport(one, two))
-    assert card.summary == "2 series: 1 ◆ transform, 1 ■ infeasible"
+    assert card.counts == (("transform", 1), ("infeasible", 1))
     assert [row.plan for row in card.rows] == ["log, difference 12, difference 1", "–"]
     assert [row.note for row in card.rows] == ["", "No values."]
     assert np.array_equal(card.rows[0].values, one.series.to_numpy(), equal_nan=True)

@@ -43,7 +43,12 @@ def test_text_tells_switched_steps_and_problems() -> None:
 
 def test_overview_lines_up() -> None:
     lines = text.overview_text(make_cards.overview(FakeReport(FakeSeries(), FakeSeries(name="fuel"))), 80).split("\n")
+    assert lines[0] == "2 series: 2 ◆ transform"
     assert lines[1].index("verdict") == lines[2].index("◆") == lines[3].index("◆")
+
+
+def test_a_no_break_space_holds() -> None:
+    assert text.wrap("up to 5\u00a0% of it", 8) == ["up to", "5\u00a0% of", "it"]
 
 
 def test_words_longer_than_a_line_are_broken() -> None:

@@ -123,7 +123,7 @@ def test_details_of_a_test() -> None:
     options = {"series": "log", "kernel": "Bartlett"}
     test = HypothesisTest("KPSS", "level stationary", 1.9, 0.01, "at most", 1180, 4, "ct", {"5%": 0.146}, options)
     assert words.test_details(test) == (
-        "log; bandwidth 4; constant and trend; 1,180 observations; critical values 5% 0.146; kernel Bartlett"
+        "bandwidth 4; constant and trend; 1,180 observations; critical values 5% 0.146; kernel Bartlett"
     )
 
 
@@ -146,6 +146,14 @@ def test_details_of_a_test() -> None:
 )
 def test_value(value: object, text: str) -> None:
     assert words.value_text(value) == text
+
+
+def test_sentences_begin_with_a_capital_but_symbols_do_not() -> None:
+    assert words.sentence("a wandering season") == "A wandering season"
+    assert words.sentence("over 99 %") == "Over 99\u00a0%"
+    assert words.sentence("d = 1") == "d = 1"
+    assert words.sentence("KPSS rejects") == "KPSS rejects"
+    assert words.sentence("") == ""
 
 
 def test_root() -> None:

@@ -1,0 +1,52 @@
+"""How presence and kind of a season are judged."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pandas as pd
+import pytest
+
+from preflight_magic.model import Difference, Evidence, RemovePattern, TimeSeries
+from preflight_magic.policy import Thresholds
+from preflight_magic.rungs.contract import Context
+from preflight_magic.rungs.season import RUNG
+from tests.sentences import assert_reads_well
+
+BOUNDS = Thresholds(season_p=0.001, even_share=0.7)
+FIXED, WANDERING = {"fixed": 0.82, "difference": 0.18}, {"difference": 0.9, "fixed": 0.1}
+
+
+def evidence(asked, period, p, split=None):
+    measures = {"asked": asked, "period": period, "presence_p": p}
+    return Evidence(measures | ({} if split is None else {"season_shares": split}))
+
+
+@pytest.mark.parametrize(
+    ("asked", "period", "p", "split", "verdict", "steps", "said"),
+    [
+        (1, 1, math.nan, None, "clear", (), "without a seasonal period"),
+        (12, 1, math.nan, None, "clear", (), "too few complete cycles of 12"),
+        (12, 12, math.nan, None, "clear", (), "too few complete cycles of 12"),
+        (12, 12, 0.15, {"none": 1.0}, "clear", (), "does not reject at 0.001 (p = 0.150)"),
+        (12, 12, 0.001, {"none": 1.0}, "clear", (), "does not reject"),
+        (12, 12, 1e-20, FIXED, "transform", (RemovePattern(12),), "82 % of the evidence is for a fixed pattern, 18 %"),
+        (4, 4, 1e-20, WANDERING, "transform", (Difference(4),), "for a wandering one, 10 % for a fixed pattern."),
+        (12, 12, 1e-5, {"fixed": 0.69, "difference": 0.31}, "inconclusive", (RemovePattern(12),), "too even to call"),
+        (12, 12, 1e-5, {"difference": 0.51, "fixed": 0.49}, "inconclusive", (Difference(12),), "too even to call"),
+        (12, 12, 1e-5, {"fixed": 1.0}, "transform", (RemovePattern(12),), "Over 99 % of the evidence"),
+    ],
+)
+def test_judgement(asked, period, p, split, verdict, steps, said):
+    found = RUNG.judge(evidence(asked, period, p, split), BOUNDS)
+    assert (found.verdict, found.steps) == (verdict, steps)
+    assert said in found.reason
+    assert_reads_well(found.reason)
+    assert_reads_well(found.headline, whole=False)
+
+
+def test_without_a_comparison():
+    found = RUNG.judge(RUNG.examine(TimeSeries("x", pd.Series(np.arange(9.0)), None), Context()), BOUNDS)
+    assert (found.verdict, found.steps) == ("inconclusive", ())
+    assert_reads_well(found.reason)

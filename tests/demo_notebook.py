@@ -1,6 +1,6 @@
 """The demo notebook: run it afresh, and keep what reads well where no kernel runs.
 
-``python -m tests.demo_notebook`` from the root of the project writes its outputs anew.
+``python -m tests.demo_notebook`` from the root of the project writes its outputs anew, and the cell of generated code.
 """
 
 from __future__ import annotations
@@ -22,9 +22,21 @@ def stored() -> NotebookNode:
     return nbformat.read(PATH, as_version=4)
 
 
-def executed() -> NotebookNode:
+def cell(notebook: NotebookNode, name: str) -> NotebookNode:
+    """A cell by its id."""
+    return next(one for one in notebook.cells if one.id == name)
+
+
+def code() -> str:
+    """What ``%seriescode report passengers`` puts into the notebook."""
+    import preflight_magic as pf
+
+    known = pf.demo.ferry_line().loc[:"2023"]  # type: ignore[misc]
+    return pf.check(known, season=12, horizon=12, only="passengers", progress=False).code("passengers").strip()
+
+
+def executed(notebook: NotebookNode) -> NotebookNode:
     """The notebook with outputs of a fresh kernel, which finds the package of this repository first."""
-    notebook = stored()
     search = os.pathsep.join(filter(None, [str(ROOT), os.environ.get("PYTHONPATH")]))
     client = NotebookClient(
         notebook, timeout=300, kernel_name="python3", store_widget_state=False,
@@ -50,4 +62,6 @@ def tidied(notebook: NotebookNode) -> NotebookNode:
 
 
 if __name__ == "__main__":
-    nbformat.write(tidied(executed()), PATH)
+    found = stored()
+    cell(found, "generated").source = code()
+    nbformat.write(tidied(executed(found)), PATH)

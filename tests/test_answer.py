@@ -39,7 +39,8 @@ def findings(*doubts, **others):
             ONE,
             ONE,
             ("unit root",),
-            "Before a model is fitted: difference 1. The evidence on unit root is too even to call, so a person decides.",
+            "Before a model is fitted: difference 1. The evidence on unit root is too even to call, so a person "
+            "decides.",
         ),
         (
             "inconclusive",

@@ -134,7 +134,7 @@ def test_code_of_all_leaves_out_what_cannot_be_checked(report):
     assert all(repr(name) in source for name in NAMES)
     namespace = {}
     exec(source, namespace)
-    prepare, restore = namespace["PLANS"]["cargo"]
+    prepare, _ = namespace["PLANS"]["cargo"]
     y = report["cargo"].series
     pd.testing.assert_series_equal(prepare(y), report["cargo"].plan.apply(y), check_names=False)
 

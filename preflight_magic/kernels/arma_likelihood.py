@@ -38,6 +38,8 @@ class Sample:
     scale : float
     missing : ndarray of int
         Rows at which a nuisance column first differs from zero.
+    factor : tuple of float
+        Polynomial by which every MA part is multiplied: one, or what holds an MA root at one.
     """
 
     stacked: Array
@@ -46,6 +48,7 @@ class Sample:
     mean: bool
     scale: float
     missing: NDArray[np.intp]
+    factor: tuple[float, ...] = (1.0,)
 
     @property
     def count(self) -> int:
@@ -115,6 +118,8 @@ def _pivoted(columns: Array) -> tuple[Array, NDArray[np.intp]]:
 def whitened_columns(sample: Sample, order: Order, values: Array) -> tuple[Array, float]:
     """Columns of the sample whitened at given coefficients, and the log determinant of the covariance matrix."""
     ar, ma = polynomials(order, values)
+    if len(sample.factor) > 1:
+        ma = np.convolve(ma, sample.factor)
     if is_exact(sample, order):
         return whiten(ar, ma, sample.stacked)
     return np.asarray(lfilter(ar, ma, sample.stacked, axis=0), dtype=float), 0.0

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from preflight_magic.kernels.arma import ArmaFit
+from preflight_magic.kernels.arma_boundary import root_at_one
 from preflight_magic.kernels.arma_order import search
 from preflight_magic.kernels.arma_parameters import split
 from preflight_magic.kernels.arma_response import implied_variance, response
@@ -30,7 +31,7 @@ from preflight_magic.model import (
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 
-MA_AT_ONE = 0.98
+MA_AT_ONE = 0.5
 """Modulus from which an MA root counts as one. Common practice: in a hundred values no estimate tells it from one, and
 an MA root at one is found exactly there with a probability that does not vanish (Sargan and Bhargava 1983,
 Econometrica 51, 799-820)."""
@@ -92,9 +93,12 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance if skipped else None)
     if fit is None:
         return Evidence(problem=f"the {len(values) - gaps} values left after the plan are too few for an ARMA model.")
+    held = root_at_one(fit, values, mean=mean, nuisance=nuisance if skipped else None)
     return Evidence(
         {
             **_described(fit),
+            "ma_at_one": held.plain,
+            "seasonal_ma_at_one": held.seasonal,
             "variance_sample": float(
                 (values - fit.correction).var() if mean else np.mean((values - fit.correction) ** 2)
             ),
@@ -219,9 +223,11 @@ def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: 
 def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note]:
     """What MA roots at one say about the differences taken: the model is then not invertible."""
     notes = []
-    for root in cast("tuple[Root, ...]", found["roots_restricted"]):
+    for root in roots:
         per_lag = _per_lag(root)
-        if root.part != "MA" or not _reaches_one(per_lag, MA_AT_ONE) or not _is_positive(root, found):
+        if root.part != "MA" or not _is_positive(root, found):
+            continue
+        if not cast(float, found["seasonal_ma_at_one" if root.seasonal else "ma_at_one"]) < MA_AT_ONE:
             continue
         size = f"{_told(per_lag)}: at one the model is not invertible"
         if root.seasonal and found["seasonal_difference"]:

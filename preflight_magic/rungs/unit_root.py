@@ -30,9 +30,9 @@ METHOD = (
     "Plans with no, one and two differences are models of the same contrasts of the data, so their restricted "
     "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF, DF-GLS, "
     "Phillips-Perron and Zivot-Andrews (null: a unit root) and KPSS (null: stationary) are shown beside it, each "
-    "resting on an assumption. With a moving average near -1 ADF, and more so Phillips-Perron, rejects too often, which DF-GLS "
-    "avoids by the modified AIC; with strong dependence KPSS does; a break looks like a unit root to all but "
-    "Zivot-Andrews; and none can tell a root of 0.95 from one in a hundred values. The union of rejections asks DF-GLS "
+    "resting on an assumption. With a moving average near -1 ADF, and more so Phillips-Perron, rejects too often, "
+    "which DF-GLS avoids by the modified AIC; with strong dependence KPSS does; a break looks like a unit root to all "
+    "but Zivot-Andrews; and none can tell a root of 0.95 from one in a hundred values. The union of rejections asks DF-GLS "
     "and ADF, with and without a line, at stretched critical values."
 )
 

@@ -1,3 +1,5 @@
+import itertools
+
 import numpy as np
 import pytest
 
@@ -83,6 +85,8 @@ def test_critical_values_of_long_series_are_the_published_ones(model: str, publi
     "row", of("unit_root_arch", "critical ZivotAndrews"), ids=lambda row: row["terms"] + row["rule"]
 )
 def test_critical_values_of_long_series_are_those_of_arch(row: dict[str, str]) -> None:
+    if (row["terms"], row["rule"]) == ("t", "1%"):
+        return  # arch has -5.03 here, a tenth below both ours and the authors' -4.93, which the test above compares
     ours = critical_values("zivot_andrews", IN_ARCH[row["terms"]], 2000)[row["rule"]]
     assert ours == pytest.approx(float(row["statistic"]), abs=0.04)
 
@@ -113,7 +117,7 @@ def test_p_value_falls_with_the_statistic() -> None:
     found = [zivot_andrews(rng.standard_normal(60).cumsum()) for _ in range(60)]
     ordered = sorted((one.statistic, one.p_value) for one in found if one is not None)
     assert len(ordered) == 60
-    assert all(a[1] <= b[1] for a, b in zip(ordered, ordered[1:], strict=False))
+    assert all(a[1] <= b[1] for a, b in itertools.pairwise(ordered))
     assert 0.001 <= ordered[0][1] < 0.2 < 0.8 < ordered[-1][1] <= 0.999
 
 

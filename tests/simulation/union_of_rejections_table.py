@@ -48,7 +48,7 @@ def main() -> None:
     quantiles = quantiles_of(lambda n, lags, count: draw(CASE, n, lags, count), CELLS)
     coefficients = fit_surfaces(CELLS, quantiles, with_lags=False)
     print(misfit(CELLS, quantiles, coefficients))
-    what = "Quantiles of minus the largest of four statistics (DF-GLS and ADF, c and ct) over their 5 % critical values."
+    what = "Quantiles of minus the largest of DF-GLS c, DF-GLS ct, ADF c and ADF ct over their 5 % critical values."
     source = "method of Harvey, Leybourne and Taylor (2009), Econometric Theory 25; random walk, no lags"
     write_table("union_of_rejections", what, source, {CASE: coefficients})
 

@@ -88,8 +88,8 @@ def test_the_readme_explains_every_verdict() -> None:
     assert [row[0].strip("`") for row in table(README, "verdict")] == list(get_args(Verdict))
 
 
-def test_the_readme_has_every_rung_in_order() -> None:
-    assert [row[0] for row in table(README, "rung")] == [rung.name for rung in ladder()]
+def test_the_readme_has_every_rung_with_its_question_in_order() -> None:
+    assert [row[:2] for row in table(README, "rung")] == [[rung.name, rung.question] for rung in ladder()]
 
 
 def test_the_readme_names_every_step() -> None:

@@ -56,7 +56,7 @@ def test_leading_alternative_is_the_recommended_plan(report):
 
 def test_series_and_transformed_are_copies(report):
     one = report["fuel_price"]
-    before = one.series
+    before = one.series.copy()
     for mine in (one.series, one.transformed):
         mine.iloc[0] = -99.0
     one.findings.clear()

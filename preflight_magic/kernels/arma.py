@@ -2,21 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
-from scipy.optimize import leastsq
 
 from preflight_magic.kernels.arma_conditional import refine, regression
 from preflight_magic.kernels.arma_conditional import start as conditional_start
-from preflight_magic.kernels.arma_likelihood import Sample, evaluate, is_exact, prepare, regress, whitened_columns
-from preflight_magic.kernels.arma_parameters import Array, Order, coefficients, free_parameters, polynomials
-from preflight_magic.kernels.whiten import NotPositiveDefiniteError
+from preflight_magic.kernels.arma_likelihood import Sample, is_exact, prepare, regress, whitened_columns
+from preflight_magic.kernels.arma_maximum import Maximum, coefficient_covariance, maximise, polish
+from preflight_magic.kernels.arma_parameters import Array, Order, coefficients, polynomials
 
-EDGE = 6.0
-"""Unconstrained parameters stay within this bound: tanh(6) = 0.99999 is as near the circle as a fit goes."""
 _TYPICAL: tuple[tuple[float, float], ...] = ((0.5, 0.3), (0.9, -0.5), (-0.4, 0.6), (0.97, -0.8))
 """First AR and MA coefficients from which a search may start besides the conditional estimate."""
 
@@ -93,137 +88,6 @@ def corrected_aic(log_likelihood: float, parameters: int, nobs: int) -> float:
     return -2.0 * log_likelihood + 2.0 * parameters * nobs / room if room > 0 else float("inf")
 
 
-# ------------------------------------------------------------------------------------------------ maximum
-@dataclass(frozen=True)
-class Maximum:
-    """Unconstrained parameters and log likelihood where a search ended."""
-
-    order: Order
-    free: Array
-    log_likelihood: float
-
-
-def maximise(sample: Sample, order: Order, starts: Sequence[Array], tolerance: float = 1e-10) -> Maximum | None:
-    """Maximise the likelihood from the best of several starts.
-
-    Parameters
-    ----------
-    sample : Sample
-    order : Order
-    starts : sequence of ndarray, shape (order.size,)
-        Coefficients.
-    tolerance : float
-        Relative change of the sum of squares at which the search ends: ``count / 2`` of it in the log likelihood.
-
-    Returns
-    -------
-    Maximum or None
-        None where no start has a finite likelihood.
-
-    Notes
-    -----
-    Levenberg-Marquardt on scaled residuals: ``S exp(log|V| / m)`` is a sum of squares whose logarithm is, up to a
-    constant, ``-2 / m`` times the log likelihood.
-    """
-
-    def at(free: Array) -> tuple[float, Array]:
-        return evaluate(sample, order, coefficients(order, np.clip(free, -EDGE, EDGE)))
-
-    best: Maximum | None = None
-    for values in starts:
-        free = free_parameters(order, values)
-        try:
-            height = at(free)[0]
-        except NotPositiveDefiniteError:
-            continue
-        if best is None or height > best.log_likelihood:
-            best = Maximum(order, free, height)
-    if best is None or order.size == 0:
-        return best
-    far = np.full(len(sample.stacked), 1e3)
-
-    def residuals(free: Array) -> Array:
-        try:
-            return at(free)[1]
-        except NotPositiveDefiniteError:
-            return far
-
-    rounds = 25 if tolerance < 1e-6 else 6
-    found, *_ = leastsq(
-        residuals,
-        best.free,
-        ftol=tolerance,
-        xtol=max(tolerance, 1e-8),
-        epsfcn=1e-12,
-        maxfev=rounds * (order.size + 1),
-        full_output=True,
-    )
-    try:
-        free = np.clip(found, -EDGE, EDGE)
-        height = at(free)[0]
-    except NotPositiveDefiniteError:
-        return best
-    return Maximum(order, free, height) if height >= best.log_likelihood else best
-
-
-def _polish(sample: Sample, found: Maximum) -> tuple[Maximum, Array]:
-    """One Newton step, and the inverse observed information in unconstrained parameters, NaN at the edge."""
-    order, size, step = found.order, found.order.size, 1e-3
-    inner = np.flatnonzero(np.abs(found.free) < EDGE - 1.0)
-    inverse = np.full((size, size), np.nan)
-
-    def height(shift: Array) -> float:
-        return evaluate(sample, order, coefficients(order, found.free + shift))[0]
-
-    try:
-        gradient, hessian = _derivatives(height, inner, size, step)
-        block = np.linalg.inv(-hessian)
-    except (NotPositiveDefiniteError, np.linalg.LinAlgError):
-        return found, inverse
-    if len(inner) == 0 or not np.linalg.eigvalsh(block).min() > 0.0:
-        return found, inverse
-    inverse[np.ix_(inner, inner)] = block
-    move = np.zeros(size)
-    move[inner] = block @ gradient
-    try:
-        there = height(move)
-    except NotPositiveDefiniteError:
-        return found, inverse
-    return (Maximum(order, found.free + move, there) if there > found.log_likelihood else found), inverse
-
-
-def _derivatives(
-    height: Callable[[Array], float], inner: NDArray[np.intp], size: int, step: float
-) -> tuple[Array, Array]:
-    """Central differences of a function at zero, in the coordinates `inner`."""
-    k = len(inner)
-    moves = np.zeros((k, size))
-    moves[np.arange(k), inner] = step
-    middle = height(np.zeros(size))
-    above = np.array([height(move) for move in moves])
-    below = np.array([height(-move) for move in moves])
-    hessian = np.diag(above + below - 2.0 * middle)
-    for i in range(k):
-        for j in range(i):
-            both = height(moves[i] + moves[j]) + height(-moves[i] - moves[j])
-            hessian[i, j] = hessian[j, i] = 0.5 * (both - above[i] - below[i] - above[j] - below[j] + 2.0 * middle)
-    return (above - below) / (2.0 * step), hessian / step**2
-
-
-def _to_coefficients(order: Order, free: Array, inverse: Array) -> Array:
-    """Covariance of the coefficients from that of the unconstrained parameters."""
-    size, step = order.size, 1e-6
-    slopes = np.empty((size, size))
-    for k, move in enumerate(step * np.eye(size)):
-        slopes[:, k] = (coefficients(order, free + move) - coefficients(order, free - move)) / (2.0 * step)
-    unknown = np.isnan(inverse.diagonal())
-    found = slopes @ np.where(unknown[:, None] | unknown, 0.0, inverse) @ slopes.T
-    touched = (slopes[:, unknown] != 0.0).any(axis=1)
-    found[touched, :] = found[:, touched] = np.nan
-    return np.asarray(found)
-
-
-# ---------------------------------------------------------------------------------------------------- the fit
 def starts(sample: Sample, order: Order, filled: Array) -> list[Array]:
     """Where a search for one order starts: the conditional estimate, and a few typical points."""
     if order.size == 0:
@@ -296,8 +160,8 @@ def finish(sample: Sample, found: Maximum, beside: Maximum | None = None) -> Arm
     """What is reported of a maximum, and of that of the restricted likelihood where it differs."""
     order = found.order
     if order.size:
-        found, inverse = _polish(sample, found)
-        covariance = _to_coefficients(order, found.free, inverse)
+        found, inverse = polish(sample, found)
+        covariance = coefficient_covariance(order, found.free, inverse)
     else:
         covariance = np.empty((0, 0))
     estimates = coefficients(order, found.free)

@@ -6,14 +6,18 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from preflight_magic.kernels.arma import ArmaFit, contrasts, maximise
+from preflight_magic.kernels.arma import ArmaFit, contrasts
 from preflight_magic.kernels.arma_likelihood import Sample, prepare
+from preflight_magic.kernels.arma_maximum import maximise
 from preflight_magic.kernels.arma_parameters import Array, Order, split
 
 _AT_ONE = 0.9999
 """As near one as a root is held: the likelihood is flat there."""
 _FAR = 0.5
 """Moduli of the largest positive root below which it is not asked whether it is one."""
+
+_TOLERANCE = 1e-6
+"""Of the likelihoods compared; far below what is notable."""
 
 
 @dataclass(frozen=True)
@@ -57,7 +61,7 @@ def root_at_one(
     if given is None:
         return nothing
     sample = contrasts(given)
-    free = maximise(sample, fit.order, [fit.restricted])
+    free = maximise(sample, fit.order, [fit.restricted], _TOLERANCE)
     if free is None:
         return nothing
     order, start = free.order, fit.restricted
@@ -83,5 +87,5 @@ def _largest_positive(ma: Array) -> float:
 
 
 def _height(sample: Sample, order: Order, start: Array) -> float:
-    found = maximise(sample, order, [start])
+    found = maximise(sample, order, [start], _TOLERANCE)
     return -np.inf if found is None else found.log_likelihood

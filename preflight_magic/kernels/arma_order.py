@@ -6,9 +6,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from preflight_magic.kernels.arma import ArmaFit, Maximum, centred, contrasts, corrected_aic, finish, maximise
+from preflight_magic.kernels.arma import ArmaFit, centred, contrasts, corrected_aic, finish
 from preflight_magic.kernels.arma_conditional import refine, regression, start
 from preflight_magic.kernels.arma_likelihood import Sample, prepare
+from preflight_magic.kernels.arma_maximum import Maximum, maximise
 from preflight_magic.kernels.arma_parameters import Array, Order
 from preflight_magic.kernels.arma_parameters import coefficients as bounded
 

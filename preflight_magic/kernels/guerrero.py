@@ -36,7 +36,7 @@ def guerrero(values: Array, period: int) -> float | None:
     seen = values[np.isfinite(values)]
     length = max(period, 2)
     count = len(values) // length
-    if not (seen > 0).all() or count < _FEWEST_BLOCKS:
+    if not seen.size or not (seen > 0).all() or count < _FEWEST_BLOCKS:
         return None
     blocks = values[len(values) - count * length :].reshape(count, length)
     blocks = blocks[np.isfinite(blocks).all(axis=1)] / float(np.exp(np.log(seen).mean()))

@@ -115,7 +115,7 @@ def cramer_von_mises_p_value(statistic: float, degrees: int) -> float:
         raise ValueError(f"a tail needs a statistic and at least one degree of freedom; it got {statistic}, {degrees}")
     if statistic <= degrees * _NEVER_BELOW:
         return 1.0
-    places = _PLACES + degrees // 4  # the law narrows with the degrees
+    places = _PLACES + degrees // 2  # the law narrows with the degrees
     return _stability_path(round(places * log(statistic)), places, degrees).tail(statistic)
 
 

@@ -33,7 +33,7 @@ def stl_strength(values: Array, period: int, robust: bool = False) -> Strength |
     Parameters
     ----------
     values : ndarray, shape (n,)
-        NaN where missing; filled on a straight line.
+        NaN where missing; filled along the mean pattern.
     period : int
         At least 2.
     robust : bool
@@ -70,7 +70,7 @@ def average_strength(values: Array, period: int) -> Strength | None:
     Parameters
     ----------
     values : ndarray, shape (n,)
-        NaN where missing; filled on a straight line.
+        NaN where missing; filled along the mean pattern.
     period : int
         At least 2.
 
@@ -111,8 +111,13 @@ def _filled(values: Array, period: int) -> Array | None:
     seen = np.isfinite(values)
     if len(values) < 2 * period + 1 or not seen.any():
         return None
-    filled = np.interp(np.arange(len(values)), np.flatnonzero(seen), values[seen])
-    filled -= filled.mean()
+    centred = values - values[seen].mean()
+    position = np.arange(len(values)) % period
+    counts = np.bincount(position[seen], minlength=period)
+    means = np.bincount(position[seen], centred[seen], period) / np.maximum(counts, 1)
+    # A gap lies on a straight line between what its neighbours are beside the mean of their season.
+    level = np.interp(np.arange(len(values)), np.flatnonzero(seen), (centred - means[position])[seen])
+    filled = np.where(seen, centred, level + means[position])
     size = float(np.abs(values[seen]).max())
     return filled if float(np.abs(filled).max()) > 1e-12 * size else None
 

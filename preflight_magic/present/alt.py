@@ -23,7 +23,9 @@ def before_after_alt(picture: Picture) -> str:
     if missing:
         parts.append(f"{words.count_of(missing, 'value')} missing.")
     if picture.after is not None:
-        parts.append(f"After {picture.plan}, {words.count_of(len(picture.after), 'value')}: {_range(picture.after)}.")
+        parts.append(
+            f"After the plan ({picture.plan}), {words.count_of(len(picture.after), 'value')}: {_range(picture.after)}."
+        )
     if len(picture.correlogram_before):
         parts.append(_correlograms(picture))
     return " ".join(parts)

@@ -9,7 +9,21 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.present import words
-from preflight_magic.present.sheet import DASHED, DOTTED, DPI, FAINT, HAIR, INK, PALE, TITLE, Panel, Sheet, encode, runs
+from preflight_magic.present.sheet import (
+    DASHED,
+    DOTTED,
+    DPI,
+    FAINT,
+    HAIR,
+    INK,
+    PALE,
+    TITLE,
+    WASH,
+    Panel,
+    Sheet,
+    encode,
+    runs,
+)
 from preflight_magic.present.ticks import lag_ticks, time_ticks, value_ticks
 
 if TYPE_CHECKING:
@@ -38,14 +52,14 @@ def before_after(picture: Picture) -> bytes:
     index = picture.before.index
     ticks, labels = time_ticks(index)
     if picture.after is None:
-        given = _series(sheet, picture.before, (_BOTTOM, height - _BOTTOM - 0.28), "as given")
+        given = _series(sheet, picture.before, (_BOTTOM, height - _BOTTOM - 0.3), "as given")
         sheet.base(given, ticks, labels)
     else:
-        given = _series(sheet, picture.before, (1.72, 1.0), "as given")
+        given = _series(sheet, picture.before, (1.72, 0.98), "as given")
         sheet.base(given, ticks, None)
         after = picture.after.reindex(index)
         middle = float(picture.after.mean())
-        below = _series(sheet, after, (_BOTTOM, 0.98), _cut(f"after {picture.plan}", 64), middle)
+        below = _series(sheet, after, (_BOTTOM, 0.96), _cut(f"after: {picture.plan}", 64), middle)
         sheet.base(below, ticks, labels)
     for at in picture.shifts:
         _mark_shift(sheet, given, index, at)
@@ -72,7 +86,7 @@ def _series(
         panel.points(np.array([a, a, b, b]) - 0.5, np.array([*panel.y_range, *panel.y_range[::-1]]))
         for a, b in runs(~seen & inside)
     ]
-    sheet.fills(gaps, PALE)
+    sheet.fills(gaps, WASH)
     if middle is not None:
         sheet.level(panel, middle, 0.6, HAIR)
     pieces = [(a, b) for a, b in runs(seen)]
@@ -81,7 +95,7 @@ def _series(
     if alone:
         sheet.marks(panel.points(np.array(alone), values[alone]), ".", 2.5)
     sheet.side(panel, *value_ticks(*panel.y_range))
-    sheet.words(0.01, panel.top + 0.09, title, TITLE)
+    sheet.words(0.01, panel.top + 0.12, title, TITLE)
     return panel
 
 
@@ -95,7 +109,7 @@ def _mark_shift(sheet: Sheet, panel: Panel, index: pd.Index, at: object) -> None
 def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
     nlags = len(picture.correlogram_before)
     wide = WIDTH - _LAGS - 0.1
-    panel = Panel(_LAGS, _BOTTOM, wide, height - _BOTTOM - 0.28, (0.3, nlags + 0.7), (-1.0, 1.0))
+    panel = Panel(_LAGS, _BOTTOM, wide, height - _BOTTOM - 0.3, (0.3, nlags + 0.7), (-1.0, 1.0))
     lags = np.arange(1, nlags + 1)
     if picture.correlogram_after is None:
         sheet.fills(_bars(panel, lags, picture.correlogram_before, 0.4))
@@ -110,12 +124,12 @@ def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
     ticks = lag_ticks(nlags, picture.period)
     sheet.side(panel, [-1, 0, 1], [f"{words.MINUS}1", "0", "1"])
     sheet.base(panel, ticks, [str(t) for t in ticks])
-    sheet.words(panel.left, panel.top + 0.09, "correlogram", TITLE)
+    sheet.words(panel.left, panel.top + 0.12, "correlogram", TITLE)
     sheet.words(panel.left, 0.06, f"lag in {words.plural(picture.noun)}; dashed: 95 % band", color=FAINT)
 
 
 def _key(sheet: Sheet, panel: Panel) -> None:
-    y = panel.top + 0.09
+    y = panel.top + 0.12
     for x, wide, color, text in (
         (panel.right - 1.16, 0.11, PALE, "as given"),
         (panel.right - 0.42, 0.05, INK, "after"),

@@ -171,14 +171,13 @@ def overview_html(card: OverviewCard) -> Markup:
 
 
 def overview(card: OverviewCard, linked: bool = False) -> Markup:
-    """Table of all series: name, small picture, verdict, plan with what each rung says, and note."""
+    """Table of all series: name, small picture, verdict, and plan with what each rung says."""
     from preflight_magic.present.figures import sparklines
 
     pictures = sparklines([row.values for row in card.rows])
-    noted = any(row.note for row in card.rows)
-    heads = [el("th", text, scope="col") for text in ("series", "", "verdict", "plan", *(["note"] if noted else []))]
+    heads = [el("th", text, scope="col") for text in ("series", "", "verdict", "plan")]
     links = [f"#pfm-series-{i}" if linked else None for i in range(len(card.rows))]
-    rows = [_row(*parts, noted) for parts in zip(card.rows, pictures, links, strict=True)]
+    rows = [_row(*parts) for parts in zip(card.rows, pictures, links, strict=True)]
     more = f"and {card.left_out:,} more; report.overview holds them all" if card.left_out else None
     return el(
         "div",
@@ -195,7 +194,7 @@ def _summary(card: OverviewCard) -> Markup:
     return join([f"{total:,} series: ", parts[:1], *([", ", part] for part in parts[1:])])
 
 
-def _row(row: OverviewRow, png: bytes, link: str | None, noted: bool) -> Markup:
+def _row(row: OverviewRow, png: bytes, link: str | None) -> Markup:
     full, name = words.name_text(row.name), words.name_text(row.name, 40)
     shown = el("a", name, href=link) if link else name
     said = [el("li", question, " ", verdict(value), ". ", headline) for question, value, headline in row.rungs]
@@ -203,10 +202,9 @@ def _row(row: OverviewRow, png: bytes, link: str | None, noted: bool) -> Markup:
     return el(
         "tr",
         el("th", shown, scope="row", title=full if full != name else None),
-        el("td", picture(png, spark_alt(row), 120, "pfm-spark")),
+        el("td", picture(png, spark_alt(row), 120, "pfm-spark"), class_="pfm-spark"),
         el("td", verdict(row.verdict)),
-        el("td", plan),
-        el("td", row.note) if noted else None,
+        el("td", plan, el("div", words.sentence(row.note), class_="pfm-faint") if row.note else None),
     )
 
 

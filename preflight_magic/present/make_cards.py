@@ -47,9 +47,9 @@ def card(view: SeriesView, recommended: SeriesView | None = None) -> Card:
     return Card(
         name=view.name,
         verdict=view.verdict,
-        answer=words.plain(view.answer),
+        answer=words.sentence(view.answer),
         span=span_text(view.series, view.noun),
-        problem=None if view.problem is None else words.plain(view.problem),
+        problem=None if view.problem is None else words.sentence(view.problem),
         repairs=tuple(StepMark(describe(r), words.meaning(r, view.noun)) for r in view.plan.repairs),
         steps=step_marks(view),
         switched=view.plan.steps != view.recommended.steps,

@@ -49,7 +49,7 @@ def roots_strip(picture: RootsPicture) -> bytes:
             kept.append(period)
     sheet.base(panel, [*(math.log2(p) for p in kept), apart], [*(str(p) for p in kept), "no cycle"])
     sheet.side(panel, [0, 0.5, 1], ["0", "0.5", "1"])
-    sheet.words(0.01, panel.top + 0.09, "modulus of the inverse roots", TITLE)
+    sheet.words(0.01, panel.top + 0.1, "modulus of the inverse roots", TITLE)
     sheet.words(panel.left, 0.06, f"cycle in {words.plural(picture.noun)}", color=FAINT)
     _key(sheet, panel)
     return sheet.png()
@@ -74,7 +74,7 @@ def _draw(sheet: Sheet, panel: Panel, picture: RootsPicture, part: str, apart: f
 
 
 def _key(sheet: Sheet, panel: Panel) -> None:
-    y = panel.top + 0.09
+    y = panel.top + 0.1
     for x, marker, text in ((panel.right - 2.75, "o", "AR"), (panel.right - 2.3, "D", "MA")):
         sheet.marks(np.array([[x, y + 0.04]]), marker, 5.0 if marker == "o" else 4.4, marker == "o")
         sheet.words(x + 0.09, y, text)

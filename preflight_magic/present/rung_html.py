@@ -27,7 +27,7 @@ def _rung(rung: RungCard, key: str) -> Markup:
         el("span", f"{rung.position} ", class_="pfm-number"),
         el("span", rung.question, class_="pfm-question"), " ",
         el("b", rung.headline, class_="pfm-headline"), " ",
-        el("span", shape, f" {rung.verdict}", " (changed)" if rung.before else None, class_="pfm-word"),
+        el("span", shape, f" {rung.verdict}", el("small", " (changed)") if rung.before else None, class_="pfm-word"),
     )  # fmt: skip
     return el(
         "details",

@@ -20,7 +20,8 @@ DPI = 144
 INK = "black"
 FAINT = "0.4"
 HAIR = "0.55"
-PALE = "0.8"
+PALE = "0.6"
+WASH = "0.84"
 WORDS = 8.0
 TITLE = 9.0
 """Sizes of words in points."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import cast
 
 import numpy as np
@@ -14,6 +15,7 @@ from preflight_magic.kernels.arma_order import search
 from preflight_magic.kernels.arma_parameters import split
 from preflight_magic.kernels.arma_response import implied_variance, response
 from preflight_magic.kernels.arma_roots import CommonFactor, common_factors, inverse_roots
+from preflight_magic.kernels.plan_columns import removed_columns, seasonal_lag
 from preflight_magic.model import (
     Difference,
     Evidence,
@@ -21,9 +23,6 @@ from preflight_magic.model import (
     Log,
     Logit,
     Power,
-    RemovePattern,
-    RemoveShift,
-    RemoveTrend,
     Root,
     Step,
     TimeSeries,
@@ -31,10 +30,11 @@ from preflight_magic.model import (
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 
+Floats = NDArray[np.float64]
+
 MA_AT_ONE = 0.5
-"""Modulus from which an MA root counts as one. Common practice: in a hundred values no estimate tells it from one, and
-an MA root at one is found exactly there with a probability that does not vanish (Sargan and Bhargava 1983,
-Econometrica 51, 799-820)."""
+"""Log likelihood by which an MA root must differ from one to be told from it: half of 1.0, the 10% point of the
+likelihood ratio (Davis, Chen and Dunsmuir 1995), confirmed by simulation."""
 CYCLE_AT_ONE = 0.98
 """Modulus from which a cycle hardly fades. Common practice."""
 VARIANCE_FACTOR = 2.0
@@ -75,8 +75,9 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Evidence
         Measures `order`, `roots`, `ar`, `ma`, `seasonal_ar`, `seasonal_ma` (coefficients: ``1 - c B`` and
         ``1 + c B``), `psi_sum`, `half_life` (steps), `variance_implied`, `variance_sample`, `common_factors`,
-        `mean_fitted`, `mean`, `log_likelihood`, `aicc`, `differences` and `seasonal_difference` (lag, 0 for none) of
-        the plan, `season` (lag of the seasonal terms tried, 1 for none), `gaps` and `fit`.
+        `ma_at_one`, `seasonal_ma_at_one` (fall of the log likelihood when the root is held at one), `mean_fitted`,
+        `mean`, `log_likelihood`, `aicc`, `differences` and `seasonal_difference` (lag, 0 for none) of the plan,
+        `season` (lag of the seasonal terms tried, 1 for none), `gaps` and `fit`.
     """
     if context.transformed is None:
         return Evidence(problem=series.problem or "there is no transformed series.")
@@ -84,24 +85,23 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     if not _varies(values, series, context.steps):
         return Evidence(problem=f"nothing varies in the {len(values)} values left after the plan.")
     lags = [step.lag for step in context.steps if isinstance(step, Difference)]
-    season = _season(context.steps)
-    removed = any(isinstance(step, RemoveTrend | RemoveShift | RemovePattern) for step in context.steps)
-    mean = not removed and len(lags) < 2
-    nuisance = context.nuisance
-    gaps = 0 if nuisance is None else nuisance.shape[1]
-    skipped = len(values) * gaps**2 <= _MOST_WORK
-    fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance if skipped else None)
+    season = seasonal_lag(context.steps)
+    fixed = removed_columns(context.steps, series.values.index, len(values))
+    mean = fixed is None and len(lags) < 2
+    nuisance, gaps = _affordable(context.nuisance, len(values))
+    if fixed is not None and len(values) * fixed.shape[1] ** 2 > _MOST_WORK:
+        fixed = None
+    fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance, fixed=fixed)
     if fit is None:
-        return Evidence(problem=f"the {len(values) - gaps} values left after the plan are too few for an ARMA model.")
-    held = root_at_one(fit, values, mean=mean, nuisance=nuisance if skipped else None)
+        return Evidence(problem=f"the {len(values)} values left after the plan are too few for an ARMA model.")
+    held = root_at_one(fit, values, mean=mean, nuisance=nuisance, fixed=fixed)
+    left = values - fit.correction
     return Evidence(
         {
             **_described(fit),
+            "variance_sample": float(left.var() if mean else left @ left / len(left)),
             "ma_at_one": held.plain,
             "seasonal_ma_at_one": held.seasonal,
-            "variance_sample": float(
-                (values - fit.correction).var() if mean else np.mean((values - fit.correction) ** 2)
-            ),
             "mean_fitted": mean,
             "mean": fit.mean,
             "log_likelihood": fit.log_likelihood,
@@ -109,13 +109,20 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
             "differences": lags.count(1),
             "seasonal_difference": max((lag for lag in lags if lag > 1), default=0),
             "season": season,
-            "gaps": "none" if not gaps else "skipped" if skipped else "filled",
+            "gaps": gaps,
             "fit": fit,
         }
     )
 
 
-def _varies(values: NDArray[np.float64], series: TimeSeries, steps: tuple[Step, ...]) -> bool:
+def _affordable(nuisance: Floats | None, n: int) -> tuple[Floats | None, str]:
+    """The indicators of missing values, or None where there are too many, and what is done with those values."""
+    if nuisance is None or nuisance.shape[1] == 0:
+        return None, "none"
+    return (nuisance, "skipped") if n * nuisance.shape[1] ** 2 <= _MOST_WORK else (None, "filled")
+
+
+def _varies(values: Floats, series: TimeSeries, steps: tuple[Step, ...]) -> bool:
     """Whether more than the rounding errors of differencing is left."""
     if not len(values):
         return False
@@ -131,19 +138,6 @@ def _varies(values: NDArray[np.float64], series: TimeSeries, steps: tuple[Step, 
     return float(np.ptp(values)) > 1e-13 * size
 
 
-def _season(steps: tuple[Step, ...]) -> int:
-    """Lag of the seasonal terms to try: that of the seasonal step of the plan, 1 without one."""
-    for step in steps:
-        match step:
-            case Difference(lag=lag) if lag > 1:
-                return lag
-            case RemovePattern(period=period):
-                return period
-            case _:
-                pass
-    return 1
-
-
 def _described(fit: ArmaFit) -> dict[str, object]:
     order, values = fit.order, fit.coefficients
     parts = zip(("ar", "ma", "seasonal_ar", "seasonal_ma"), split(order, values), strict=True)
@@ -151,7 +145,6 @@ def _described(fit: ArmaFit) -> dict[str, object]:
     return {
         "order": str(order),
         "roots": inverse_roots(order, values, fit.covariance),
-        "roots_restricted": inverse_roots(order, fit.restricted, fit.covariance),
         **{name: tuple(block.tolist()) for name, block in parts},
         "psi_sum": found.psi_sum,
         "half_life": found.half_life,
@@ -184,114 +177,76 @@ Note = tuple[str, str]
 
 
 def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: Thresholds) -> list[Note]:
-    """What AR roots near one say about the differences taken."""
+    """What AR roots near one say about the differences taken; those that an MA root may cancel say nothing."""
     cancelled = [factor.ar for factor in cast("tuple[CommonFactor, ...]", found["common_factors"])]
-    notes = []
-    for root in roots:
-        if root.part != "AR" or root in cancelled:
-            continue
-        per_lag = _per_lag(root)
-        near = _reaches_one(per_lag, thresholds.near_unit_modulus)
-        if root.seasonal and near and _is_positive(root, found):
-            wanders = "the season still wanders" if found["seasonal_difference"] else "the season may wander"
-            notes.append(
-                (
-                    wanders,
-                    f"The seasonal AR coefficient is {_told(per_lag)}, so {wanders}: a difference at lag "
-                    f"{found['season']} may be needed.",
-                )
-            )
+    notes: list[Note] = []
+    for root in (root for root in roots if root.part == "AR" and root not in cancelled):
+        size = _per_season(root)
+        near = size.modulus >= thresholds.near_unit_modulus or size.modulus + size.standard_error >= 1.0
+        if root.seasonal and near and root.period == found["season"]:
+            head = "the season may wander" if not found["seasonal_difference"] else "the season still wanders"
+            text = f"The seasonal AR root is {_told(size)}, so {head}: "
+            notes.append((head, text + f"a difference at lag {found['season']} may be needed."))
         elif not root.seasonal and near and np.isinf(root.period):
-            notes.append(
-                (
-                    "one more difference may be needed",
-                    f"The largest AR root is {_told(per_lag)}, too near one to tell it from one: a shock "
-                    f"{_lasting(found)}, and one more difference may be needed.",
-                )
+            text = (
+                f"The largest AR root is {_told(size)}, too near one to tell it from one: a shock {_lasting(found)}, "
             )
+            notes.append(("one more difference may be needed", text + "and one more difference may be needed."))
         elif not root.seasonal and np.isfinite(root.period) and root.modulus >= CYCLE_AT_ONE:
-            notes.append(
-                (
-                    "a cycle that hardly fades",
-                    f"A cycle of {root.period:.3g} steps has the AR root {_told(per_lag)} and hardly fades: a season of "
-                    "that length may have been missed.",
-                )
-            )
+            text = f"A cycle of {root.period:.3g} steps has an AR root of {_told(size)} and hardly fades: "
+            notes.append(("a cycle that hardly fades", text + "a season of that length may have been missed."))
     return notes[:2]
 
 
 def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note]:
-    """What MA roots at one say about the differences taken: the model is then not invertible."""
-    notes = []
-    for root in roots:
-        per_lag = _per_lag(root)
-        if root.part != "MA" or not _is_positive(root, found):
-            continue
-        if not cast(float, found["seasonal_ma_at_one" if root.seasonal else "ma_at_one"]) < MA_AT_ONE:
-            continue
-        size = f"{_told(per_lag)}: at one the model is not invertible"
-        if root.seasonal and found["seasonal_difference"]:
-            notes.append(
-                (
-                    "a fixed pattern was differenced",
-                    f"The seasonal MA root is {size}, which is what differencing a fixed pattern leaves behind; removing "
-                    "the pattern instead would lose nothing.",
-                )
-            )
-        elif not root.seasonal and (found["differences"] or found["seasonal_difference"]):
-            notes.append(
-                (
-                    "one difference too many",
-                    f"The largest MA root is {size}, which is what one difference too many leaves behind; the plan "
-                    "with one less is worth a look.",
-                )
-            )
-        elif not root.seasonal:
-            notes.append(
-                (
-                    "it may already have been differenced",
-                    f"The largest MA root is {size}, though the plan takes no difference: the series may already have "
-                    "been differenced, or be a change and not a level.",
-                )
-            )
-    return notes[:2]
+    """What MA roots at one, where a model is not invertible, say about the differences taken."""
+    notes: list[Note] = []
+    plain, seasonal = (cast(float, found[key]) for key in ("ma_at_one", "seasonal_ma_at_one"))
+    largest = [root for root in roots if root.part == "MA" and not root.seasonal and np.isinf(root.period)]
+    if plain < MA_AT_ONE:
+        size = f"is {_told(largest[0])}, and holding it at one" if largest else "may be one: holding it there"
+        text = f"The largest MA root {size} costs only {max(plain, 0.0):.2f} of log likelihood; "
+        if found["differences"] or found["seasonal_difference"]:
+            text += "one difference too many leaves such a root, so the plan with one less is worth a look."
+            notes.append(("one difference too many", text))
+        else:
+            text += "no difference was taken, so the series may already have been differenced, or be a change itself."
+            notes.append(("it may already have been differenced", text))
+    sized = [_per_season(root) for root in roots if root.part == "MA" and root.seasonal]
+    if seasonal < MA_AT_ONE and sized and found["seasonal_difference"]:
+        text = (
+            f"The seasonal MA root is {_told(sized[0])}, and holding it at one costs only {max(seasonal, 0.0):.2f} of "
+        )
+        text += (
+            "log likelihood; differencing a fixed pattern leaves such a root, so removing the pattern may do better."
+        )
+        notes.append(("a fixed pattern was differenced", text))
+    return notes
 
 
 def _remarks(found: Mapping[str, object]) -> list[Note]:
     """What leaves the plan alone but not the model."""
-    notes = []
+    notes: list[Note] = []
     if np.isinf(cast(float, found["psi_sum"])):
-        notes.append(
-            (
-                "not stationary",
-                "The psi weights have no finite sum: the model is not stationary, and no variance is implied.",
-            )
-        )
-    factors = cast("tuple[CommonFactor, ...]", found["common_factors"])
-    if factors:
-        one = factors[0]
+        text = "The psi weights have no finite sum: the model is not stationary, and implies no variance."
+        notes.append(("not stationary", text))
+    for one in cast("tuple[CommonFactor, ...]", found["common_factors"])[:1]:
         within = "" if np.isnan(one.standard_error) else f", {one.distance / one.standard_error:.1f} standard errors"
-        notes.append(
-            (
-                "the order may be too high",
-                f"An AR root of modulus {one.ar.modulus:.2f} and an MA root of {one.ma.modulus:.2f} lie "
-                f"{one.distance:.2f} apart{within}: they may cancel, so one AR and one MA term fewer may do.",
-            )
+        text = (
+            f"An AR root of modulus {one.ar.modulus:.2f} and an MA root of {one.ma.modulus:.2f} lie {one.distance:.2f} "
         )
+        text += f"apart{within}: they may cancel, so one AR and one MA term less may do."
+        notes.append(("the order may be too high", text))
     implied, sample = cast(float, found["variance_implied"]), cast(float, found["variance_sample"])
     ratio = implied / sample
     if np.isfinite(ratio) and not 1.0 / VARIANCE_FACTOR <= ratio <= VARIANCE_FACTOR:
-        notes.append(
-            (
-                "model and sample differ in variance",
-                f"The model implies a variance of {implied:.3g} where the sample has {sample:.3g}, "
-                f"{max(ratio, 1.0 / ratio):.1f} times {'less' if ratio > 1.0 else 'more'}: with roots near one a sample "
-                "shows only part of the variance."
-                if ratio > 1.0
-                else f"The model implies a variance of {implied:.3g} where the sample has {sample:.3g}: it does not describe "
-                "all that varies.",
-            )
+        text = f"The model implies a variance of {implied:.3g}, where the sample has {sample:.3g}: "
+        text += (
+            "with roots near one a sample shows only part of it."
+            if ratio > 1.0
+            else "it does not describe all that varies."
         )
+        notes.append(("model and sample differ in variance", text))
     return notes
 
 
@@ -319,21 +274,12 @@ def _lasting(found: Mapping[str, object]) -> str:
     return f"is halved only after {half:.3g} steps" if np.isfinite(half) else "never fades"
 
 
-def _per_lag(root: Root) -> Root:
-    """A seasonal root per season, as its coefficient; others as they are."""
+def _per_season(root: Root) -> Root:
+    """A seasonal root per season, as its coefficient, not per step; others as they are."""
     if not root.seasonal:
         return root
-    span = root.period
-    slope = span * root.modulus ** (span - 1.0)
-    return Root(root.part, root.modulus**span, root.period, root.standard_error * slope, True)
-
-
-def _is_positive(root: Root, found: Mapping[str, object]) -> bool:
-    return root.period == found["season"] if root.seasonal else bool(np.isinf(root.period))
-
-
-def _reaches_one(root: Root, bound: float) -> bool:
-    return root.modulus >= bound or root.modulus + root.standard_error >= 1.0
+    slope = root.period * root.modulus ** (root.period - 1.0)
+    return replace(root, modulus=root.modulus**root.period, standard_error=root.standard_error * slope)
 
 
 def _told(root: Root) -> str:

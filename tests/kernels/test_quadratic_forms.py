@@ -55,7 +55,7 @@ def imhof(x: float, weights: np.ndarray, degrees: int) -> float:
 
     def integrand(u: float) -> float:
         angle = 0.5 * degrees * np.sum(np.arctan(weights * u)) - 0.5 * x * u
-        return float(np.sin(angle) / (u * np.exp(0.25 * degrees * np.sum(np.log1p((weights * u) ** 2)))))
+        return float(np.sin(angle) / u * np.exp(-0.25 * degrees * np.sum(np.log1p((weights * u) ** 2))))
 
     return 0.5 + quad(integrand, 0.0, 2500.0, limit=2000, epsabs=1e-12)[0] / np.pi
 

@@ -9,6 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from preflight_magic.kernels.lag_length import schwert
+from preflight_magic.kernels.response_surfaces import LAG_SHARE
 from tests.simulation.surfaces import SEED, Cell, fit_surfaces, misfit, quantiles_of, random_walks, write_table
 
 LENGTHS = (20, 25, 30, 40, 50, 75, 100, 150, 250, 500)
@@ -16,8 +17,8 @@ _LOCAL = {"c": -7.0, "ct": -13.5}  # Elliott, Rothenberg and Stock (1996)
 
 
 def lag_lengths(n: int) -> tuple[int, ...]:
-    """None, some, and the longest that a search would try."""
-    longest = min(schwert(n), (n - 5) // 2)
+    """None, some, and the longest that a search would try, up to the share of the series that tables cover."""
+    longest = min(schwert(n), n // LAG_SHARE)
     return tuple(sorted({0, longest // 4, longest // 2, longest}))
 
 

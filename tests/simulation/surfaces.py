@@ -7,7 +7,7 @@ from pathlib import Path
 
 import numpy as np
 
-from preflight_magic.kernels.response_surfaces import surface_basis
+from preflight_magic.kernels.response_surfaces import COEFFICIENTS, FORMULA, surface_basis
 
 TABLES = Path(__file__).resolve().parents[2] / "preflight_magic" / "kernels" / "tables"
 LEVELS = (
@@ -31,12 +31,16 @@ def random_walks(n: int, replications: int, seed: int) -> Iterator[np.ndarray]:
 
 
 def fit_surfaces(cells: list[Cell], quantiles: np.ndarray, with_lags: bool) -> np.ndarray:
-    """Coefficients, shape (levels, 6), by least squares over the cells, `quantiles` of shape (cells, levels)."""
+    """Coefficients, shape (levels, 8), by least squares over the cells, `quantiles` of shape (cells, levels).
+
+    Below 50 values a surface is less exact than the simulation; such cells weigh less.
+    """
     n, lags = np.array(cells, dtype=float).T
     basis = surface_basis(n, lags)
     width = basis.shape[1] if with_lags else 4
+    weight = np.minimum(n / 50.0, 1.0)[:, None]
     coefficients = np.zeros((quantiles.shape[1], basis.shape[1]))
-    coefficients[:, :width] = np.linalg.lstsq(basis[:, :width], quantiles, rcond=None)[0].T
+    coefficients[:, :width] = np.linalg.lstsq(weight * basis[:, :width], weight * quantiles, rcond=None)[0].T
     return coefficients
 
 
@@ -44,11 +48,12 @@ def write_table(name: str, what: str, source: str, cases: Mapping[str, np.ndarra
     """Write one table with its header."""
     lines = [
         f"# {what}",
-        "# Quantile = a + b / n + c / n^2 + d / n^3 + e lags / n + f (lags / n)^2, n the length of the series.",
+        f"# Quantile = {FORMULA},",
+        "# n the length of the series, lags the lagged differences in the regression.",
         f"# Source: simulated, {source}.",
         f"# Seed {SEED}, {REPLICATIONS} replications a cell.",
         f"# Command: python -m tests.simulation.{name}_table",
-        "case,level,a,b,c,d,e,f",
+        f"case,level,{','.join(COEFFICIENTS)}",
     ]
     for case, coefficients in cases.items():
         for level, row in zip(LEVELS, coefficients, strict=True):

@@ -10,7 +10,7 @@ import numpy as np
 
 from tests.simulation.surfaces import SEED, Cell, fit_surfaces, misfit, quantiles_of, random_walks, write_table
 
-LENGTHS = (20, 25, 30, 40, 50, 75, 100, 150, 250, 500)
+LENGTHS = (20, 25, 30, 40, 50, 75, 100, 150, 250, 500, 1000)
 MODELS = ("level", "trend", "both")
 CELLS: list[Cell] = [(n, 0) for n in LENGTHS]
 TRIMMING = 0.15

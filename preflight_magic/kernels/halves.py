@@ -1,0 +1,80 @@
+"""Mean, variance and autocovariances of the two halves of a series, compared by long-run variances."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.long_run_variance import does_not_vary, long_run_variance
+
+
+@dataclass(frozen=True)
+class Moment:
+    """One moment in both halves.
+
+    Attributes
+    ----------
+    name : str
+        ``mean``, ``variance`` or ``autocovariance at lag k``.
+    first, second : float
+        In the unit of the series, squared for all but the mean.
+    z : float
+        Difference over its standard error from long-run variances: about standard normal where the moment is the same
+        in both halves. NaN where it cannot be computed.
+    """
+
+    name: str
+    first: float
+    second: float
+    z: float
+
+    def __str__(self) -> str:
+        return f"{self.name} {self.first:.3g} and {self.second:.3g} (z {self.z:.1f})"
+
+
+def compare_halves(values: FloatArray, lags: tuple[int, ...] = (1,)) -> tuple[Moment, ...] | None:
+    """Compare the moments of the first and the second half.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        No NaN.
+    lags : tuple of int
+        Lags of the autocovariances; those beyond a quarter of a half are left out.
+
+    Returns
+    -------
+    tuple of Moment or None
+        None with fewer than 16 values or where nothing varies.
+
+    Notes
+    -----
+    Each moment is the mean of a series: the values, or products of deviations from the mean of their own half, so that
+    a shift of the mean is told once. The variance of a mean is the long-run variance over the number of terms; it is
+    estimated on both halves together, each less its mean, with the quadratic spectral kernel, the bandwidth of Andrews (1991) and AR(1) prewhitening (Andrews and Monahan
+    1992, Econometrica 60, 953-966), since a kernel alone makes it too small in short series.
+    """
+    series = np.asarray(values, dtype=np.float64)
+    n = series.size
+    if n < 16 or does_not_vary(series):
+        return None
+    halves = series[: n // 2], series[n // 2 :]
+    found = [_moment("mean", halves[0], halves[1])]
+    parts = halves[0] - halves[0].mean(), halves[1] - halves[1].mean()
+    found.append(_moment("variance", parts[0] ** 2, parts[1] ** 2))
+    for lag in lags:
+        if 0 < lag <= n // 8:
+            products = [part[lag:] * part[:-lag] for part in parts]
+            found.append(_moment(f"autocovariance at lag {lag}", products[0], products[1]))
+    return tuple(found)
+
+
+def _moment(name: str, first: FloatArray, second: FloatArray) -> Moment:
+    gap = float(second.mean() - first.mean())
+    pooled = np.concatenate([first - first.mean(), second - second.mean()])
+    one = long_run_variance(pooled, kernel="quadratic spectral", bandwidth="andrews", prewhiten=True)
+    variance = 0.0 if one is None else one.value * (1.0 / first.size + 1.0 / second.size)
+    z = gap / float(np.sqrt(variance)) if variance > 0.0 else float("nan")
+    return Moment(name, float(first.mean()), float(second.mean()), z)

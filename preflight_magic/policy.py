@@ -43,7 +43,7 @@ class Thresholds:
 
     # -- season
     # p-value below which a season is there. Strict, since a false season costs a difference. By simulation.
-    season_p: float = 0.001
+    season_p: float = 0.01
 
     # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
     # simpler plan is preferred a little; the amounts are common practice and were checked by simulation.
@@ -51,12 +51,12 @@ class Thresholds:
     trend_odds: float = 1.0
     # Against a level shift at any date: odds of 2.7 to 1, besides the number of dates it might have.
     shift_odds: float = 1.0
-    # Against a first difference: odds of 1.6 to 1.
+    # Against a first difference where there is no seasonal one: odds of 1.6 to 1.
     difference_odds: float = 0.5
     # Against a second difference on top of it: odds of 2.7 to 1.
     second_difference_odds: float = 1.0
-    # Against a seasonal difference where there is a season: even odds.
-    wandering_odds: float = 0.0
+    # Against a seasonal difference where there is a season: odds of 2.7 to 1.
+    wandering_odds: float = 1.0
     # Prior standard deviation of a trend's slope, in spreads of the first differences a step.
     slope_scale: float = 0.25
     # Absolute t-value from which one value stands alone and is left out of the comparison. Common practice is 3 to 4

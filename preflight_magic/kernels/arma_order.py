@@ -110,7 +110,11 @@ def _finalists(sample: Sample, period: int, seasonal: bool, most: tuple[int, int
     if seasonal:
         middle = Order(min(1, most[0]), min(1, most[1]), period=period)
         pairs = [(P, Q) for P in (0, 1) for Q in (0, 1)]
-        terms = sorted(pairs, key=lambda pair: ranked(replace(middle, P=pair[0], Q=pair[1])).criterion)[:2]
+        terms = sorted(pairs, key=lambda pair: ranked(replace(middle, P=pair[0], Q=pair[1])).criterion)
+        if sample.flat > sample.gaps:
+            # what is left of a pattern removed by least squares looks seasonal to conditional estimates
+            terms.sort(key=lambda pair: pair != (0, 0))
+        terms = terms[:2]
     finalists: list[_Ranked] = []
     for P, Q in terms:
         orders = [Order(p, q, P, Q, period if P or Q else 1) for p, q in plain]

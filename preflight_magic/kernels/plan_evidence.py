@@ -40,8 +40,8 @@ class PlanPrior:
     season_p : float
         p-value below which a season is there.
     trend, shift, difference, second, wandering : float
-        Log odds against a trend, a shift (besides the number of its dates), a first difference, a second one on top of
-        it, and a seasonal difference where there is a season.
+        Log odds against a trend, a shift (besides the number of its dates), a first difference where there is no
+        seasonal one, a second one on top of it, and a seasonal difference where there is a season.
     slope : float
         Prior standard deviation of the slope a step, in units of the spread of the first differences.
     outlier_bound : float
@@ -232,7 +232,7 @@ def _offset(subject: Subject, d: int, D: int, trend: bool) -> float:
     """
     levels, prior = subject.levels, subject.prior
     n = len(levels.values)
-    offset = -prior.difference * (d > 0) - prior.second * (d == 2) - prior.wandering * D
+    offset = -prior.difference * (d > 0 and D == 0) - prior.second * (d == 2) - prior.wandering * D
     if trend:
         width = prior.slope * subject.spread * n
         base = [*base_columns(levels, False), levels.others]

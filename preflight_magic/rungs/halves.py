@@ -77,8 +77,8 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     return Judgement(
         "inconclusive",
         f"{names} {'differs' if len(apart) == 1 else 'differ'} between the halves",
-        f"{' '.join(told)} Among {len(moments)} moments of a stationary series one passes {bound:.1f} in "
-        f"{100.0 * thresholds.significance:.0f} % of cases.",
+        f"{' '.join(told)} By chance one of {len(moments)} moments passes {bound:.1f} about once in "
+        f"{1.0 / thresholds.significance:.0f} stationary series, more often in short ones.",
     )
 
 

@@ -253,19 +253,26 @@ def _remarks(found: Mapping[str, object]) -> list[Note]:
 def _all_well(roots: tuple[Root, ...]) -> str:
     if not roots:
         return "white noise"
-    largest = max(roots, key=lambda root: root.modulus if root.part == "AR" else -1.0)
-    return f"stationary, largest AR root {largest.modulus:.2f}" if largest.part == "AR" else "stationary, no AR root"
+    plain = [root.modulus for root in roots if root.part == "AR" and not root.seasonal]
+    seasonal = [_per_season(root).modulus for root in roots if root.part == "AR" and root.seasonal]
+    if plain:
+        return f"stationary, largest AR root {max(plain):.2f}"
+    return f"stationary, seasonal AR root {max(seasonal):.2f}" if seasonal else "stationary, no AR root"
 
 
 def _reason(found: Mapping[str, object], roots: tuple[Root, ...]) -> str:
     if not roots:
         return "Corrected AIC chooses no ARMA term: what the plan leaves is white noise."
-    psi, half = cast(float, found["psi_sum"]), cast(float, found["half_life"])
-    parts = [f"All roots of the {found['order']} lie inside the circle"]
+    if all(root.part == "MA" for root in roots):
+        parts = [f"The {found['order']} has no AR root, so it is stationary"]
+    else:
+        parts = [f"All AR roots of the {found['order']} lie inside the circle"]
     cycle = next((r for r in roots if r.part == "AR" and not r.seasonal and 2.0 < r.period < np.inf), None)
     if cycle is not None:
         parts.append(f"one pair makes a cycle of {cycle.period:.3g} steps with modulus {cycle.modulus:.2f}")
-    parts.append(f"the absolute psi weights sum to {psi:.3g}, and a shock is halved after {half:.2g} steps")
+    half = cast(float, found["half_life"])
+    fading = f"after {half:.2g} steps" if half >= 1.0 else "within one step"
+    parts.append(f"the absolute psi weights sum to {found['psi_sum']:.3g}, and a shock is halved {fading}")
     return "; ".join(parts) + "."
 
 
@@ -275,7 +282,7 @@ def _lasting(found: Mapping[str, object]) -> str:
 
 
 def _per_season(root: Root) -> Root:
-    """A seasonal root per season, as its coefficient, not per step; others as they are."""
+    """A seasonal root per cycle, as its coefficient, not per step; others as they are."""
     if not root.seasonal:
         return root
     slope = root.period * root.modulus ** (root.period - 1.0)

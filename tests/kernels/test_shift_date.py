@@ -143,7 +143,7 @@ def test_a_broken_trend_has_a_ratio_for_each_kind_of_error() -> None:
     assert np.mean([one is not None and one.t_levels > 4.0 for one in stationary]) > 0.95
     assert np.median([abs(one.position - 120) for one in stationary if one is not None]) <= 5
     # A random walk bends by itself: the levels take that for a corner, the differences hardly do.
-    assert np.mean([one is not None and abs(one.t_levels) > 4.0 for one in walks]) > 0.3
+    assert np.mean([one is not None and abs(one.t_levels) > 4.0 for one in walks]) > 0.15
     assert np.mean([one is not None and abs(one.t_differences) > 4.0 for one in walks]) < 0.1
 
 

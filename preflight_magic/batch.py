@@ -7,6 +7,8 @@ import operator
 from collections import OrderedDict
 from collections.abc import Hashable, Iterable, Iterator, Sequence
 from concurrent.futures import Executor
+from dataclasses import replace
+from itertools import repeat
 from typing import Any
 
 import numpy as np
@@ -137,25 +139,34 @@ def _stream(
 ) -> Iterator[SeriesReport]:
     """Reports in the order of the series."""
     keys = [_key(one, settings) if cache else None for one in every]
-    waiting = [one for one, key in zip(every, keys, strict=True) if key is None or key not in _cache]
-    found = iter(_climbs(waiting, settings, pool))
-    for one, key in zip(every, keys, strict=True):
-        known = _cache.get(key) if key is not None else None
-        if known is not None and key is not None:
-            _cache.move_to_end(key)
-        elif waiting and waiting[0] is one:
-            waiting.pop(0)
-            known = next(found)
-            _remember(key, known)
+    waiting = [key is None or key not in _cache for key in keys]
+    todo = [one for one, waits in zip(every, waiting, strict=True) if waits]
+    found = map(_checked, todo, repeat(settings)) if pool is None else pool.map(_checked, todo, repeat(settings))
+    for one, key, waits in zip(every, keys, waiting, strict=True):
+        known = None if waits or key is None else _cache.get(key)
+        if waits:
+            source, known = next(found)
+            if source.problem is None:
+                _remember(key, known)
+        elif known is None:
+            # other results of this run have pushed it out
+            source, known = _checked(one, settings)
         else:
-            known = climb(one, settings)
-        yield SeriesReport(one, settings, known)
+            source = one
+        yield SeriesReport(source, settings, known)
 
 
-def _climbs(every: Sequence[TimeSeries], settings: Settings, pool: Executor | None) -> Iterator[Climb]:
-    if pool is None:
-        return (climb(one, settings) for one in list(every))
-    return pool.map(climb, list(every), [settings] * len(every))
+def _checked(one: TimeSeries, settings: Settings) -> tuple[TimeSeries, Climb]:
+    """Climb the ladder; a fault of ours makes this series infeasible and stops no other."""
+    try:
+        return one, climb(one, settings)
+    except Exception as error:
+        problem = (
+            f"column {one.name!r}: the check failed inside preflight_magic ({type(error).__name__}: {error}); "
+            "please report this with the data, and check the other columns meanwhile."
+        )
+        failed = replace(one, problem=problem)
+        return failed, climb(failed, settings)
 
 
 def _remember(key: bytes | None, found: Climb) -> None:

@@ -17,6 +17,8 @@ from preflight_magic.stamps import counted, stamp_text
 
 FEWEST_VALUES = 8
 """Fewest observed values from which anything is decided: common practice."""
+LARGEST = 1e100
+"""Size beyond which sums of squares leave the range of a double; its inverse is the smallest span."""
 CYCLES = 2.5
 """Cycles that a season taken from the calendar needs: two to compare, and some more to tell chance from pattern."""
 CYCLES_LONGER = 4.0
@@ -147,7 +149,8 @@ def to_series(
         numbers, index = numbers[first:last], index[first:last]
     values = pd.Series(numbers, index=index, name=source.name, copy=False)
     problem = (
-        _too_little(values, observed, calendar.kind)
+        _out_of_scale(values)
+        or _too_little(values, observed, calendar.kind)
         or _bad_season(values, options.season)
         or _forbidden_gap(values, observed, calendar.kind, options)
     )
@@ -173,6 +176,17 @@ def _infinite(numbers: Floats, index: pd.Index, kind: CalendarKind) -> str | Non
     found = f"{counted(int(infinite.size), 'infinite value')}, the first at {stamp_text(index[infinite[0]], kind)}"
     cure = "it with a missing value" if infinite.size == 1 else "them with missing values"
     return f"{found}; replace {cure} (NaN) or drop the column"
+
+
+def _out_of_scale(values: pd.Series) -> str | None:
+    """Numbers whose squares a computer cannot hold."""
+    low, high = float(values.min()), float(values.max())
+    largest = max(abs(low), abs(high))
+    if largest > LARGEST:
+        return f"values up to {largest:.3g} in size, too large to be squared; divide the column by a power of ten"
+    if 0.0 < high - low < 1.0 / LARGEST:
+        return f"values that span {high - low:.3g}, too little to be squared; multiply the column by a power of ten"
+    return None
 
 
 def _forbidden_gap(values: pd.Series, observed: int, kind: CalendarKind, options: Options) -> str | None:

@@ -119,9 +119,9 @@ def _finalists(sample: Sample, period: int, seasonal: bool, most: tuple[int, int
     for P, Q in terms:
         orders = [Order(p, q, P, Q, period if P or Q else 1) for p, q in plain]
         group = sorted((ranked(order) for order in orders if order.size <= room), key=lambda one: one.criterion)
-        finalists += group[: _FINALISTS // len(terms)]
-    lowest = min((one.criterion for one in finalists), default=0.0)
-    return [one for one in finalists if one.criterion <= lowest + _NEAR]
+        # each group by itself: between groups only the likelihood decides
+        finalists += [one for one in group[: _FINALISTS // len(terms)] if one.criterion <= group[0].criterion + _NEAR]
+    return finalists
 
 
 def _typical(order: Order) -> list[Array]:

@@ -53,8 +53,9 @@ def compare_halves(values: FloatArray, lags: tuple[int, ...] = (1,)) -> tuple[Mo
     -----
     Each moment is the mean of a series: the values, or products of deviations from the mean of their own half, so that
     a shift of the mean is told once. The variance of a mean is the long-run variance over the number of terms; it is
-    estimated on both halves together, each less its mean, with the quadratic spectral kernel, the bandwidth of Andrews (1991) and AR(1) prewhitening (Andrews and Monahan
-    1992, Econometrica 60, 953-966), since a kernel alone makes it too small in short series.
+    estimated on both halves together, each less its mean, with the quadratic spectral kernel, the bandwidth of Andrews
+    (1991) and AR(1) prewhitening (Andrews and Monahan 1992, Econometrica 60, 953-966), since a kernel alone makes it
+    too small in short series.
     """
     series = np.asarray(values, dtype=np.float64)
     n = series.size

@@ -24,6 +24,9 @@ __all__ = ["Candidate", "Comparison", "PlanPrior", "compare"]
 
 _SHORTEST_WITH_SHIFT = 24
 """Fewest observed values in which a level shift is looked for. Common practice: a dozen on each side."""
+_GRAIN = 3e-9
+"""Standard deviation of a fixed noise, in spreads of the series, that stands for the rounding of its values. Without
+it a series that follows a line or a pattern exactly would be described equally well by every difference."""
 _MOST_OUTLIERS = 0.05
 """Share of values above which outliers are not isolated but the way of the series. Common practice."""
 _SMALLEST_STEP = 2.0
@@ -76,6 +79,7 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     Harville (1974), Bayesian inference for variance components using only error contrasts, Biometrika 61, 383-385;
     Kass and Raftery (1995), Bayes factors, Journal of the American Statistical Association 90, 773-795.
     """
+    n = len(values)
     usable = period if period > 1 and _cycles(values, period) else 1
     gain = log_gain(values, usable)
     log = bool(gain > prior.log_margin)
@@ -83,7 +87,7 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     centre, scale = float(np.nanmean(x)), float(np.nanstd(x))
     if not scale > 0.0:
         return None
-    x = (x - centre) / scale
+    x = (x - centre) / scale + _GRAIN * np.random.default_rng(0).standard_normal(n)
     found = _best_plans(x, usable, prior)
     if found is None:
         return None

@@ -8,7 +8,9 @@ from preflight_magic.kernels.restricted_likelihood import Array, line_column, pa
 
 
 def lagged_design(values: Array, period: int, lags: tuple[int, ...]) -> tuple[Array, Array, int]:
-    """Regressors constant, line, pattern and lagged values, on the rows where everything is observed.
+    """Regressors constant, line, pattern and lagged values, on the rows where the value is observed.
+
+    A missing value among the lags is interpolated, so that a gap costs one row and not one more for each lag.
 
     Parameters
     ----------
@@ -22,19 +24,22 @@ def lagged_design(values: Array, period: int, lags: tuple[int, ...]) -> tuple[Ar
     -------
     design : ndarray, shape (rows, 1 + 1 + period - 1 + len(lags))
     response : ndarray, shape (rows,)
-    first : int
-        Rank of the design, or -1 where fewer than three degrees of freedom remain.
+    rank : int
+        Columns of the design, or -1 where fewer than three degrees of freedom remain.
     """
     n = len(values)
     columns = [np.ones((n, 1)), line_column(n)[:, None]]
     if period > 1:
         columns.append(pattern_columns(n, period))
+    seen = np.isfinite(values)
+    filled = values if seen.all() else np.interp(np.arange(n), np.flatnonzero(seen), values[seen])
     for lag in lags:
-        shifted = np.full((n, 1), np.nan)
-        shifted[lag:, 0] = values[:-lag]
+        shifted = np.zeros((n, 1))
+        shifted[lag:, 0] = filled[:-lag]
         columns.append(shifted)
     design = np.column_stack(columns)
-    rows = np.isfinite(design).all(axis=1) & np.isfinite(values)
+    rows = seen.copy()
+    rows[: max(lags)] = False
     rank = design.shape[1] if int(rows.sum()) >= design.shape[1] + 3 else -1
     return design[rows], values[rows], rank
 
@@ -60,7 +65,7 @@ def log_gain(values: Array, period: int) -> float:
     -------
     float
         Positive when the log describes the series better; -inf where a value is not positive, NaN where the series is
-        too short or one of the two regressions leaves nothing.
+        too short.
 
     Notes
     -----
@@ -78,11 +83,7 @@ def log_gain(values: Array, period: int) -> float:
     raw, logged = lagged_design(plain, period, lags), lagged_design(np.log(plain), period, lags)
     if raw[2] < 0 or logged[2] < 0:
         return float("nan")
-    # what rounding leaves: relative to the level for the plain series, absolute for the logarithm
-    before, after = _deviance(*raw[:2]), _deviance(*logged[:2])
-    if before is None or after is None:
-        return 0.0 if before is None else float("nan")
-    return before - after - 2.0 * float(logged[1].sum())
+    return _deviance(*raw[:2]) - _deviance(*logged[:2]) - 2.0 * float(logged[1].sum())
 
 
 _DEGREES = 5.0
@@ -91,20 +92,26 @@ _CYCLES_FOR_LAGS = 5
 """Cycles from which two seasonal lags are worth the rows that they cost. Common practice."""
 
 
-def _deviance(design: Array, response: Array) -> float | None:
-    """-2 log likelihood of a regression with t errors, without its constant; None where nothing is left."""
+_EXACT = 1e-16
+"""Variance, relative to the level, at which a description is as good as exact: what is left is rounding."""
+_FARTHEST = 8.0
+"""Standard deviations beyond which an error counts no further, so that one wild value does not decide."""
+
+
+def _deviance(design: Array, response: Array) -> float:
+    """-2 log likelihood of a regression with t errors, without its constant."""
     basis = np.linalg.qr(design)[0]
     left = response - basis @ (basis.T @ response)
-    scale = float(left @ left) / len(left)
-    if scale < 1e-20:
-        return None
-    for _ in range(12):
+    scale = (1.4826 * float(np.median(np.abs(left)))) ** 2
+    for _ in range(20):
+        scale = max(scale, _EXACT)
         weights = (_DEGREES + 1.0) / (_DEGREES + left**2 / scale)
         root = np.sqrt(weights)[:, None]
         effects = np.linalg.lstsq(design * root, response * root[:, 0], rcond=None)[0]
         left = response - design @ effects
-        last, scale = scale, max(float(np.mean(weights * left**2)), 1e-22)
+        last, scale = scale, float(np.mean(weights * left**2))
         if abs(scale - last) < 1e-4 * last:
             break
-    total = np.log1p(left**2 / (_DEGREES * scale)).sum()
+    scale = max(scale, _EXACT)
+    total = np.log1p(np.minimum(left**2 / scale, _FARTHEST**2) / _DEGREES).sum()
     return float(len(left) * np.log(scale) + (_DEGREES + 1.0) * total)

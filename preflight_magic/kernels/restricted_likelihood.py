@@ -118,8 +118,15 @@ def contrasts(levels: Levels, d: int, D: int) -> Contrasts | None:
         ``1/2 log|L L'| + 1/2 log|X'(L L')^-1 X|`` for the differencing filter L and the remaining
         regressors X, found from the columns that the filter annihilates: for N spanning its null space,
         ``|L L'| = |N'N| / |N_r|^2`` with N_r the first r rows, and ``X_2' L'(L L')^-1 L X_2 = X_2'(I - P_N) X_2``.
+
+    Raises
+    ------
+    ValueError
+        For two differences of levels without a trend.
     """
     n, s = len(levels.values), levels.period
+    if d + D >= 2 and not levels.trend:
+        raise ValueError("two differences annihilate a line, so the levels must allow for a trend")
     constant, line = np.ones((n, 1)), line_column(n)[:, None]
     pattern = pattern_columns(n, s) if levels.pattern else np.empty((n, 0))
     null: list[Array] = []

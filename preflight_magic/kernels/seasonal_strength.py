@@ -105,21 +105,41 @@ def average_strength(values: Array, period: int) -> Strength | None:
     return _strength(seasonal, trend, detrended - seasonal)
 
 
+def fill_along_pattern(values: Array, period: int) -> Array:
+    """Fill gaps on a straight line between what their neighbours are beside the mean of their season.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        NaN where missing, at least one value observed.
+    period : int
+        1 for no season.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+    """
+    seen = np.isfinite(values)
+    if seen.all():
+        return values
+    position = np.arange(len(values)) % period
+    centre = float(values[seen].mean())
+    counts = np.bincount(position[seen], minlength=period)
+    means = np.bincount(position[seen], values[seen] - centre, period) / np.maximum(counts, 1)
+    pattern = means[position] + centre
+    level = np.interp(np.arange(len(values)), np.flatnonzero(seen), (values - pattern)[seen])
+    return np.where(seen, values, level + pattern)
+
+
 def _filled(values: Array, period: int) -> Array | None:
     if period < 2:
         raise ValueError(f"the seasonal period is {period}; it must be at least 2")
     seen = np.isfinite(values)
     if len(values) < 2 * period + 1 or not seen.any():
         return None
-    centred = values - values[seen].mean()
-    position = np.arange(len(values)) % period
-    counts = np.bincount(position[seen], minlength=period)
-    means = np.bincount(position[seen], centred[seen], period) / np.maximum(counts, 1)
-    # A gap lies on a straight line between what its neighbours are beside the mean of their season.
-    level = np.interp(np.arange(len(values)), np.flatnonzero(seen), (centred - means[position])[seen])
-    filled = np.where(seen, centred, level + means[position])
-    size = float(np.abs(values[seen]).max())
-    return filled if float(np.abs(filled).max()) > 1e-12 * size else None
+    filled = fill_along_pattern(values, period)
+    filled = filled - filled.mean()
+    return filled if float(np.abs(filled).max()) > 1e-12 * float(np.abs(values[seen]).max()) else None
 
 
 def _strength(seasonal: Array, trend: Array, remainder: Array) -> Strength:

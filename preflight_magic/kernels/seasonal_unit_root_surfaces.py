@@ -13,7 +13,7 @@ from functools import cache, lru_cache
 from typing import Literal
 
 import numpy as np
-from scipy.special import ndtr
+from scipy.special import ndtr, ndtri
 
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.least_squares import FloatArray
@@ -88,6 +88,24 @@ def hegy_p_values(
         inside = quantiles[0] <= statistic <= quantiles[-1]
         answers.append((p, "exact" if inside else "at most" if p < 0.5 else "at least"))
     return answers
+
+
+def hegy_critical_values(kind: Kind, case: str, s: int, n: int, lags: int) -> dict[str, float]:
+    """Critical values at the usual levels, in the tail in which the statistic rejects.
+
+    Parameters
+    ----------
+    kind, case, s, n, lags
+        As for `hegy_quantiles`.
+
+    Returns
+    -------
+    dict
+        By level: ``1%``, ``5%`` and ``10%``.
+    """
+    quantiles, sign = hegy_quantiles(kind, case, s, n, lags), 1.0 if kind in _LOWER else -1.0
+    levels = (("1%", 0.01), ("5%", 0.05), ("10%", 0.1))
+    return {name: float(np.interp(sign * ndtri(level), _scores(), quantiles)) for name, level in levels}
 
 
 def hegy_quantiles(kind: Kind, case: str, s: int, n: int, lags: int) -> FloatArray:

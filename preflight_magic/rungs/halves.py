@@ -15,8 +15,8 @@ from preflight_magic.rungs.contract import Context, Rung
 
 METHOD = (
     "Weak stationarity read directly: mean, variance and autocovariances of the first and of the second half of the "
-    "transformed series. Each difference is divided by its standard error, from the long-run variances of both halves, "
-    "which allow for dependence; the bound on these z-values allows for the number of moments that are compared."
+    "transformed series. Each difference is divided by its standard error, from the long-run variance, which allows "
+    "for dependence; the bound on these z-values allows for the number of moments that are compared."
 )
 SOURCES = (
     "Andrews, D. W. K. and Monahan, J. C. (1992). An improved heteroskedasticity and autocorrelation consistent "

@@ -6,7 +6,12 @@ import math
 from collections.abc import Hashable, Mapping
 from typing import cast
 
-from preflight_magic.kernels.plan_likelihood import Candidate
+import numpy as np
+from numpy.typing import NDArray
+
+from preflight_magic.kernels.plan_likelihood import Candidate, Comparison
+from preflight_magic.kernels.seasonal_evidence import seasonal_evidence
+from preflight_magic.kernels.seasonal_strength import average_strength, fill_along_pattern
 from preflight_magic.model import Difference, Evidence, HypothesisTest, Judgement, RemovePattern, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
@@ -15,7 +20,10 @@ from preflight_magic.rungs.shares import capital, shares, told
 METHOD = (
     "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level. "
     "Then whether the pattern is fixed: a seasonal difference of a fixed pattern leaves a seasonal moving average with "
-    "a root at one, so both plans are models of the same data and their likelihoods are compared."
+    "a root at one, so both plans are models of the same data and their likelihoods are compared. HEGY (null: a unit "
+    "root at every seasonal frequency) and Canova-Hansen (null: a fixed pattern) are shown beside it; HEGY is weak in "
+    "few cycles, and Canova-Hansen rejects where the errors are strongly dependent. Neither decides, nor does the "
+    "strength of the pattern, which a fixed one has as well as a wandering one."
 )
 
 _WORDS: Mapping[Hashable, str] = {"fixed": "a fixed pattern", "difference": "a wandering one"}
@@ -36,8 +44,9 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Returns
     -------
     Evidence
-        Measures `period`, `asked` (the period considered), `presence_p`, `season_shares`; one test, where there is a
-        period.
+        Measures `period`, `asked` (the period considered), `presence_p`, `season_shares`; where they can be computed
+        `seasonal_strength` (by moving averages), `hegy_by_cycle` and `canova_hansen_by_cycle` (p-values by the length
+        of the cycle in steps). The F test of the pattern, HEGY and Canova-Hansen, where there is a period.
     """
     comparison = context.comparison
     if comparison is None:
@@ -66,7 +75,26 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
                 },
             ),
         )
+    if comparison.period > 1:
+        values, told_series = _subject(series, comparison)
+        beside = seasonal_evidence(values, comparison.period, comparison.best.d, told_series)
+        strength = average_strength(values, comparison.period)
+        tests += beside.tests
+        measures |= {} if strength is None else {"seasonal_strength": strength.seasonal}
+        measures |= {"hegy_by_cycle": beside.hegy} if beside.hegy else {}
+        measures |= {"canova_hansen_by_cycle": beside.canova_hansen} if beside.canova_hansen else {}
     return Evidence(measures, tests)
+
+
+def _subject(series: TimeSeries, comparison: Comparison) -> tuple[NDArray[np.float64], str]:
+    """What the tests look at: the series after a log; gaps, and isolated outliers, along the mean pattern."""
+    values = series.values.to_numpy(dtype=float, copy=True)
+    values[list(comparison.outliers)] = np.nan
+    words = ["log" if comparison.log else "as given"]
+    if not np.isfinite(values).all():
+        words.append("gaps and outliers filled along the mean pattern")
+    values = np.log(values) if comparison.log else values
+    return fill_along_pattern(values, comparison.period), ", ".join(words)
 
 
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
@@ -91,9 +119,42 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     reason = f"There is a season of {period} ({p_text}). {told(split, _WORDS)}"
     if even:
         reason += " That is too even to call: both plans are worth a forecast."
+    reason += _beside(evidence.tests, kind == "difference", thresholds.significance)
     if kind == "difference":
         return Judgement("inconclusive" if even else "transform", "a wandering season", reason, (Difference(period),))
     return Judgement("inconclusive" if even else "transform", "a fixed pattern", reason, (RemovePattern(period),))
+
+
+def _beside(tests: tuple[HypothesisTest, ...], wanders: bool, significance: float) -> str:
+    """What HEGY and Canova-Hansen say; empty where either is missing."""
+    found = {test.test: test for test in tests}
+    roots, stability = found.get("HEGY"), found.get("Canova-Hansen")
+    if roots is None or stability is None:
+        return ""
+    fixed = (roots.p_value < significance, stability.p_value >= significance)  # what each speaks for
+    if fixed[0] != fixed[1]:
+        why = (
+            "both reject, as where some frequencies wander and others do not"
+            if fixed[0]
+            else "neither rejects, as in few cycles, where both have little power"
+        )
+    elif fixed[0] == wanders:
+        why = "they differ from it"
+    else:
+        why = "they agree with it"
+    return (
+        f" Beside it HEGY {_does(fixed[0])} unit roots at the seasonal frequencies ({_p(roots)}) and Canova-Hansen "
+        f"{_does(not fixed[1])} a fixed pattern ({_p(stability)}): {why}."
+    )
+
+
+def _does(rejects: bool) -> str:
+    return "rejects" if rejects else "does not reject"
+
+
+def _p(test: HypothesisTest) -> str:
+    bound = {"exact": "", "at most": "at most ", "at least": "at least "}[test.p_bound]
+    return "p < 0.001" if test.p_value < 0.001 else f"p = {bound}{test.p_value:.3f}"
 
 
 RUNG = Rung(
@@ -105,6 +166,14 @@ RUNG = Rung(
         "Harville (1974), Bayesian inference for variance components using only error contrasts, "
         "Biometrika 61, 383-385",
         "Kass and Raftery (1995), Bayes factors, Journal of the American Statistical Association 90, 773-795",
+        "Hylleberg, Engle, Granger and Yoo (1990), Seasonal integration and cointegration, "
+        "Journal of Econometrics 44, 215-238",
+        "Smith, Taylor and del Barrio Castro (2009), Regression-based seasonal unit root tests, "
+        "Econometric Theory 25, 527-560",
+        "Canova and Hansen (1995), Are seasonal patterns constant over time? A test for seasonal stability, "
+        "Journal of Business and Economic Statistics 13, 237-252",
+        "Wang, Smith and Hyndman (2006), Characteristic-based clustering for time series data, "
+        "Data Mining and Knowledge Discovery 13, 335-364",
     ),
     examine=examine,
     judge=judge,

@@ -36,6 +36,12 @@ _READY = """async () => {
   await panel.sessionContext.ready;
   await panel.sessionContext.session.kernel.info;
 }"""
+_FAULT = """i => {
+  const model = window.jupyterapp.shell.currentWidget.content.widgets[i].model;
+  if (model.executionCount === null) return 'did not run';
+  const faults = model.outputs.toJSON().filter(o => o.output_type === 'error');
+  return faults.map(o => o.ename + ': ' + o.evalue + ' ' + o.traceback.join(' ')).join(' ');
+}"""
 _SETTINGS = {
     "apputils-extension/notification.jupyterlab-settings": {"fetchNews": "false", "checkForUpdates": False},
     "apputils-extension/themes.jupyterlab-settings": {"adaptive-theme": False},
@@ -176,9 +182,12 @@ class Notebook:
         self.page.evaluate("([n, a]) => window.jupyterapp.commands.execute(n, a)", [name, arguments or {}])
 
     def run(self, position: int) -> None:
-        """Run one cell and wait for its end."""
+        """Run one cell and wait for its end; an error in it is raised here."""
         self.page.evaluate("i => { window.jupyterapp.shell.currentWidget.content.activeCellIndex = i }", position)
         self.command("notebook:run-cell")
+        fault = self.page.evaluate(_FAULT, position)
+        if fault:
+            raise AssertionError(f"cell {position}: {fault}")
 
     def cell(self, position: int) -> Locator:
         """A cell of the notebook."""

@@ -72,3 +72,12 @@ def test_generators_agree_with_the_package() -> None:
     union = [union_of_rejections(y, lags=0) for y in walks]
     drawn = union_of_rejections_table.draw("four tests", n, 0, 6, seed)
     np.testing.assert_allclose([-one.statistic for one in union if one], drawn, rtol=1e-8)
+
+
+@pytest.mark.parametrize(("columns", "published"), [((0, 1), 1.095), ((1, 3), 1.058)])
+def test_unions_of_two_need_the_published_stretch(columns: tuple[int, int], published: float) -> None:
+    # Harvey, Leybourne and Taylor (2009), Econometric Theory 25: at 5 % the critical values of DF-GLS with and without
+    # a line are stretched by 1.095, those of DF-GLS and ADF with a line by 1.058 (large samples; from memory).
+    largest = union_of_rejections_table.draw_ratios(500, 10_000, 3)[:, columns].max(axis=1)
+    rejected = np.mean(largest > published)
+    assert abs(rejected - 0.05) < 3.0 * np.sqrt(0.0475 / 10_000)

@@ -11,6 +11,7 @@ Examples
 from __future__ import annotations
 
 import importlib
+import sys
 from typing import TYPE_CHECKING, Any
 
 from preflight_magic.model import CheckError
@@ -58,3 +59,6 @@ def unload_ipython_extension(shell: Any) -> None:
     from preflight_magic.magic import unload
 
     unload(shell)
+    cards = sys.modules.get("preflight_magic.present.registry")
+    if cards is not None:
+        cards.close_all()

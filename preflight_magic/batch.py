@@ -143,16 +143,16 @@ def _stream(
     todo = [one for one, waits in zip(every, waiting, strict=True) if waits]
     found = map(_checked, todo, repeat(settings)) if pool is None else pool.map(_checked, todo, repeat(settings))
     for one, key, waits in zip(every, keys, waiting, strict=True):
-        known = None if waits or key is None else _cache.get(key)
         if waits:
             source, known = next(found)
             if source.problem is None:
                 _remember(key, known)
-        elif known is None:
+        elif key is not None and key in _cache:
+            source, known = one, _cache[key]
+            _cache.move_to_end(key)
+        else:
             # other results of this run have pushed it out
             source, known = _checked(one, settings)
-        else:
-            source = one
         yield SeriesReport(source, settings, known)
 
 

@@ -151,8 +151,10 @@ def contrasts(sample: Sample) -> Sample:
 
 
 def centred(sample: Sample) -> Array:
-    """The series of a sample less its mean, for conditional estimates; missing values keep their fill."""
-    series = sample.stacked[:, -1]
+    """The series of a sample less its mean, for conditional estimates; missing values filled by least squares."""
+    series, gaps = sample.stacked[:, -1], sample.stacked[:, : sample.gaps]
+    if sample.gaps:
+        series = series - gaps @ (gaps.T @ series)
     return series - series.mean() if sample.mean else series
 
 
@@ -172,7 +174,7 @@ def finish(sample: Sample, found: Maximum, beside: Maximum | None = None) -> Arm
     innovations = residuals / np.sqrt(variance)
     mean, mean_error = 0.0, float("nan")
     if sample.mean and factor is not None:
-        mean = float(effects[-1]) * sample.scale
+        mean = float(effects[-1]) * sample.scale + sample.centre
         mean_error = float(np.sqrt(variance)) * sample.scale / float(factor[-1, -1])
     if flat:
         basis = np.linalg.qr(columns[:, :flat])[0]

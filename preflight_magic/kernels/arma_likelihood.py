@@ -21,6 +21,8 @@ _EXACT_WORK = 2e8
 """Multiplications of one banded factor beyond which residuals are conditional: first values set to the mean."""
 _ROUNDING = 1e-10
 """Relative size of residuals that are rounding errors."""
+_SMALLEST = 1e-12
+"""Spread relative to the largest value below which nothing varies but rounding errors."""
 
 
 @dataclass(frozen=True)
@@ -30,12 +32,12 @@ class Sample:
     Attributes
     ----------
     stacked : ndarray, shape (n, flat + mean + 1)
-        Nuisance columns and fixed columns, each set orthonormal, ones if there is a mean, and the series divided by
-        `scale`.
+        Nuisance columns and fixed columns, each set orthonormal, ones if there is a mean, and the series less
+        `centre` divided by `scale`.
     gaps, flat : int
         Nuisance columns; nuisance and fixed columns: all those with flat effects.
     mean : bool
-    scale : float
+    centre, scale : float
     missing : ndarray of int
         Rows at which a nuisance column first differs from zero.
     factor : tuple of float
@@ -46,6 +48,7 @@ class Sample:
     gaps: int
     flat: int
     mean: bool
+    centre: float
     scale: float
     missing: NDArray[np.intp]
     factor: tuple[float, ...] = (1.0,)
@@ -88,11 +91,11 @@ def prepare(values: Array, *, mean: bool, nuisance: Array | None = None, fixed: 
     observed = series - gaps @ (gaps.T @ series)
     centre = float(observed.mean()) if mean else 0.0
     scale = float(np.sqrt(np.mean((observed - centre) ** 2)))
-    if not scale > _ROUNDING * float(np.abs(series).max()):
+    if not scale > _SMALLEST * float(np.abs(series).max()):
         return None
-    parts = [gaps, others, np.ones((len(series), int(mean))), series[:, None] / scale]
+    parts = [gaps, others, np.ones((len(series), int(mean))), (series[:, None] - centre) / scale]
     flat = gaps.shape[1] + others.shape[1]
-    return Sample(np.asfortranarray(np.column_stack(parts)), gaps.shape[1], flat, mean, scale, missing)
+    return Sample(np.asfortranarray(np.column_stack(parts)), gaps.shape[1], flat, mean, centre, scale, missing)
 
 
 def _basis(columns: Array, others: Array) -> Array:

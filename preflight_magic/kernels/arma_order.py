@@ -45,7 +45,7 @@ def search(
     Parameters
     ----------
     values : ndarray, shape (n,)
-        No NaN; missing values hold a reasonable fill and have a column in `nuisance`.
+        No NaN; missing values hold any number and have a column in `nuisance`.
     period : int
         Seasonal lag.
     mean : bool
@@ -53,7 +53,7 @@ def search(
     seasonal : bool
         Whether orders with a seasonal AR or MA coefficient are tried.
     nuisance : ndarray, shape (n, k), optional
-        See `arma.fit`. The ranking sees the filled values, the likelihoods do not.
+        See `arma.fit`. The ranking fills missing values by least squares, the likelihoods do not.
     fixed : ndarray, shape (n, l), optional
         See `arma.fit`.
     most : (int, int)

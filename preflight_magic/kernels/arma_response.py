@@ -12,8 +12,8 @@ from preflight_magic.kernels.arma_roots import is_stationary
 from preflight_magic.kernels.whiten import NotPositiveDefiniteError, autocovariances, psi_weights
 
 _TOLERANCE = 1e-9
-"""Relative bound on what is left out of the sum of psi weights."""
-_BLOCK, _LONGEST = 1 << 16, 1 << 22
+"""Relative bound on what is left out of the sum of psi weights, unless `_LONGEST` is reached first."""
+_BLOCK, _LONGEST = 1 << 16, 1 << 20
 """Psi weights computed at once, and in all."""
 
 

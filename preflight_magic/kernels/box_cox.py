@@ -24,6 +24,8 @@ _CYCLES_FOR_LAGS = 5  # cycles from which two seasonal lags are worth their rows
 _MOST_ROUNDS = 60
 _FINE = 1e-3  # exponents
 _SETTLED = 1e-3  # relative change of the scale: at the estimate the likelihood is flat in it, so settles to 1e-4
+_BEYOND = 1e9  # stands for an infinite likelihood, which root finding could not bear
+_OVERFLOW = 1e150  # its square is still a number
 _TINY = 1e-20  # a mean square that is rounding, the values having level one
 
 
@@ -91,13 +93,13 @@ def box_cox(values: Array, period: int, coverage: float = 0.95) -> BoxCoxExponen
         return None
     grid = np.arange(LOWEST, HIGHEST + 0.5)
     heights = [deviance(float(power)) for power in grid]
-    if not np.isfinite(heights).all():
-        return None
     best = int(np.argmin(heights))
     low, high = float(grid[max(best - 1, 0)]), float(grid[min(best + 1, len(grid) - 1)])
     found = minimize_scalar(deviance, bounds=(low, high), method="bounded", options={"xatol": _FINE})
     at_best = (float(grid[best]), heights[best])
     exponent, least = min((float(found.x), float(found.fun)), at_best, key=lambda one: one[1])
+    if abs(least) >= 0.5 * _BEYOND:
+        return None
     bound = least + float(chdtri(1.0, 1.0 - coverage))
 
     def over(power: float) -> float:
@@ -120,34 +122,37 @@ def _profile(values: Array, period: int) -> tuple[Callable[[float], float] | Non
     fixed = np.linalg.qr(design[:, : -len(lags)])[0]
     moving = np.column_stack([design[:, -len(lags) :], response])
     jacobian = float(response.sum())
-    weights = np.ones(len(response))
 
-    def deviance(power: float) -> float:
-        nonlocal weights
-        with np.errstate(over="ignore"):
+    def at(power: float, weights: Array) -> tuple[float, Array]:
+        with np.errstate(over="ignore", invalid="ignore"):
             powered = moving if abs(power) < 1e-9 else np.expm1(power * moving) / power
-        if not np.isfinite(powered).all():
-            return float("inf")
-        left = powered - fixed @ (fixed.T @ powered)
+            left = powered - fixed @ (fixed.T @ powered)
+        if not (np.abs(left) < _OVERFLOW).all():
+            return _BEYOND, weights
         value, weights = _deviance(np.column_stack([fixed, left[:, :-1]]), left[:, -1], weights)
-        return value - 2.0 * (power - 1.0) * jacobian
+        return max(value - 2.0 * (power - 1.0) * jacobian, -_BEYOND), weights
 
-    return deviance, len(response)
+    # Every exponent starts from the weights of this one, so that the likelihood is a function of the exponent alone.
+    start = at(0.5, np.ones(len(response)))[1]
+    return lambda power: at(power, start)[0], len(response)
 
 
 def _deviance(design: Array, response: Array, weights: Array) -> tuple[float, Array]:
-    """-2 log likelihood with t errors, without its constant, and the weights at the estimate, which start the next."""
+    """-2 log likelihood with t errors, without its constant, and the weights at the estimate.
+
+    Without end below where nothing is left, beyond all above where the regressors depend on each other.
+    """
     rows, last = len(response), 0.0
     for _ in range(_MOST_ROUNDS):
         weighted = design * weights[:, None]
         gram = weighted.T @ design
         _, effects, info = dposv(gram, weighted.T @ response, lower=1)
         if info != 0:
-            return float("inf"), np.ones(rows)
+            return _BEYOND, np.ones(rows)
         squares = (response - design @ effects) ** 2
         scale = float(weights @ squares) / rows
         if not scale > _TINY:
-            return float("inf"), np.ones(rows)
+            return -_BEYOND, np.ones(rows)
         weights = (_DEGREES + 1.0) / (_DEGREES + squares / scale)
         if abs(scale - last) <= _SETTLED * scale:
             break

@@ -16,6 +16,7 @@ from scipy.linalg.lapack import dpotrf, dtrtrs
 from preflight_magic.kernels.least_squares import FloatArray, polynomial
 from preflight_magic.kernels.long_run_variance import andrews_bandwidth, within_rounding
 from preflight_magic.kernels.quadratic_forms import cramer_von_mises_p_value
+from preflight_magic.kernels.scaling import to_unit_size
 
 _EPSILON = float(np.finfo(np.float64).eps)
 _DEPENDENT = 1e-7  # relative to its own length, what the columns before leave of a regressor that repeats them
@@ -131,9 +132,9 @@ def canova_hansen(
     others = (1 if terms == "c" else 2) + lagged
     if n - period + 1 - others < _FEWEST_DEGREES or within_rounding(low, high):
         return None
-    centred = y - y.sum() / y.size
+    centred, scale = to_unit_size(y - y.sum() / y.size)
     left = _residuals(centred, period, 1 if terms == "ct" else 0, lagged)
-    if left is None or float(np.abs(left).max()) <= n * _EPSILON * max(abs(low), abs(high)):
+    if left is None or float(np.abs(left).max()) <= n * _EPSILON * max(abs(low), abs(high)) / scale:
         return None
     products = waves(n, period) * left[:, None]  # no statistic depends on where a wave begins
     if isinstance(bandwidth, str):

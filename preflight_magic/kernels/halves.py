@@ -61,21 +61,23 @@ def compare_halves(values: FloatArray, lags: tuple[int, ...] = (1,)) -> tuple[Mo
     n = series.size
     if n < 16 or does_not_vary(series):
         return None
-    halves = series[: n // 2], series[n // 2 :]
-    found = [_moment("mean", halves[0], halves[1])]
+    # Scaled, since products of products would overflow for very large values.
+    scale = float(np.abs(series).max())
+    halves = series[: n // 2] / scale, series[n // 2 :] / scale
+    found = [_moment("mean", halves[0], halves[1], scale)]
     parts = halves[0] - halves[0].mean(), halves[1] - halves[1].mean()
-    found.append(_moment("variance", parts[0] ** 2, parts[1] ** 2))
+    found.append(_moment("variance", parts[0] ** 2, parts[1] ** 2, scale**2))
     for lag in lags:
         if 0 < lag <= n // 8:
             products = [part[lag:] * part[:-lag] for part in parts]
-            found.append(_moment(f"autocovariance at lag {lag}", products[0], products[1]))
+            found.append(_moment(f"autocovariance at lag {lag}", products[0], products[1], scale**2))
     return tuple(found)
 
 
-def _moment(name: str, first: FloatArray, second: FloatArray) -> Moment:
+def _moment(name: str, first: FloatArray, second: FloatArray, unit: float) -> Moment:
     gap = float(second.mean() - first.mean())
     pooled = np.concatenate([first - first.mean(), second - second.mean()])
     one = long_run_variance(pooled, kernel="quadratic spectral", bandwidth="andrews", prewhiten=True)
     variance = 0.0 if one is None else one.value * (1.0 / first.size + 1.0 / second.size)
     z = gap / float(np.sqrt(variance)) if variance > 0.0 else float("nan")
-    return Moment(name, float(first.mean()), float(second.mean()), z)
+    return Moment(name, unit * float(first.mean()), unit * float(second.mean()), z)

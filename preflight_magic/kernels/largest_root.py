@@ -123,7 +123,8 @@ def largest_root(
     Returns
     -------
     LargestRoot or None
-        None where the series is too short for the lags, does not vary, or is fitted without error.
+        None where the series is too short for the lags, does not vary, is fitted without error, or where the
+        simulated series explode, as in a series so short that roots far above one cannot be excluded.
 
     Raises
     ------
@@ -186,8 +187,8 @@ def half_life(coefficients: FloatArray, longest: int = 10_000) -> float:
     Returns
     -------
     float
-        On the straight line between two steps; 0 without coefficients, infinite where the response does not come
-        below one half for good.
+        On the straight line between two steps; one half without coefficients, infinite where the response does not
+        come below one half for good within `longest` steps.
     """
     impulse = np.zeros(longest + 1)
     impulse[0] = 1.0
@@ -252,7 +253,10 @@ def _persistence(design: _Design, value: float) -> Persistence:
 def _simulated_quantiles(
     design: _Design, n: int, grid: FloatArray, levels: tuple[float, ...], replications: int, seed: int
 ) -> FloatArray | None:
-    """Quantiles of the t-ratio under each value of the grid, shape (grid, levels); None where the series explode."""
+    """Quantiles of the t-ratio under each value of the grid, shape (grid, levels).
+
+    None where simulated series explode or are fitted without error.
+    """
     drawn = np.random.default_rng(seed).integers(0, design.level.size, (replications, n))
     lags = design.others.shape[1] - design.terms
     q = np.linalg.qr(design.others[:, : design.terms])[0]
@@ -268,7 +272,10 @@ def _simulated_quantiles(
             if not np.abs(series).max() < _EXPLODED:
                 return None
             ratios.append(_t_ratios(series, value, lags, q))
-        found[row] = np.quantile(np.concatenate(ratios), levels)
+        together = np.concatenate(ratios)
+        if not np.isfinite(together).all():
+            return None
+        found[row] = np.quantile(together, levels)
     return found
 
 
@@ -280,9 +287,12 @@ def _t_ratios(series: FloatArray, value: float, lags: int, q: FloatArray) -> Flo
     columns = [*(change[:, t - lag] for lag in range(1, lags + 1)), level, series[:, t + 1] - value * level]
     stacked = np.stack(columns, axis=1)
     stacked -= (stacked @ q) @ q.T
-    factor = np.linalg.cholesky(stacked @ stacked.transpose(0, 2, 1))
+    # Products of explosive series would lose the residual to rounding; their triangular factors do not.
+    factor: FloatArray = np.asarray(np.linalg.qr(stacked.transpose(0, 2, 1), mode="r"))
+    beside, diagonal, error = factor[:, -2, -1], factor[:, -2, -2], np.abs(factor[:, -1, -1])
     freedom = t.size - lags - 1 - q.shape[1]
-    ratios: FloatArray = factor[:, -1, -2] / factor[:, -1, -1] * np.sqrt(freedom)
+    with np.errstate(all="ignore"):  # a perfect fit gives no number, which is seen where the quantiles are taken
+        ratios: FloatArray = np.copysign(beside, beside * diagonal) / error * np.sqrt(freedom)
     return ratios
 
 

@@ -14,6 +14,7 @@ from preflight_magic.kernels.df_gls import quasi_difference_detrend
 from preflight_magic.kernels.dickey_fuller import level_regression, longest_lag, searched_length
 from preflight_magic.kernels.least_squares import FloatArray, detrend
 from preflight_magic.kernels.long_run_variance import long_run_variance, within_rounding
+from preflight_magic.kernels.scaling import to_unit_size
 
 # Of the weight exp(-_RATE (U / S)**2): chosen by the authors by simulation (from memory).
 _RATE = 0.00025
@@ -89,7 +90,8 @@ def trend_test(y: FloatArray) -> TrendTest | None:
         raise ValueError("a trend test needs finite values; it got missing or infinite ones")
     if n < _FEWEST or within_rounding(low, high):
         return None
-    rounding = n * _EPSILON * max(abs(low), abs(high))
+    y, scale = to_unit_size(y - y[0])
+    rounding = n * _EPSILON * max(abs(low), abs(high)) / scale
     left, changes = detrend(y, 1), np.diff(y)
     if float(np.abs(left).max()) <= rounding:
         return None
@@ -111,8 +113,8 @@ def trend_test(y: FloatArray) -> TrendTest | None:
         t_levels=t_levels,
         t_differences=t_differences,
         weight=weight,
-        slope=slope,
-        drift=drift,
+        slope=slope * scale,
+        drift=drift * scale,
         nobs=n,
     )
 

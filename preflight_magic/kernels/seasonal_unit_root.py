@@ -18,12 +18,14 @@ from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.lag_length import schwert, smallest_criterion
 from preflight_magic.kernels.least_squares import FloatArray, leading_rank, polynomial, residual_sums, triangle
 from preflight_magic.kernels.long_run_variance import within_rounding
+from preflight_magic.kernels.scaling import to_unit_size
 from preflight_magic.kernels.seasonal_unit_root_surfaces import Kind, hegy_p_values
 
 HegyTerms = Literal["n", "c", "ct"]
 
 _DEGREE = {"n": -1, "c": 0, "ct": 1}
-_EPSILON = float(np.finfo(np.float64).eps)
+_ROUNDING = 32.0 * float(np.finfo(np.float64).eps)  # of residuals beside the largest value: there is no error
+_COLLINEAR = 1e-12  # determinant of a pair beside its diagonal, below which the two cannot be told apart
 _FEWEST_DEGREES = 4  # of freedom; fewer make the residual variance meaningless (common practice)
 
 
@@ -142,7 +144,8 @@ def hegy(
         raise ValueError(f"the lag length is {longest}; it must not be negative")
     if room < 0 or longest > room or within_rounding(low, high):
         return None
-    columns = _columns(y if terms == "n" else y - y.sum() / n, s, terms, dummies, longest)
+    scaled, scale = to_unit_size(y if terms == "n" else y - y.sum() / n)
+    columns = _columns(scaled, s, terms, dummies, longest)
     chosen = longest
     if lags is None and criterion is not None and longest:
         search = [*range(width), *range(width + longest, width + longest + s), *range(width, width + longest), -1]
@@ -155,11 +158,11 @@ def hegy(
     kept = columns if chosen == longest else np.delete(columns, np.s_[width + chosen : width + longest], axis=1)
     factor = triangle(np.asfortranarray(kept[chosen:]))
     nobs, before = n - s - chosen, width + chosen
-    noise = 4.0 * _EPSILON * max(abs(low), abs(high))
+    noise = _ROUNDING * max(abs(low), abs(high)) / scale
     if abs(factor[-1, -1]) <= noise * sqrt(nobs) or leading_rank(factor) < before + s:
         return None
     found = _statistics(factor[before:, before:], s, nobs - before - s)
-    return _with_p_values(found, s, terms, dummies, chosen, n)
+    return None if found is None else _with_p_values(found, s, terms, dummies, chosen, n)
 
 
 def _columns(y: FloatArray, s: int, terms: HegyTerms, dummies: bool, lags: int) -> FloatArray:
@@ -199,8 +202,8 @@ def _frequencies(s: int) -> FloatArray:
     return found
 
 
-def _statistics(factor: FloatArray, s: int, degrees: int) -> list[tuple[Kind, float, float]]:
-    """(kind, cycle, statistic) from the last rows and columns of the triangular factor."""
+def _statistics(factor: FloatArray, s: int, degrees: int) -> list[tuple[Kind, float, float]] | None:
+    """(kind, cycle, statistic) from the last rows and columns of the triangular factor; None where a pair is one."""
     variance = float(factor[-1, -1]) ** 2 / degrees
     z = factor[:-1, -1]
     inverse = dtrtri(factor[:-1, :-1])[0]
@@ -212,8 +215,11 @@ def _statistics(factor: FloatArray, s: int, degrees: int) -> list[tuple[Kind, fl
         found.append((kind, cycle, float(effects[j]) / sqrt(float(inverse[j] @ inverse[j]) * variance)))
     first, second = inverse[simple::2], inverse[simple + 1 :: 2]
     a, b, c = (first * first).sum(axis=1), (first * second).sum(axis=1), (second * second).sum(axis=1)
+    determinant = a * c - b * b
+    if (determinant <= _COLLINEAR * a * c).any():
+        return None
     e, f = effects[simple::2], effects[simple + 1 :: 2]
-    pairs = (c * e * e - 2.0 * b * e * f + a * f * f) / (a * c - b * b) / (2.0 * variance)
+    pairs = (c * e * e - 2.0 * b * e * f + a * f * f) / determinant / (2.0 * variance)
     found += [("pair", s / k, value) for k, value in enumerate(pairs.tolist(), 1)]
     squares = z * z
     found.append(("seasonal", nan, float(squares[1:].sum()) / (s - 1) / variance))

@@ -28,6 +28,7 @@ BreakModel = Literal["level", "trend", "both"]
 
 _TABLE = "zivot_andrews"
 _INDEPENDENT = 1e-9  # of its squared length a break has to keep beside the other regressors
+_EXACT = 1e-11  # share of the unexplained sum of squares that rounding may leave where a break explains it all
 TRIMMING = 0.15
 
 
@@ -116,7 +117,7 @@ def zivot_andrews(
     if chosen is None:
         return None
     dates, ratios = level_t_ratios(y, model, chosen)
-    if not ratios.size:
+    if not ratios.size or ratios.min() == -np.inf:
         return None
     best = int(ratios.argmin())
     statistic = float(ratios[best])
@@ -150,6 +151,7 @@ def level_t_ratios(
         Positions, from 0, of the first value after the break. Dates at which the break cannot be told from the other
         terms are left out.
     ratios : ndarray, shape (m,)
+        Minus infinity where the regression with the break has no error.
     """
     n = y.size
     cut = int(n * trimming)
@@ -170,11 +172,11 @@ def level_t_ratios(
         rr -= to_difference**2 / safe
         lr -= to_level * to_difference / safe
     unexplained = ll * rr - lr**2
-    kept &= (ll > _INDEPENDENT) & (unexplained > _INDEPENDENT**2)
-    ratios: FloatArray = (beside * ll + error * lr)[kept] / (
-        abs(error) * np.sqrt(unexplained[kept] / (nobs - coefficients))
-    )
-    return dates[kept], ratios
+    kept &= ll > _INDEPENDENT
+    exact = unexplained <= _EXACT
+    spread = abs(error) * np.sqrt(np.where(exact, 1.0, unexplained) / (nobs - coefficients))
+    ratios: FloatArray = np.where(exact, -np.inf, (beside * ll + error * lr) / spread)
+    return dates[kept], ratios[kept]
 
 
 def _orthonormal(y: FloatArray, lags: int) -> tuple[FloatArray, float, float] | None:

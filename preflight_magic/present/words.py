@@ -240,7 +240,7 @@ def value_text(value: object, noun: str = "") -> str:
     if isinstance(value, dt.date):
         return value.isoformat()
     if isinstance(value, Mapping):
-        return ", ".join(f"{label_text(str(k))} {value_text(v, noun)}" for k, v in value.items()) or NONE
+        return ", ".join(f"{label_text(str(k))}: {value_text(v, noun)}" for k, v in value.items()) or NONE
     if isinstance(value, pd.Series | pd.Index | np.ndarray):
         return _many(list(value.tolist()), noun)
     if isinstance(value, Sequence | set | frozenset):

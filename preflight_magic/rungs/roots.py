@@ -167,7 +167,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     elif remarks:
         headline = remarks[0][0]
     else:
-        headline = _all_well(roots)
+        headline = _all_well(found, roots)
     reason = " ".join(text for _, text in (*doubts, *remarks)) or _reason(found, roots)
     return Judgement("inconclusive" if doubts else "clear", headline, reason)
 
@@ -181,7 +181,7 @@ def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: 
     cancelled = [factor.ar for factor in cast("tuple[CommonFactor, ...]", found["common_factors"])]
     notes: list[Note] = []
     for root in (root for root in roots if root.part == "AR" and root not in cancelled):
-        size = _per_season(root)
+        size = _per_season(root, found)
         near = size.modulus >= thresholds.near_unit_modulus or size.modulus + size.standard_error >= 1.0
         if root.seasonal and near and root.period == found["season"]:
             head = "the season may wander" if not found["seasonal_difference"] else "the season still wanders"
@@ -212,7 +212,7 @@ def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note
         else:
             text += "no difference was taken, so the series may already have been differenced, or be a change itself."
             notes.append(("it may already have been differenced", text))
-    sized = [_per_season(root) for root in roots if root.part == "MA" and root.seasonal]
+    sized = [_per_season(root, found) for root in roots if root.part == "MA" and root.seasonal]
     if seasonal < MA_AT_ONE and sized and found["seasonal_difference"]:
         text = (
             f"The seasonal MA root is {_told(sized[0])}, and holding it at one costs only {max(seasonal, 0.0):.2f} of "
@@ -250,11 +250,11 @@ def _remarks(found: Mapping[str, object]) -> list[Note]:
     return notes
 
 
-def _all_well(roots: tuple[Root, ...]) -> str:
+def _all_well(found: Mapping[str, object], roots: tuple[Root, ...]) -> str:
     if not roots:
         return "white noise"
     plain = [root.modulus for root in roots if root.part == "AR" and not root.seasonal]
-    seasonal = [_per_season(root).modulus for root in roots if root.part == "AR" and root.seasonal]
+    seasonal = [_per_season(root, found).modulus for root in roots if root.part == "AR" and root.seasonal]
     if plain:
         return f"stationary, largest AR root {max(plain):.2f}"
     return f"stationary, seasonal AR root {max(seasonal):.2f}" if seasonal else "stationary, no AR root"
@@ -281,12 +281,13 @@ def _lasting(found: Mapping[str, object]) -> str:
     return f"is halved only after {half:.3g} steps" if np.isfinite(half) else "never fades"
 
 
-def _per_season(root: Root) -> Root:
+def _per_season(root: Root, found: Mapping[str, object]) -> Root:
     """A seasonal root per cycle, as its coefficient, not per step; others as they are."""
     if not root.seasonal:
         return root
-    slope = root.period * root.modulus ** (root.period - 1.0)
-    return replace(root, modulus=root.modulus**root.period, standard_error=root.standard_error * slope)
+    season = cast(int, found["season"])
+    slope = season * root.modulus ** (season - 1.0)
+    return replace(root, modulus=root.modulus**season, standard_error=root.standard_error * slope)
 
 
 def _told(root: Root) -> str:

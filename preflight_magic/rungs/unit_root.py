@@ -30,10 +30,11 @@ METHOD = (
     "Plans with no, one and two differences are models of the same contrasts of the data, so their restricted "
     "likelihoods can be compared, integrated over small ARMA models. The likelihood decides. ADF, DF-GLS, "
     "Phillips-Perron and Zivot-Andrews (null: a unit root) and KPSS (null: stationary) are shown beside it, each "
-    "resting on an assumption. With a moving average near -1 ADF, and more so Phillips-Perron, rejects too often, "
-    "which DF-GLS avoids by the modified AIC; with strong dependence KPSS does; a break looks like a unit root to all "
-    "but Zivot-Andrews; and none can tell a root of 0.95 from one in a hundred values. The union of rejections asks "
-    "DF-GLS and ADF, with and without a line, at stretched critical values."
+    "resting on an assumption. With a moving average near -1 ADF, and more so Phillips-Perron, rejects too often; the "
+    "modified AIC of DF-GLS mends most of it. In fifty values ADF with lags by AIC rejects a true unit root about "
+    "three times as often as it says (by simulation). With strong dependence KPSS rejects too often. A break looks "
+    "like a unit root to all but Zivot-Andrews. None can tell a root of 0.95 from one in a hundred values. The "
+    "union of rejections asks DF-GLS and ADF, with and without a line, at stretched critical values."
 )
 
 _WORDS: Mapping[Hashable, str] = {0: "no difference", 1: "one difference", 2: "two differences"}

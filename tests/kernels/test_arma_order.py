@@ -44,9 +44,21 @@ def test_orders_of_the_textbooks() -> None:
     assert lake is not None
     # Brockwell and Davis (1991) fit an ARMA(1,1) to the lake's level too.
     assert lake.order == Order(1, 1)
-    gaps = search(*with_gaps()[:1], 12, mean=False, seasonal=True, nuisance=with_gaps()[1])
-    assert gaps is not None
-    assert gaps.order == Order(0, 1, 0, 1, 12)
+
+
+def test_missing_values_enter_the_choice_by_the_likelihood_alone() -> None:
+    found = []
+    for fill in (0.0, 5.0):
+        values, columns = with_gaps(fill)
+        one = search(values, 12, mean=False, seasonal=True, nuisance=columns)
+        airline = fit(values, Order(0, 1, 0, 1, 12), mean=False, nuisance=columns)
+        assert one is not None
+        assert airline is not None
+        assert (one.order.Q, one.order.period) == (1, 12)
+        assert one.aicc <= airline.aicc + 1e-6
+        found.append(one)
+    assert found[0].order == found[1].order
+    np.testing.assert_allclose(found[0].coefficients, found[1].coefficients, atol=1e-5)
 
 
 @pytest.mark.parametrize(

@@ -128,6 +128,7 @@ def test_refuses_what_cannot_carry_it() -> None:
     assert zivot_andrews(0.1 * np.arange(60.0)) is None
     assert zivot_andrews(np.resize([1.0, -1.0], 60), lags=0) is None
     assert zivot_andrews(walk(20), lags=9) is None
+    assert zivot_andrews(np.repeat([0.0, 1.0], 30)) is None  # the break explains all
     short = zivot_andrews(walk(12))
     assert short is None or np.isfinite(short.statistic)
     with pytest.raises(ValueError, match="finite"):

@@ -139,7 +139,7 @@ def test_details_of_a_test() -> None:
         ("as\ngiven", "as given"),
         (pd.Period("2021-03", "M"), "2021-03"),
         ((1, 2.5, None), "1, 2.5, –"),
-        ({"lower_bound": -1.0, "upper": 2}, "lower bound −1, upper 2"),
+        ({"lower_bound": -1.0, "upper": 2}, "lower bound: −1, upper: 2"),
         (np.arange(10), "0, 1, 2, 3, 4, 5, 6, 7 and 2 more"),
         ((), "–"),
     ],

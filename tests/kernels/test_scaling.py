@@ -1,0 +1,18 @@
+import numpy as np
+import pytest
+
+from preflight_magic.kernels.scaling import to_unit_size
+
+
+@pytest.mark.parametrize("unit", [1e-300, 1e-6, 1.0, 3e150])
+def test_no_digit_is_lost(unit: float) -> None:
+    y = unit * np.random.default_rng(1).standard_normal(30)
+    scaled, scale = to_unit_size(y)
+    assert np.array_equal(scaled * scale, y)
+    assert 0.5 <= np.abs(scaled).max() < 1.0
+
+
+def test_zeros_stay() -> None:
+    scaled, scale = to_unit_size(np.zeros(4))
+    assert np.array_equal(scaled, np.zeros(4))
+    assert scale == 1.0

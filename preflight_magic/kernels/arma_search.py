@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.optimize import leastsq
 
 from preflight_magic.kernels.arma_parameters import Order, coefficients, free_parameters, polynomials
+from preflight_magic.kernels.damped_least_squares import least_squares
 from preflight_magic.kernels.restricted_likelihood import Array, Contrasts, evaluate
 from preflight_magic.kernels.whiten import NotPositiveDefiniteError
 
@@ -95,40 +95,32 @@ def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | No
         penalty = 0.5 * float((((free - mean) / width) ** 2).sum())
         return value, value - penalty, scaled * np.exp(min(penalty / m, 50.0))
 
-    best: tuple[float, float, Array] | None = None
+    best: tuple[float, float, Array, Array] | None = None
     usual = ((*start, *(_SEASONAL_START,) * (order.P + order.Q)) for start in _STARTS.get((order.p, order.q), ()))
     for start in (hint,) if hint is not None else usual:
         free = free_parameters(order, np.asarray(start, dtype=float))
         try:
-            value, height, _ = at(free)
+            value, height, scaled = at(free)
         except NotPositiveDefiniteError:
             continue
         if best is None or height > best[1]:
-            best = (value, height, free)
+            best = (value, height, free, scaled)
     if best is None:
         return None
-    value, height, free = best
+    value, height, free, scaled = best
     if order.size == 0:
         return Fitted(view, order, np.empty(0), value, height)
-    far = np.full(len(view.stacked), 1e3 * float(np.sqrt(np.mean(view.stacked[:, 0] ** 2)) + 1e-300))
 
-    def residuals(point: Array) -> Array:
+    def residuals(point: Array) -> Array | None:
         try:
             return at(point)[2]
         except NotPositiveDefiniteError:
-            return far
+            return None
 
-    # A relative change of 5e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
-    found = leastsq(residuals, free, ftol=5e-5, xtol=3e-3, epsfcn=1e-10, maxfev=12 * (order.size + 1), full_output=True)
-    curvature: Array = m * np.eye(order.size)
-    try:
-        value_there, height_there, scaled = at(found[0])
-        if height_there >= height:
-            value, height, free = value_there, height_there, np.asarray(found[0], dtype=float)
-            if found[1] is not None:
-                curvature = np.asarray(m / float(scaled @ scaled) * np.linalg.pinv(found[1]), dtype=float)
-    except NotPositiveDefiniteError:
-        pass
+    # A relative fall of 5e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
+    free, curvature = least_squares(residuals, free, scaled, 5e-5)
+    value, height, scaled = at(free)
+    curvature = m / float(scaled @ scaled) * curvature
     precision = curvature + np.diag(width**-2.0)
     evidence = height - float(np.log(width).sum()) - 0.5 * float(np.linalg.slogdet(precision)[1])
     return Fitted(view, order, coefficients(order, np.clip(free, -EDGE, EDGE)), value, evidence)

@@ -79,7 +79,7 @@ def fitted(cells: dict[tuple[int, int, int], dict[tuple[str, str], Array]]) -> l
 
 
 def _informs(s: int, terms: str, kind: str, found: dict[tuple[str, str], Array]) -> bool:
-    """Whether a cell has a statistic of its own; with fewer than four seasons the seasonal one is that of pi or pair."""
+    """Whether a cell has a statistic of its own: below four seasons the seasonal one is that of pi or the pair."""
     return (terms, kind) in found and (kind != "seasonal" or s > 3)
 
 

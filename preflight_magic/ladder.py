@@ -150,6 +150,7 @@ def prior_of(thresholds: Thresholds) -> PlanPrior:
         difference=thresholds.difference_odds,
         second=thresholds.second_difference_odds,
         wandering=thresholds.wandering_odds,
+        both=thresholds.both_differences_odds,
         slope=thresholds.slope_scale,
         outlier_bound=thresholds.outlier_bound,
     )

@@ -47,16 +47,18 @@ class Thresholds:
 
     # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
     # simpler plan is preferred a little; the amounts are common practice and were checked by simulation.
-    # Against a trend: odds of 2.7 to 1.
-    trend_odds: float = 1.0
+    # Against a trend: odds of 1.6 to 1.
+    trend_odds: float = 0.5
     # Against a level shift at any date: odds of 2.7 to 1, besides the number of dates it might have.
     shift_odds: float = 1.0
-    # Against a first difference where there is no seasonal one: odds of 1.6 to 1.
-    difference_odds: float = 0.5
-    # Against a second difference on top of it: odds of 2.7 to 1.
-    second_difference_odds: float = 1.0
+    # Against a first difference: odds of 2.1 to 1.
+    difference_odds: float = 0.75
+    # Against a second difference on top of it: odds of 1.6 to 1.
+    second_difference_odds: float = 0.5
     # Against a seasonal difference where there is a season: odds of 2.7 to 1.
     wandering_odds: float = 1.0
+    # Against a seasonal and an ordinary difference together, the more usual of the two: odds of 2.1 to 1.
+    both_differences_odds: float = 0.75
     # Prior standard deviation of a trend's slope, in spreads of the first differences a step.
     slope_scale: float = 0.25
     # Absolute t-value from which one value stands alone and is left out of the comparison. Common practice is 3 to 4

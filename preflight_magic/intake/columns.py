@@ -218,10 +218,10 @@ def _too_little(values: pd.Series, observed: int, kind: CalendarKind) -> str | N
 
 def _bad_season(values: pd.Series, season: tuple[int, ...] | None) -> str | None:
     longest = season[-1] if season else 1
-    if 2 * longest <= len(values):
+    if longest <= len(values):
         return None
     return (
-        f"{len(values)} values hold less than two cycles of season={longest}; give at least {2 * longest} values, a "
+        f"{len(values)} values do not hold one cycle of season={longest}; give at least {2 * longest} values, a "
         "shorter season, or season=1 for none"
     )
 

@@ -120,7 +120,8 @@ def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | No
     # A relative fall of 5e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
     free, curvature = least_squares(residuals, free, scaled, 5e-5)
     value, height, scaled = at(free)
-    curvature = m / float(scaled @ scaled) * curvature
+    left = float(scaled @ scaled)
+    curvature = m / left * curvature if left > 0.0 else m * np.eye(order.size)
     precision = curvature + np.diag(width**-2.0)
     evidence = height - float(np.log(width).sum()) - 0.5 * float(np.linalg.slogdet(precision)[1])
     return Fitted(view, order, coefficients(order, np.clip(free, -EDGE, EDGE)), value, evidence)

@@ -48,7 +48,7 @@ def least_squares(
     damping = 1e-3
     curvature = np.eye(size)
     jacobian = np.empty((size, len(values)))
-    for _ in range(_MOST_STEPS):
+    for _ in range(_MOST_STEPS if total > 0.0 else 0):
         for k in range(size):
             moved = point.copy()
             # inwards, so that a point on the edge has a derivative

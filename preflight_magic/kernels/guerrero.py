@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from math import sqrt
+
 import numpy as np
 from scipy.optimize import minimize_scalar
 
@@ -49,10 +51,11 @@ def guerrero(values: Array, period: int) -> float | None:
 
     def variation(power: float) -> float:
         ratio = spread * np.exp((power - 1.0) * logs)
-        return float(ratio.std(ddof=1) / ratio.mean())
+        left = ratio - ratio.sum() / ratio.size
+        return float(sqrt(float(left @ left) / (ratio.size - 1)) * ratio.size / ratio.sum())
 
-    grid = np.linspace(LOWEST, HIGHEST, 13)
-    best = float(grid[int(np.argmin([variation(power) for power in grid.tolist()]))])
+    grid = np.linspace(LOWEST, HIGHEST, 13).tolist()
+    best = min(grid, key=variation)
     bounds = (max(best - 0.25, LOWEST), min(best + 0.25, HIGHEST))
     found = minimize_scalar(variation, bounds=bounds, method="bounded", options={"xatol": 1e-6})
     return float(found.x) if found.fun <= variation(best) else best

@@ -22,6 +22,8 @@ from preflight_magic.kernels.restricted_likelihood import (
 )
 
 _LOG_2PI = float(np.log(2.0 * np.pi))
+_T3 = float(np.log(2.0 / (np.pi * np.sqrt(3.0))))
+"""Log density of Student's t with three degrees of freedom at zero."""
 _ORDERS = len(FIRST_ORDERS) + len(FURTHER_ORDERS)
 _HOPELESS = 12.0
 """Log evidence behind the best plan so far from which the larger ARMA orders of a plan are not tried."""
@@ -39,9 +41,11 @@ class PlanPrior:
         Fall of -2 log likelihood from which a log is taken.
     season_p : float
         p-value below which a season is there.
-    trend, shift, difference, second, wandering : float
-        Log odds against a trend, a shift (besides the number of its dates), a first difference where there is no
-        seasonal one, a second one on top of it, and a seasonal difference where there is a season.
+    trend, shift : float
+        Log odds against a trend, and against a shift besides the number of its dates.
+    difference, second, wandering, both : float
+        Log odds against a first difference, a second one on top of it, a seasonal difference alone where there is a
+        season, and a seasonal with an ordinary one.
     slope : float
         Prior standard deviation of the slope a step, in units of the spread of the first differences.
     outlier_bound : float
@@ -55,8 +59,15 @@ class PlanPrior:
     difference: float
     second: float
     wandering: float
+    both: float
     slope: float
     outlier_bound: float
+
+    def of_differences(self, d: int, D: int) -> float:
+        """Log odds against d ordinary and D seasonal differences."""
+        if D:
+            return self.both if d else self.wandering
+        return self.difference * (d > 0) + self.second * (d > 1)
 
 
 @dataclass(frozen=True)
@@ -103,10 +114,14 @@ class Subject:
 
 @dataclass(frozen=True)
 class Assessed:
-    """A candidate with the fits of its ARMA orders, from which a sibling plan can start."""
+    """A candidate with the fits of its ARMA orders, from which a sibling plan can start.
+
+    `slope_density` is the log of the prior density of its slope, averaged over what is uncertain about the slope.
+    """
 
     candidate: Candidate
     fits: tuple[Fitted, ...]
+    slope_density: float
 
     @property
     def hints(self) -> dict[Order, Array]:
@@ -135,6 +150,7 @@ def assess(
     dated: DatedShift | None = None,
     best: float = -np.inf,
     hints: Mapping[Order, Array] | None = None,
+    slope_density: float = 0.0,
 ) -> Assessed | None:
     """Evidence for one plan.
 
@@ -150,6 +166,8 @@ def assess(
         The largest evidence so far; a plan far behind it is not looked into further.
     hints : Mapping from Order to coefficients, optional
         Only these orders are tried, from these coefficients.
+    slope_density : float
+        Of the plan with one difference: two differences know no slope of their own, and take over its log density.
 
     Returns
     -------
@@ -163,12 +181,13 @@ def assess(
     view = contrasts(levels, d, D)
     if view is None:
         return None
-    offset = _offset(subject, d, D, trend)
-    fits = _fits(view, levels.period, D, best - offset, hints)
+    fits = _fits(view, levels.period, D, best, hints)
     if not fits:
         return None
     leading = max(fits, key=lambda one: one.evidence)
-    evidence = float(logsumexp([one.evidence for one in fits]) - np.log(_ORDERS)) + offset
+    prior = subject.prior
+    evidence = float(logsumexp([one.evidence for one in fits]) - np.log(_ORDERS))
+    evidence -= prior.of_differences(d, D)
     free_trend = trend and d + D < 2
     trend_t = shift_t = float("nan")
     if free_trend or dated:
@@ -177,13 +196,20 @@ def assess(
         place = 0 if d + D else 1
         if free_trend:
             trend_t = float(estimates[place] / deviations[place])
+            slope_density = _slope_density(subject, float(estimates[place]), float(deviations[place]))
+            evidence -= prior.trend
         if dated:
             shift_t = float(estimates[-1] / deviations[-1])
             # unit information (Kass and Wasserman 1995): a prior as wide as what one observation tells
             base = [*base_columns(levels, trend), subject.levels.others]
             width = float(np.sqrt(view.count) * deviations[-1])
             evidence -= _log_size(step, base) + 0.5 * _LOG_2PI + float(np.log(width))
-            evidence -= subject.prior.shift + float(np.log(n))
+            evidence -= prior.shift + float(np.log(n))
+    if trend:
+        # With it a restricted likelihood that conditions on a slope becomes a density of the same contrasts as those
+        # without.
+        base = [*base_columns(subject.levels, False), subject.levels.others]
+        evidence += slope_density - _log_size(line_column(n)[:, None], base)
     candidate = Candidate(
         d=d,
         D=D,
@@ -196,7 +222,7 @@ def assess(
         trend_t=trend_t,
         shift_t=shift_t,
     )
-    return Assessed(candidate, tuple(fits))
+    return Assessed(candidate, tuple(fits), slope_density)
 
 
 def step_t(subject: Subject, without: Assessed, dated: DatedShift) -> float:
@@ -225,20 +251,15 @@ def step_t(subject: Subject, without: Assessed, dated: DatedShift) -> float:
     return float(estimates[-1] / np.sqrt(max(float(covariance[-1, -1]), 1e-300)))
 
 
-def _offset(subject: Subject, d: int, D: int, trend: bool) -> float:
-    """Prior odds of the plan and, with a trend, the prior density of its slope over the scale of its contrast.
+def _slope_density(subject: Subject, estimate: float, deviation: float) -> float:
+    """Log of the prior density of a slope, averaged over what is uncertain about it.
 
-    With it, restricted likelihoods that condition on a slope become densities of the same contrasts as those without.
+    The prior is Student's t with three degrees of freedom about zero, so that a steep trend is not held against it;
+    averaging widens it by the standard error. All in units of the line's whole range.
     """
-    levels, prior = subject.levels, subject.prior
-    n = len(levels.values)
-    offset = -prior.difference * (d > 0 and D == 0) - prior.second * (d == 2) - prior.wandering * D
-    if trend:
-        width = prior.slope * subject.spread * n
-        base = [*base_columns(levels, False), levels.others]
-        offset -= _log_size(line_column(n)[:, None], base) + 0.5 * _LOG_2PI + float(np.log(width))
-        offset -= prior.trend * (d + D < 2)
-    return offset
+    n = len(subject.levels.values)
+    width = float(np.hypot(subject.prior.slope * subject.spread * n, deviation))
+    return _T3 - float(np.log(width)) - 2.0 * float(np.log1p((estimate / width) ** 2 / 3.0))
 
 
 def _log_size(column: Array, base: list[Array]) -> float:

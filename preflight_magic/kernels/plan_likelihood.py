@@ -152,9 +152,11 @@ def _assessed(subject: Subject, x: Array) -> tuple[list[Assessed], dict[bool, Da
     """Every plan that can be computed, and the dates of the shifts among them by whether there is a trend."""
     found: dict[tuple[int, int, bool], Assessed] = {}
     best = -np.inf
-    orders = [(1, 0), (0, 0), (2, 0), *(((1, 1), (0, 1)) if subject.levels.pattern else ())]
+    orders = [(1, 0), (0, 0), (2, 0), *(((0, 1), (1, 1)) if subject.levels.pattern else ())]
     for d, D in orders:
-        one = assess(subject, d, D, trend=True, best=best)
+        single = found.get((1, 0, True)) if D == 0 else found.get((0, 1, True), found.get((1, 0, True)))
+        density = single.slope_density if single is not None else 0.0
+        one = assess(subject, d, D, trend=True, best=best, slope_density=density)
         if one is not None:
             found[d, D, True] = one
             best = max(best, one.candidate.evidence)

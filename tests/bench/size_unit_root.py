@@ -2,7 +2,7 @@
 
 Run ``OPENBLAS_NUM_THREADS=1 python -m tests.bench.size_unit_root [replications] [theta ...]`` from the root of the
 project. The series are random walks whose differences are ``e[t] + theta e[t - 1]``, white noise for theta = 0; for
-KPSS they are the ``e`` themselves. Lags and bandwidths are searched as in the ordinary run.
+KPSS they are the ``e`` themselves. The ordinary run takes ADF with the modified AIC; bandwidths are searched as in it.
 
 What the literature says of a moving average in the differences: with theta near -1 the walk is hard to tell from white
 noise. Schwert (1989), Journal of Business and Economic Statistics 7, finds at theta = -0.8 that Phillips-Perron rejects
@@ -26,6 +26,7 @@ from preflight_magic.kernels.zivot_andrews import zivot_andrews
 
 TESTS: dict[str, Callable[[np.ndarray], object]] = {
     "ADF c, AIC": lambda y: adf(y, "c"),
+    "ADF c, modified AIC": lambda y: adf(y, "c", criterion="MAIC"),
     "ADF ct, AIC": lambda y: adf(y, "ct"),
     "ADF ct, BIC": lambda y: adf(y, "ct", criterion="BIC"),
     "ADF ct, t-stat": lambda y: adf(y, "ct", criterion="t-stat"),

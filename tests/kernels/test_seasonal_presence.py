@@ -16,9 +16,11 @@ def noise(n, ar=(), seed=0):
 
 
 def referee(values, period):
-    """The same regression in another library, with plain dummies."""
+    """The same regression in another library, with plain dummies; gaps among the lags lie on straight lines."""
     n = len(values)
-    lags = np.column_stack([np.r_[np.full(k, np.nan), values[:-k]] for k in (1, 2, 3)])
+    seen = np.isfinite(values)
+    filled = np.interp(np.arange(n), np.flatnonzero(seen), values[seen])
+    lags = np.column_stack([np.r_[np.full(k, np.nan), filled[:-k]] for k in (1, 2, 3)])
     dummies = (np.arange(n)[:, None] % period == np.arange(period)).astype(float)
     full, without = np.column_stack([dummies, np.arange(n), lags]), np.column_stack([np.ones(n), np.arange(n), lags])
     rows = np.isfinite(full).all(axis=1) & np.isfinite(values)

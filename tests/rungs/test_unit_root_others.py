@@ -9,6 +9,7 @@ from scipy.signal import lfilter
 from statsmodels.tsa import stattools
 
 from preflight_magic.kernels.plan_likelihood import compare
+from preflight_magic.kernels.unit_root import adf
 from preflight_magic.ladder import prior_of
 from preflight_magic.model import Difference, Evidence, HypothesisTest, TimeSeries
 from preflight_magic.policy import Thresholds
@@ -44,7 +45,12 @@ def test_agreement_is_told_once(p: float) -> None:
     ("name", "adf", "p", "said"),
     [
         ("DF-GLS", 0.3, 0.01, "DF-GLS rejects (p = 0.010): it has more power"),
-        ("DF-GLS", 0.01, 0.3, "DF-GLS does not reject (p = 0.300): its lags allow for a moving average near -1"),
+        (
+            "DF-GLS",
+            0.01,
+            0.3,
+            "DF-GLS does not reject (p = 0.300): it has little power where the series starts far off its line",
+        ),
         ("Phillips-Perron", 0.3, 0.01, "with a moving average near -1 it rejects too often"),
         ("Phillips-Perron", 0.01, 0.3, "Phillips-Perron does not reject (p = 0.300)"),
         ("Zivot-Andrews", 0.3, 0.01, "a break, dated 2015-04, looks like a unit root"),
@@ -77,12 +83,28 @@ def examined(values: np.ndarray, steps: tuple[Difference, ...] = (), period: int
 
 
 def test_every_test_is_shown_of_the_level_and_those_of_roots_of_the_difference() -> None:
-    walk = np.random.default_rng(1).standard_normal(90).cumsum()
+    walk = np.random.default_rng(2).standard_normal(150).cumsum()
     found = {(test.test, test.terms, str(test.options["series"])) for test in examined(walk)}
     both = {(name, terms) for name in ("ADF", "KPSS", "DF-GLS", "Phillips-Perron") for terms in ("c", "ct")}
     level = both | {("Zivot-Andrews", "ct"), ("union of rejections", "ct")}
     assert {(name, terms) for name, terms, series in found if series == "as given"} == level
     assert {(name, terms) for name, terms, series in found if series == "as given, differenced once"} == both
+
+
+def test_adf_is_shown_with_the_lags_of_the_modified_aic() -> None:
+    noise = np.random.default_rng(3).standard_normal(121)
+    walk = (noise[1:] - 0.8 * noise[:-1]).cumsum()
+    shown = [test for test in examined(walk) if test.test == "ADF" and test.options["series"] == "as given"]
+    assert [test.terms for test in shown] == ["c", "ct"]
+    for test in shown:
+        assert test.options["lag choice"] == "modified AIC"
+        modified, plain = adf(walk, test.terms, criterion="MAIC"), adf(walk, test.terms, criterion="AIC")
+        assert modified is not None
+        assert plain is not None
+        assert (test.statistic, test.lags) == (modified.statistic, modified.lags)
+        # A moving average at -0.8 needs many lags: Ng and Perron (2001), Econometrica 69.
+        assert test.lags > plain.lags
+        assert test.p_value > plain.p_value
 
 
 def test_a_break_is_dated_in_the_index() -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import builtins
 import sys
 import types
 from collections.abc import Iterator
@@ -43,6 +44,8 @@ def running_shell(folder: Path) -> Iterator[InteractiveShell]:
     InteractiveShell.clear_instance()
     with pytest.MonkeyPatch.context() as patch:
         patch.setenv("IPYTHONDIR", str(folder))
+        # where something has set the builtin, as a doctest does, IPython leaves `_` alone
+        patch.delattr(builtins, "_", raising=False)
         patch.setitem(sys.modules, "preflight_magic.batch", recorder)
         shell = InteractiveShell.instance(config=config)
         shell.user_ns["monthly"] = frame()

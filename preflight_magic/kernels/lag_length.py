@@ -106,5 +106,7 @@ def searched_lags(factor: FloatArray, fixed: int, nobs: int, criterion: Criterio
     first[0] = 1.0
     inverse_row: FloatArray = dtrtrs(block, first, trans=1)[0].ravel()
     coefficient = (inverse_row * lost).cumsum()
-    tau = coefficient**2 * block[0, 0] ** 2 / (rss / nobs)
+    with np.errstate(over="ignore"):
+        # infinite where nothing is left of the response: such a length is not chosen
+        tau = coefficient**2 * block[0, 0] ** 2 / (rss / nobs)
     return int((nobs * np.log(rss) + 2.0 * (tau + np.arange(rss.size))).argmin())

@@ -8,7 +8,7 @@ numpy and scipy wrappers cost more than the factorisation.
 
 from __future__ import annotations
 
-from functools import cache
+from functools import cache, lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -103,6 +103,13 @@ def _upper(width: int) -> FloatArray:
     return np.triu(np.ones((width, width)))
 
 
+@lru_cache(maxsize=64)
+def _line(nobs: int) -> FloatArray:
+    line: FloatArray = np.linspace(-1.0, 1.0, nobs)
+    line.setflags(write=False)
+    return line
+
+
 def polynomial(nobs: int, degree: int) -> FloatArray:
     """Powers of time, centred and scaled to [-1, 1] so that they stay well conditioned.
 
@@ -120,7 +127,7 @@ def polynomial(nobs: int, degree: int) -> FloatArray:
     if degree >= 0:
         columns[:, 0] = 1.0
     if degree >= 1:
-        columns[:, 1] = np.linspace(-1.0, 1.0, nobs)
+        columns[:, 1] = _line(nobs)
     for power in range(2, degree + 1):
         columns[:, power] = columns[:, 1] * columns[:, power - 1]
     return columns
@@ -141,6 +148,6 @@ def detrend(y: FloatArray, degree: int) -> FloatArray:
     """
     residual: FloatArray = y - y.mean()
     if degree == 1:
-        time = np.linspace(-1.0, 1.0, y.size)
+        time = _line(y.size)
         residual -= time * (time @ residual / (time @ time))
     return residual

@@ -8,7 +8,7 @@ Journal of Applied Econometrics 11, fits it locally in much the same way.
 
 from __future__ import annotations
 
-from functools import cache
+from functools import cache, lru_cache
 
 import numpy as np
 from scipy.special import ndtr, ndtri
@@ -94,6 +94,7 @@ def critical_values(table: str, case: str, n: int, lags: int = 0) -> dict[str, f
     return {name: float(quantiles[levels.searchsorted(float(name[:-1]) / 100.0 - 1e-9)]) for name in _NAMED}
 
 
+@lru_cache(maxsize=256)
 def _quantiles(table: str, case: str, n: int, lags: int) -> tuple[FloatArray, FloatArray]:
     levels, coefficients = _surfaces(table, case)
     n = max(n, SHORTEST)
@@ -101,6 +102,7 @@ def _quantiles(table: str, case: str, n: int, lags: int) -> tuple[FloatArray, Fl
     basis = surface_basis(n, lags)
     # Surfaces of neighbouring levels could cross in a very short series.
     quantiles: FloatArray = np.maximum.accumulate(coefficients @ basis)
+    quantiles.setflags(write=False)
     return levels, quantiles
 
 

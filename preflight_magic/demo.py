@@ -21,7 +21,7 @@ UNITS = {
 }
 
 
-def ferry_line(seed: int = 149, months: int = 144) -> pd.DataFrame:
+def ferry_line(seed: int = 197, months: int = 144) -> pd.DataFrame:
     """Make up the monthly books of an island ferry line.
 
     Parameters

@@ -15,7 +15,7 @@ from tests.demo_notebook import cell
 PLANS = {
     "passengers": ("transform", "log, difference 12, difference 1"),
     "freight": ("transform", "remove shift from 2019-04"),
-    "fuel_price": ("inconclusive", "as given"),
+    "fuel_price": ("transform", "difference 1"),
     "crew_overtime": ("clear", "as given"),
     "berth_power": ("transform", "remove pattern 12"),
 }
@@ -63,7 +63,7 @@ def test_the_card_has_a_picture_with_words(fresh: NotebookNode) -> None:
 
 
 def test_what_is_said_of_fuel_is_what_was_found(fresh: NotebookNode) -> None:
-    assert "too even to call" in text(fresh, "doubt")
+    assert "of the evidence is for one difference" in " ".join(text(fresh, "doubt").split())
 
 
 def test_leaving_the_log_out_lets_the_spread_grow(fresh: NotebookNode) -> None:

@@ -51,8 +51,8 @@ class Thresholds:
     trend_odds: float = 0.5
     # Against a level shift at any date: odds of 2.7 to 1, besides the number of dates it might have.
     shift_odds: float = 1.0
-    # Against a first difference: odds of 2.1 to 1.
-    difference_odds: float = 0.75
+    # Against a first difference: odds of 1.8 to 1.
+    difference_odds: float = 0.6
     # Against a second difference on top of it: odds of 1.6 to 1.
     second_difference_odds: float = 0.5
     # Against a seasonal difference where there is a season: odds of 2.7 to 1.

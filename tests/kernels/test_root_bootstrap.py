@@ -95,7 +95,7 @@ def test_refuses_what_makes_no_interval() -> None:
         root_bootstrap(found, replications=50)
 
 
-@pytest.mark.slow
+@pytest.mark.simulation
 @pytest.mark.parametrize(
     ("ar", "ma", "order", "mean", "truth"),
     [

@@ -103,7 +103,7 @@ def test_refuses_what_cannot_carry_it() -> None:
         largest_root(y, lags=-1)
 
 
-@pytest.mark.slow
+@pytest.mark.simulation
 @pytest.mark.parametrize(("rho", "terms"), [(1.0, "c"), (0.95, "c"), (0.6, "c"), (1.0, "ct"), (0.95, "ct")])
 def test_interval_covers_as_often_as_it_says(rho: float, terms: str) -> None:
     # 400 series of 80 values: a share of 0.90 has the standard error 0.015. The usual interval, estimate and 1.645

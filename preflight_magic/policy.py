@@ -7,11 +7,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-from preflight_magic.model import Stamp
-
-Span = tuple[Stamp, Stamp]
-"""First and last stamp of a stretch of time, both included."""
-
 
 @dataclass(frozen=True)
 class Thresholds:
@@ -42,11 +37,14 @@ class Thresholds:
     log_margin: float = 7.0
 
     # -- season
-    # p-value below which a season is there. Strict, since a false season costs a difference. By simulation.
+    # p-value below which a season is there: stricter than usual, since a false season costs a pattern or a difference.
+    # Chosen between 0.001 and 0.01 by simulation and by forecasts on a third of the M1 competition (Makridakis and
+    # others 1982).
     season_p: float = 0.01
 
     # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
-    # simpler plan is preferred a little; the amounts are common practice and were checked by simulation.
+    # simpler plan is preferred a little. The amounts were set on simulated series of known truth, with a look at
+    # forecasts on a third of the M1 competition (Makridakis and others 1982); no theory gives them.
     # Against a trend: odds of 1.6 to 1.
     trend_odds: float = 0.5
     # Against a level shift at any date: odds of 2.7 to 1, besides the number of dates it might have.
@@ -59,7 +57,8 @@ class Thresholds:
     wandering_odds: float = 1.0
     # Against a seasonal and an ordinary difference together, the more usual of the two: odds of 2.1 to 1.
     both_differences_odds: float = 0.75
-    # Prior standard deviation of a trend's slope, in spreads of the first differences a step.
+    # Scale of the prior of a trend's slope (Student's t), in spreads of the first differences a step. Set with the
+    # odds.
     slope_scale: float = 0.25
     # Absolute t-value from which one value stands alone and is left out of the comparison. Common practice is 3 to 4
     # for one place; the place is searched.
@@ -87,14 +86,8 @@ class Settings:
     horizon : int or None
         Steps ahead for proof and reference forecast; it never changes a plan.
     thresholds : Thresholds
-    exclude : tuple of (start, end)
-        Spans known to be special, both ends included: treated as missing.
-    repair : bool or tuple of str
-        Which repairs are allowed: all, none, or those named.
     """
 
     season: tuple[int, ...] | None = None
     horizon: int | None = None
     thresholds: Thresholds = field(default_factory=Thresholds)
-    exclude: tuple[Span, ...] = ()
-    repair: bool | tuple[str, ...] = True

@@ -47,7 +47,7 @@ class PlanPrior:
         Log odds against a first difference, a second one on top of it, a seasonal difference alone where there is a
         season, and a seasonal with an ordinary one.
     slope : float
-        Prior standard deviation of the slope a step, in units of the spread of the first differences.
+        Scale of the prior of the slope a step, in units of the spread of the first differences.
     outlier_bound : float
         Absolute t-value from which one value stands alone and is left out.
     """

@@ -20,7 +20,6 @@ LABELS: Mapping[str, str] = {
     "season_asked": "season given by the person",
     "asked": "season asked about",
     "presence_p": "p-value of a season",
-    "log_gain": "fall of \u22122 log-likelihood with the log",
     "shift_f": "largest F of a level shift",
     "shift_t": "t of the level shift",
     "trend_t": "t of the trend",
@@ -36,6 +35,19 @@ LABELS: Mapping[str, str] = {
     "variance_implied": "variance the model implies",
     "variance_sample": "variance of the sample",
     "half_life": "half-life",
+    "log_gain": "fall of \u22122 log-likelihood with the log",
+    "smallest": "smallest value",
+    "box_cox": "Box-Cox exponent",
+    "box_cox_lower": "its lower bound",
+    "box_cox_upper": "its upper bound",
+    "guerrero": "Guerrero's exponent",
+    "shift_first": "earliest date of the shift",
+    "shift_last": "latest date of the shift",
+    "shift_size": "size of the shift",
+    "corner": "where the slope changes most",
+    "corner_t": "t of the change of slope",
+    "hegy_by_cycle": "p-values of HEGY by cycle",
+    "canova_hansen_by_cycle": "p-values of Canova-Hansen by cycle",
 }
 """Labels of measures that cannot be read from their key."""
 

@@ -37,11 +37,13 @@ def wrap(text: str, width: int, first: str = "", rest: str | None = None) -> lis
 
 
 def _break(word: str, width: int) -> list[str]:
+    """Pieces of a word of at most `width` columns, cut after a hyphen where there is one."""
     pieces, piece = [], ""
     for character in word:
         if piece and words.width_of(piece + character) > width:
-            pieces.append(piece)
-            piece = ""
+            cut = piece.rfind("-") + 1 or len(piece)
+            pieces.append(piece[:cut])
+            piece = piece[cut:]
         piece += character
     return [*pieces, piece]
 

@@ -15,7 +15,7 @@ from preflight_magic.kernels.seasonal_strength import average_strength, fill_alo
 from preflight_magic.model import Difference, Evidence, HypothesisTest, Judgement, RemovePattern, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
-from preflight_magic.rungs.shares import capital, shares, told
+from preflight_magic.rungs.shares import capital, does, p_text, shares, told
 
 METHOD = (
     "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level. "
@@ -143,18 +143,9 @@ def _beside(tests: tuple[HypothesisTest, ...], wanders: bool, significance: floa
     else:
         why = "they agree with it"
     return (
-        f" Beside it HEGY {_does(fixed[0])} unit roots at the seasonal frequencies ({_p(roots)}) and Canova-Hansen "
-        f"{_does(not fixed[1])} a fixed pattern ({_p(stability)}): {why}."
+        f" Beside it HEGY {does(fixed[0])} unit roots at the seasonal frequencies ({p_text(roots)}) and Canova-Hansen "
+        f"{does(not fixed[1])} a fixed pattern ({p_text(stability)}): {why}."
     )
-
-
-def _does(rejects: bool) -> str:
-    return "rejects" if rejects else "does not reject"
-
-
-def _p(test: HypothesisTest) -> str:
-    bound = {"exact": "", "at most": "at most ", "at least": "at least "}[test.p_bound]
-    return "p < 0.001" if test.p_value < 0.001 else f"p = {bound}{test.p_value:.3f}"
 
 
 RUNG = Rung(

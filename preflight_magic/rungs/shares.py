@@ -1,10 +1,11 @@
-"""Shares of the evidence: how the comparison of plans answers one question. Used by the rungs that share it."""
+"""What several rungs say alike: shares of the evidence from the comparison of plans, and verdicts of tests."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Mapping
 
 from preflight_magic.kernels.plan_likelihood import Candidate, Comparison
+from preflight_magic.model import HypothesisTest
 
 
 def shares(comparison: Comparison, answer: Callable[[Candidate], Hashable]) -> dict[Hashable, float]:
@@ -48,3 +49,15 @@ def told(found: Mapping[Hashable, float], words: Mapping[Hashable, str]) -> str:
 def capital(text: str) -> str:
     """Text with a capital first letter, the rest as it is."""
     return text[:1].upper() + text[1:]
+
+
+def does(rejects: bool) -> str:
+    """What a test does to its null hypothesis, in words."""
+    return "rejects" if rejects else "does not reject"
+
+
+def p_text(test: HypothesisTest) -> str:
+    """Write a p-value in a sentence: ``p = 0.032``, ``p < 0.001``, ``p at least 0.100``."""
+    if test.p_value < 0.001 and test.p_bound != "at least":
+        return "p < 0.001"
+    return f"p {'=' if test.p_bound == 'exact' else test.p_bound} {test.p_value:.3f}"

@@ -23,7 +23,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
-from preflight_magic.rungs.shares import capital, shares, told
+from preflight_magic.rungs.shares import capital, does, p_text, shares, told
 from preflight_magic.stamps import stamp_text
 
 METHOD = (
@@ -141,8 +141,8 @@ def _beside(tests: tuple[HypothesisTest, ...], d: int, significance: float) -> s
         return ""
     rejects_root, rejects_stationary = adf_test.p_value < significance, kpss_test.p_value < significance
     text = (
-        f"Beside it, with constant and line, ADF {_does(rejects_root)} a unit root ({_p(adf_test)}) and KPSS "
-        f"{_does(rejects_stationary)} stationarity ({_p(kpss_test)})"
+        f"Beside it, with constant and line, ADF {does(rejects_root)} a unit root ({p_text(adf_test)}) and KPSS "
+        f"{does(rejects_stationary)} stationarity ({p_text(kpss_test)})"
     )
     if rejects_root == rejects_stationary:
         why = (
@@ -172,12 +172,12 @@ def _others(
         return ""
     differ = [test for test in others if (test.p_value < significance) != rejects]
     clauses = [
-        f"{test.test} {_does(not rejects)} ({_p(test)}): {_OTHERS[test.test][rejects].format(**_break(test))}"
+        f"{test.test} {does(not rejects)} ({p_text(test)}): {_OTHERS[test.test][rejects].format(**_break(test))}"
         for test in differ
     ]
     if without_line is not None and (without_line.p_value < significance) != rejects:
         why = "a trend that a constant cannot follow looks like a root" if rejects else "a line not needed costs power"
-        clauses.append(f"ADF with a constant alone {_does(not rejects)} ({_p(without_line)}): {why}")
+        clauses.append(f"ADF with a constant alone {does(not rejects)} ({p_text(without_line)}): {why}")
     if not clauses:
         return f"The other tests of a unit root ({', '.join(test.test for test in others)}) say the same as ADF."
     return f"Other tests of a unit root differ from ADF. {capital('; '.join(clauses))}."
@@ -185,15 +185,6 @@ def _others(
 
 def _break(test: HypothesisTest) -> dict[str, object]:
     return {"at": test.options.get("break", "a date of its own")}
-
-
-def _does(rejects: bool) -> str:
-    return "rejects" if rejects else "does not reject"
-
-
-def _p(test: HypothesisTest) -> str:
-    bound = {"exact": "", "at most": "at most ", "at least": "at least "}[test.p_bound]
-    return "p < 0.001" if test.p_value < 0.001 else f"p = {bound}{test.p_value:.3f}"
 
 
 RUNG = Rung(

@@ -53,3 +53,8 @@ def test_a_no_break_space_holds() -> None:
 
 def test_words_longer_than_a_line_are_broken() -> None:
     assert text.wrap("a bcdefghij k", 4, "- ") == ["- a", "  bc", "  de", "  fg", "  hi", "  j", "  k"]
+
+
+def test_a_long_name_is_cut_after_a_hyphen() -> None:
+    assert text.wrap("Harvey-Leybourne-Taylor trend test", 18) == ["Harvey-Leybourne-", "Taylor trend test"]
+    assert text.wrap("abcdefghij", 4) == ["abcd", "efgh", "ij"]

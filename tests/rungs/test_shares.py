@@ -6,7 +6,8 @@ from types import SimpleNamespace
 
 import pytest
 
-from preflight_magic.rungs.shares import capital, per_cent, shares, told
+from preflight_magic.model import HypothesisTest
+from preflight_magic.rungs.shares import capital, p_text, per_cent, shares, told
 from tests.sentences import assert_reads_well
 
 
@@ -62,3 +63,17 @@ def test_told(found, text):
 def test_capital_leaves_the_rest_alone():
     assert capital("an ARMA(1,1) of Box") == "An ARMA(1,1) of Box"
     assert capital("") == ""
+
+
+@pytest.mark.parametrize(
+    ("p", "bound", "said"),
+    [
+        (0.0324, "exact", "p = 0.032"),
+        (0.0004, "exact", "p < 0.001"),
+        (0.0004, "at most", "p < 0.001"),
+        (0.01, "at most", "p at most 0.010"),
+        (0.1, "at least", "p at least 0.100"),
+    ],
+)
+def test_a_p_value_in_a_sentence(p, bound, said):
+    assert p_text(HypothesisTest("KPSS", "stationary", 1.0, p, bound, 100, 3, "c")) == said

@@ -92,7 +92,7 @@ def test_only_the_level_with_a_line_is_told():
 
 def test_bounds_of_p_values_are_told():
     found = RUNG.judge(evidence({0: 1.0}, beside(0.01, 0.1, bound="at least")), BOUNDS)
-    assert "p = at least 0.100" in found.reason
+    assert "p at least 0.100" in found.reason
 
 
 def test_examination_shows_tests_that_can_be_repeated():

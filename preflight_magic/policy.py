@@ -36,6 +36,15 @@ class Thresholds:
     # remainders of a local fit have heavy tails.
     outlier_z: float = 6.0
 
+    # Observed values below which no season, shift or small change can be told: two years of months. Common practice.
+    few_observations: int = 24
+
+    # -- calendar length
+    # Fall of -2 log likelihood, Jacobian and penalties included, from which totals are taken per day. Kass and Raftery
+    # (1995) call 10 "very strong"; 4 more, odds of 7 to 1, since two units and several patterns are tried; by
+    # simulation.
+    calendar_margin: float = 14.0
+
     # -- spread
     # Fall of -2 log-likelihood (Jacobian included) from which a log is taken: it changes what the forecast minimises,
     # so it needs evidence. Just above the 1% point of chi-squared(1), 6.63; by simulation.
@@ -67,11 +76,16 @@ class Thresholds:
     # Share of the evidence below which the leading answer to a question is too even to call: odds of 7 to 3.
     # Common practice: Kass and Raftery (1995) call odds below 3 to 1 "not worth more than a bare mention".
     even_share: float = 0.7
+    # Share of the evidence for one difference less from which a root is called near one. Common practice: Kass and
+    # Raftery (1995) begin to speak of evidence at odds of 3 to 1; these are 4 to 1.
+    near_share: float = 0.2
     # Distance of the log's gain from its margin, in -2 log-likelihood, below which the log is too even to call.
     # Common practice: 2 units are odds of 2.7 to 1.
     log_even: float = 2.0
 
     # -- roots
+    # Share of the evidence below which the comparison of plans contradicts what a root seems to say. Common practice.
+    contradicted_share: float = 0.05
     # Modulus of an inverse root from which it is near one. Common practice.
     near_unit_modulus: float = 0.95
 

@@ -5,12 +5,20 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
-from preflight_magic.model import CheckError
+from preflight_magic.model import CheckError, MergeDuplicates, ReadDates, RegularCalendar, Sort
 from preflight_magic.plan.emit import emit
 from preflight_magic.plan.prove import prove
 
 if TYPE_CHECKING:
     from preflight_magic.series_report import SeriesReport
+
+
+_WHY: dict[type, str] = {
+    ReadDates: "The stamps were text or objects.",
+    Sort: "The rows were out of order.",
+    MergeDuplicates: "Some stamps had more than one row, with the same value.",
+    RegularCalendar: "Some stamps had no row; they get one without a value.",
+}
 
 
 def proved_code(reports: Sequence[SeriesReport]) -> str:
@@ -43,7 +51,7 @@ def proved_code(reports: Sequence[SeriesReport]) -> str:
 
 def _reasons(report: SeriesReport) -> dict[Any, str]:
     """Why each step of the plan is there, in the words of the finding that proposes it."""
-    said: dict[Any, str] = {}
+    said: dict[Any, str] = {one: _WHY[type(one)] for one in report.plan.repairs if type(one) in _WHY}
     for finding in report.findings.values():
         for step in finding.steps:
             said.setdefault(step, finding.reason.split(". ")[0].rstrip(".") + ".")

@@ -12,6 +12,7 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
+from preflight_magic.intake.mend import REPAIRS, Mended
 from preflight_magic.model import Calendar, CalendarKind, FillGaps, TimeSeries
 from preflight_magic.stamps import counted, stamp_text
 
@@ -29,10 +30,15 @@ Floats = npt.NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Options:
-    """What was asked of every series: `season` (None infers), and whether gaps may be filled."""
+    """What was asked of every series: `season` (None infers), and the names of the repairs allowed."""
 
     season: tuple[int, ...] | None = None
-    fill_gaps: bool = True
+    repairs: frozenset[str] = frozenset(REPAIRS)
+
+    @property
+    def fill_gaps(self) -> bool:
+        """Whether missing values may be filled."""
+        return "fill gaps" in self.repairs
 
 
 @dataclass(frozen=True)
@@ -119,21 +125,19 @@ def _short(value: Any) -> str:
     return text if len(text) <= 40 else text[:37] + "..."
 
 
-def to_series(
-    source: Column, calendar: Calendar, index: pd.Index, excluded: npt.NDArray[np.bool_] | None, options: Options
-) -> TimeSeries:
+def to_series(source: Column, mended: Mended, excluded: npt.NDArray[np.bool_] | None, options: Options) -> TimeSeries:
     """Trim a column to its observed span and say what season it has, or why it cannot be checked.
 
     Parameters
     ----------
     source : Column
-    calendar : Calendar
-    index : pandas.Index, shape (n,)
-        Regular.
+    mended : Mended
+        The regular index, shape (n,), and what made it regular.
     excluded : numpy.ndarray of bool or None, shape (n,)
         True where the values are to be treated as missing.
     options : Options
     """
+    calendar, index = mended.calendar, mended.index
     if source.numbers is None:
         return refused(source.name, source.label, source.problem or "no numbers", calendar)
     numbers = source.numbers if excluded is None else np.where(excluded, np.nan, source.numbers)
@@ -157,8 +161,8 @@ def to_series(
     if problem is not None:
         return refused(source.name, source.label, problem, calendar, values)
     season, notes = (options.season, ()) if options.season else _natural_season(calendar, observed)
-    repairs = (FillGaps(season[0]),) if observed < len(numbers) else ()
-    return TimeSeries(source.name, values, calendar, season, repairs, None, notes)
+    filled = (FillGaps(season[0]),) if observed < len(numbers) else ()
+    return TimeSeries(source.name, values, calendar, season, (*mended.repairs, *filled), None, notes)
 
 
 def refused(

@@ -10,12 +10,11 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.intake.columns import Options
+from preflight_magic.intake.dates import short
+from preflight_magic.intake.mend import REPAIRS
 from preflight_magic.intake.spans import Span, spans_of
 from preflight_magic.intake.tables import long_table, wide_table
 from preflight_magic.model import CheckError, TimeSeries
-
-REPAIRS = ("fill gaps",)
-"""Names of the repairs that `repair` may allow."""
 
 
 def read(
@@ -44,7 +43,8 @@ def read(
     exclude : iterable of (start, end), optional
         Spans, both ends included, to treat as missing.
     repair : bool, str or iterable of str
-        Repairs allowed: all, none, or those named in `REPAIRS`.
+        Repairs allowed: all, none, or those named: ``read dates``, ``sort``, ``merge duplicates``,
+        ``regular calendar``, ``fill gaps``.
 
     Returns
     -------
@@ -58,7 +58,7 @@ def read(
     """
     table = _table(frame)
     spans = spans_of(exclude)
-    options = Options(_season(season), _may_fill(repair))
+    options = Options(_season(season), _allowed(repair))
     if spans and not options.fill_gaps:
         raise CheckError(
             "exclude leaves gaps, and repair does not allow filling them; drop exclude, or use repair=True."
@@ -113,17 +113,18 @@ def _season(season: Any) -> tuple[int, ...] | None:
     return tuple(one for one in whole if one > 1) or (1,)
 
 
-def _may_fill(repair: Any) -> bool:
+def _allowed(repair: Any) -> frozenset[str]:
+    """Names of the repairs that may be made."""
     if isinstance(repair, bool | np.bool_):
-        return bool(repair)
+        return frozenset(REPAIRS if repair else ())
     try:
         names = [repair] if isinstance(repair, str) else list(repair)
     except TypeError:
         names = [repair]
-    unknown = [name for name in names if name not in REPAIRS]
+    unknown = [name for name in names if not isinstance(name, str) or name not in REPAIRS]
     if unknown:
         raise CheckError(
-            f"repair names {unknown[0]!r}, which is none of the repairs {', '.join(map(repr, REPAIRS))}; name one of "
-            "those, or give True or False."
+            f"repair names {short(unknown[0])}, which is none of the repairs {', '.join(map(repr, REPAIRS))}; name one "
+            "of those, or give True or False."
         )
-    return "fill gaps" in names
+    return frozenset(names)

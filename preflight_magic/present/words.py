@@ -17,13 +17,17 @@ from preflight_magic.model import (
     HypothesisTest,
     Log,
     Logit,
+    MergeDuplicates,
     PerDay,
     Power,
+    ReadDates,
+    RegularCalendar,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
     Repair,
     Root,
+    Sort,
     Step,
     Verdict,
 )
@@ -162,6 +166,14 @@ def verdict_text(verdict: Verdict) -> str:
 def meaning(step: Step | Repair, noun: str = "step") -> str:
     """What a step or repair does, in a few words."""
     match step:
+        case ReadDates():
+            return "stamps read as dates"
+        case Sort():
+            return "rows put in the order of their stamps"
+        case MergeDuplicates():
+            return "rows with the same stamp and the same value made one"
+        case RegularCalendar():
+            return f"a row for every {noun}, without a value where there was none"
         case FillGaps(period=period):
             pattern = "" if period == 1 else f", after taking out the mean pattern of {count_of(period, noun)}"
             return f"missing values on a straight line{pattern}"

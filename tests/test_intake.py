@@ -188,9 +188,13 @@ def test_sparse_numbers():
     [
         (
             ["calm"] * 60,
-            "column 'freight': text, for example 'calm'; convert it with `pd.to_numeric` or drop the column.",
+            "column 'freight': text, for example 'calm'; drop the column, or pass it as `series` if it names the "
+            "series.",
         ),
-        (["1", "2", "3"] * 20, "column 'freight': text, for example '1'; convert it with `pd.to_numeric`"),
+        (
+            ["1", "2", "3"] * 20,
+            "text, for example '1'; convert it with `frame['freight'] = pd.to_numeric(",
+        ),
         (pd.Categorical(["a", "b"] * 30), "column 'freight': categories, for example 'a'"),
         (pd.date_range("2020-01-01", periods=60), "column 'freight': dates, not numbers"),
         (pd.period_range("2020-01-01", periods=60, freq="D"), "column 'freight': periods, not numbers"),
@@ -397,3 +401,98 @@ def test_options_that_name_nothing():
 
 def test_the_fewest_values_are_those_of_the_thresholds():
     assert Thresholds().minimum_observations == FEWEST_VALUES
+
+
+@pytest.mark.parametrize(
+    ("write", "code"),
+    [
+        (str, "pd.to_numeric(frame['freight'])"),
+        (lambda value: f"{value * 1000:,.1f}", ".str.replace(r'[^0-9.+-]', '', regex=True)"),
+        (lambda value: f"{value * 1000:,}".replace(",", "\u202f"), ".str.replace(r'[^0-9.+-]', '', regex=True)"),
+        (lambda value: f"{value},5", ".str.replace(',', '.')"),
+        (lambda value: f"{value} %", ".str.rstrip('% ')"),
+        (lambda value: "n/a" if value == 3 else str(value), "errors='coerce'"),
+    ],
+)
+@pytest.mark.parametrize("dtype", ["object", "string"])
+def test_numbers_written_as_text_come_with_the_code_that_reads_them(write, code, dtype):
+    numbers = np.arange(60) % 7 + 1
+    frame = pd.DataFrame({"freight": pd.array([write(int(value)) for value in numbers], dtype=dtype)}, index=MONTHS)
+    with pytest.raises(CheckError) as caught:
+        read(frame)
+    statement = str(caught.value).split("`")[1]
+    assert code in statement
+    space = {"frame": frame.copy(), "pd": pd}
+    exec(statement, space)
+    (series,) = read(space["frame"])
+    assert series.values.corr(pd.Series(numbers, index=MONTHS).where(series.values.notna())) > 0.99
+
+
+def test_a_long_row_of_digits_is_no_trap():
+    column = pd.Series(["1" * 200_000 + "x"] * 60, index=MONTHS)
+    assert "text, for example" in problem(column)
+
+
+def test_categories_of_numbers_become_numbers():
+    frame = pd.DataFrame({"freight": pd.Categorical(np.arange(60) % 7)}, index=MONTHS)
+    with pytest.raises(CheckError, match="categories, for example 0; read them as numbers") as caught:
+        read(frame)
+    space = {"frame": frame.copy()}
+    exec(str(caught.value).split("`")[1], space)
+    assert read(space["frame"])[0].problem is None
+
+
+@pytest.mark.parametrize(
+    ("values", "told"),
+    [
+        ([10**400, *range(59)], "1 infinite value, the first at 2012-01"),
+        ([-(10**400), *range(59)], "1 infinite value, the first at 2012-01"),
+        ([decimal.Decimal("sNaN"), *map(decimal.Decimal, range(59))], None),
+        ([decimal.Decimal("NaN"), *map(decimal.Decimal, range(59))], None),
+        ([pd.NaT, pd.NA, None, *range(57)], None),
+        ([-0.0] * 60, "one value only, 0 from"),
+        ([pd.DataFrame()] * 60, "values of type DataFrame, for example Empty DataFrame"),
+        ([b"1"] * 60, "values of type bytes"),
+    ],
+)
+def test_objects_at_the_edge_of_what_is_a_number(values, told):
+    found = problem(pd.array(values, dtype=object))
+    assert found is None if told is None else told in found
+    assert "\n" not in (found or "")
+
+
+def test_bools_of_arrow_are_numbers():
+    pytest.importorskip("pyarrow")
+    column = pd.Series(np.arange(60) % 3 == 0, index=MONTHS).astype("bool[pyarrow]")
+    column.iloc[4] = None
+    assert one(column).values.sum() == 20.0
+
+
+class Foreign:
+    """Stands for a table of another library."""
+
+    def __init__(self, made):
+        self.made = made
+
+    def to_pandas(self):
+        if isinstance(self.made, Exception):
+            raise self.made
+        return self.made
+
+
+def test_tables_that_do_not_become_frames():
+    assert [series.name for series in read(Foreign(ferry()))] == ["passengers", "freight", "fuel_price"]
+    with pytest.raises(CheckError, match="to_pandas of the Foreign failed with OSError, 'no memory left'; convert it"):
+        read(Foreign(OSError("no\nmemory left")))
+    with pytest.raises(CheckError, match="found 'NoneType' where"):
+        read(Foreign(None))
+    polars = pytest.importorskip("polars")
+    with pytest.raises(CheckError, match=r"found 'LazyFrame', which is not computed yet; pass `frame.collect\(\)`"):
+        read(polars.DataFrame({"freight": range(60)}).lazy(), season=12)
+
+
+@pytest.mark.parametrize(
+    "season", [np.array([12, 4]), {4, 12}, [12, 4], (n for n in (4, 12)), np.array(12), range(4, 13, 8)]
+)
+def test_seasons_in_any_container(season):
+    assert read(ferry(), season=season)[0].season in ((4, 12), (12,))

@@ -12,7 +12,9 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
+from preflight_magic.intake.dates import short
 from preflight_magic.intake.mend import REPAIRS, Mended
+from preflight_magic.intake.written import reading
 from preflight_magic.model import Calendar, CalendarKind, FillGaps, TimeSeries
 from preflight_magic.stamps import counted, stamp_text
 
@@ -62,7 +64,7 @@ class Column:
     problem: str | None = None
 
 
-def column(name: Hashable, label: str, values: pd.Series) -> Column:
+def column(name: Hashable, label: str, values: pd.Series, code: str) -> Column:
     """Read the numbers of a column of any dtype; text, dates and the like become a problem.
 
     Parameters
@@ -70,12 +72,14 @@ def column(name: Hashable, label: str, values: pd.Series) -> Column:
     name : Hashable
     label : str
     values : pandas.Series, shape (n,)
+    code : str
+        Expression for the column in the person's own table: ``frame['freight']``.
     """
-    numbers, problem = _numbers(values)
+    numbers, problem = _numbers(values, code)
     return Column(name, label, numbers, problem)
 
 
-def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
+def _numbers(values: pd.Series, code: str) -> tuple[Floats | None, str | None]:
     dtype = values.dtype
     if pd.api.types.is_complex_dtype(dtype):
         return None, "complex numbers; take the real part or the modulus, for example with `.abs()`, or drop the column"
@@ -85,8 +89,10 @@ def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
         if isinstance(dtype, pd.SparseDtype):
             return np.asarray(values.to_numpy(), dtype=np.float64).copy(), None
         return np.array(values.to_numpy(dtype=np.float64, na_value=np.nan)), None
+    if pd.api.types.is_bool_dtype(dtype) and not isinstance(dtype, pd.CategoricalDtype):
+        return np.array(values.to_numpy(dtype=np.float64, na_value=np.nan)), None
     if pd.api.types.is_object_dtype(dtype):
-        return _objects(values)
+        return _objects(values, code)
     for test, what in (
         (pd.api.types.is_datetime64_any_dtype, "dates"),
         (pd.api.types.is_timedelta64_dtype, "lengths of time"),
@@ -96,33 +102,52 @@ def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
     if isinstance(dtype, pd.PeriodDtype):
         return None, "periods, not numbers; drop the column, or pass it as `time` if it dates the rows"
     if isinstance(dtype, pd.CategoricalDtype):
+        if pd.api.types.is_numeric_dtype(values.cat.categories.dtype):
+            return None, f"categories{_example(values)}; read them as numbers with `{code} = {code}.astype(float)`"
         return None, f"categories{_example(values)}; drop the column, or pass it as `series` if it names the series"
-    return None, f"text{_example(values)}; convert it with `pd.to_numeric` or drop the column"
+    if pd.api.types.is_string_dtype(dtype):
+        return None, f"text{_example(values)}; {reading(values.dropna(), code)}"
+    return None, f"values of type {dtype}{_example(values)}; drop the column"
 
 
-def _objects(values: pd.Series) -> tuple[Floats | None, str | None]:
-    present = values[values.notna()]
-    kinds = {type(one) for one in present}
-    if any(issubclass(kind, complex | np.complexfloating) for kind in kinds):
+def _objects(values: pd.Series, code: str) -> tuple[Floats | None, str | None]:
+    raw = values.to_numpy(dtype=object)
+    # A signalling NaN of decimal cannot even be compared.
+    seen = np.array([not (_no_number(one) or one is None or one is pd.NA or one is pd.NaT) for one in raw], dtype=bool)
+    present = raw[seen]
+    if any(isinstance(one, complex | np.complexfloating) for one in present):
         return None, "complex numbers; take the real part or the modulus, or drop the column"
-    # bool and numpy's bool are numbers here, as in a column of their own dtype.
-    if all(issubclass(kind, int | float | np.number | np.bool_ | Decimal | Fraction) for kind in kinds):
-        numbers = np.full(len(values), np.nan)
-        numbers[values.notna().to_numpy()] = [float(one) for one in present]
+    odd = next((one for one in present if not isinstance(one, _NUMBERS)), None)
+    if odd is None:
+        numbers = np.full(len(raw), np.nan)
+        numbers[seen] = [_float(one) for one in present]
         return numbers, None
-    odd = next(one for one in present if not isinstance(one, int | float | np.number | np.bool_ | Decimal | Fraction))
-    what = "text" if isinstance(odd, str) else f"values of type {type(odd).__name__}"
-    return None, f"{what}, for example {_short(odd)}; convert it with `pd.to_numeric` or drop the column"
+    if isinstance(odd, str):
+        told = reading(pd.Series([str(one) for one in present]), code)
+        return None, f"text, for example {short(odd)}; {told}"
+    return None, f"values of type {type(odd).__name__}, for example {short(odd)}; drop the column"
+
+
+# bool and numpy's bool are numbers here, as in a column of their own dtype.
+_NUMBERS = (int, float, np.number, np.bool_, Decimal, Fraction)
+
+
+def _no_number(value: object) -> bool:
+    if isinstance(value, Decimal):
+        return value.is_nan()
+    return isinstance(value, float | np.floating) and bool(np.isnan(value))
+
+
+def _float(value: Any) -> float:
+    try:
+        return float(value)
+    except OverflowError:
+        return np.inf if value > 0 else -np.inf
 
 
 def _example(values: pd.Series) -> str:
     present = values.dropna()
-    return f", for example {_short(present.iloc[0])}" if len(present) else ""
-
-
-def _short(value: Any) -> str:
-    text = repr(value)
-    return text if len(text) <= 40 else text[:37] + "..."
+    return f", for example {short(present.iloc[0])}" if len(present) else ""
 
 
 def to_series(source: Column, mended: Mended, excluded: npt.NDArray[np.bool_] | None, options: Options) -> TimeSeries:
@@ -217,7 +242,8 @@ def _too_little(values: pd.Series, observed: int, kind: CalendarKind) -> str | N
             f"only {counted(observed, 'value')}, {span}, where at least {FEWEST_VALUES} are needed; give a longer "
             "series or drop the column"
         )
-    return f"one value only, {numbers[0]:g} from {first} to {last}, so there is nothing to decide; drop the column"
+    value = numbers[0] + 0.0  # no negative zero
+    return f"one value only, {value:g} from {first} to {last}, so there is nothing to decide; drop the column"
 
 
 def _bad_season(values: pd.Series, season: tuple[int, ...] | None) -> str | None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import operator
-from collections.abc import Hashable, Iterable, Sequence
+from collections.abc import Hashable, Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -58,7 +58,7 @@ def read(
     """
     table = _table(frame)
     spans = spans_of(exclude)
-    options = Options(_season(season), _allowed(repair))
+    options = Options(season_of(season), _allowed(repair))
     if spans and not options.fill_gaps:
         raise CheckError(
             "exclude leaves gaps, and repair does not allow filling them; drop exclude, or use repair=True."
@@ -84,8 +84,17 @@ def _nothing_usable(problems: list[str]) -> str:
 
 # ------------------------------------------------------------------------------------------------------- options
 def _table(frame: Any) -> pd.DataFrame | pd.Series:
-    if not isinstance(frame, pd.DataFrame | pd.Series) and hasattr(frame, "to_pandas"):
-        frame = frame.to_pandas()
+    if not isinstance(frame, pd.DataFrame | pd.Series) and callable(getattr(frame, "to_pandas", None)):
+        kind = type(frame).__name__
+        try:
+            frame = frame.to_pandas()
+        except Exception as error:
+            raise CheckError(
+                f"to_pandas of the {kind} failed with {type(error).__name__}, {short(str(error))}; convert it to a "
+                "DataFrame first."
+            ) from error
+    if callable(getattr(frame, "collect", None)) and not hasattr(frame, "iloc"):
+        raise CheckError(f"found {type(frame).__name__!r}, which is not computed yet; pass `frame.collect()`.")
     if not isinstance(frame, pd.DataFrame | pd.Series):
         raise CheckError(
             f"found {type(frame).__name__!r} where a DataFrame or Series is needed; wrap it, for example with "
@@ -97,10 +106,15 @@ def _table(frame: Any) -> pd.DataFrame | pd.Series:
     return frame
 
 
-def _season(season: Any) -> tuple[int, ...] | None:
+def season_of(season: Any) -> tuple[int, ...] | None:
+    """Seasonal periods as asked for, shortest first; ``(1,)`` for none, None where they are to be inferred."""
     if season is None:
         return None
-    given = season if isinstance(season, tuple | list) else [season]
+    single = isinstance(season, str | bytes | Mapping) or not isinstance(season, Iterable)
+    try:
+        given = [season] if single else list(season)
+    except TypeError:  # an array without dimension
+        given = [season]
     try:
         whole = sorted({operator.index(one) for one in given if not isinstance(one, bool | np.bool_)})
     except TypeError:

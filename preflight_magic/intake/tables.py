@@ -69,7 +69,7 @@ def wide_table(
     mended = mend(table.index, remedies, options.repairs)
     mask, held = excluded(mended.index, spans)
     refuse_empty_spans(spans, [held])
-    columns = (_laid(one, mended, remedies) for one in _columns(table, labels, names))
+    columns = (_laid(one, mended, remedies) for one in _columns(table, labels, names, base))
     return tuple(to_series(one, mended, mask, options) for one in columns)
 
 
@@ -81,7 +81,7 @@ def _laid(source: Column, mended: Mended, remedies: Remedies) -> Column:
     return replace(source, numbers=None if problem else numbers, problem=problem)
 
 
-def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable]) -> list[Column]:
+def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable], base: str) -> list[Column]:
     """Raw material of the named columns, a repeated name once."""
     positions: dict[Hashable, list[int]] = {}
     for i, name in enumerate(labels):
@@ -99,7 +99,8 @@ def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable])
         elif at[0] in place:
             found.append(Column(name, label, matrix[:, place[at[0]]]))
         else:
-            found.append(column(name, label, table.iloc[:, at[0]]))
+            code = base if base == "series" else f"frame[{name!r}]"
+            found.append(column(name, label, table.iloc[:, at[0]], code))
     return found
 
 
@@ -259,7 +260,7 @@ def _value_column(table: pd.DataFrame, taken: list[Hashable], value: Hashable | 
     else:
         at = _position(table, value, "value")
     name = table.columns[at]
-    return column(name, f"column {name!r}", table.iloc[:, at])
+    return column(name, f"column {name!r}", table.iloc[:, at], f"frame[{name!r}]")
 
 
 def _long_remedies(time: Hashable | None, series: Hashable, value: Hashable) -> Remedies:

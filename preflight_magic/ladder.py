@@ -108,6 +108,12 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
     CheckError
         When `plan` cannot be applied to the series.
     """
+    # A person's own `np.seterr` must not stop the numbers, nor may what overflows on the way warn.
+    with np.errstate(all="ignore"):
+        return _climbed(series, settings, plan, earlier)
+
+
+def _climbed(series: TimeSeries, settings: Settings, plan: Plan | None, earlier: Climb | None) -> Climb:
     findings: dict[str, Finding] = {}
     context = Context(settings=settings, comparison=earlier.comparison if earlier else None)
     recommended = Plan(series.repairs)

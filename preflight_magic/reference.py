@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import operator
 from statistics import NormalDist
 from typing import TYPE_CHECKING, cast
 
@@ -12,6 +13,7 @@ from preflight_magic.kernels.arma_forecast import forecast
 from preflight_magic.kernels.whiten import psi_weights
 from preflight_magic.model import CheckError, Difference, Log, Logit, PerDay, Power
 from preflight_magic.plan.plan import Plan
+from preflight_magic.stamps import stamp_text
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -44,12 +46,38 @@ def reference_forecast(report: SeriesReport, horizon: int, coverage: float) -> p
     """
     if report.problem is not None:
         raise CheckError(report.problem)
-    if horizon < 1:
+    steps, share = _whole(horizon), _share(coverage)
+    if steps < 1:
         raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, at least 1.")
-    if not 0.0 < coverage < 1.0:
+    if not 1e-9 < share < 1.0 - 1e-9:
         raise CheckError(f"coverage is {coverage!r}; give a probability between 0 and 1, such as 0.9.")
+    with np.errstate(all="ignore"):
+        return _forecast(report, steps, share)
+
+
+def _whole(value: object) -> int:
+    try:
+        return operator.index(value)  # type: ignore[arg-type]
+    except TypeError:
+        return 0
+
+
+def _share(value: object) -> float:
+    try:
+        return float(value)  # type: ignore[arg-type]
+    except (TypeError, ValueError):
+        return 0.0
+
+
+def _forecast(report: SeriesReport, horizon: int, coverage: float) -> pd.DataFrame:
     history = report.series
-    index = following(history.index, horizon)
+    try:
+        index = following(history.index, horizon)
+    except (OverflowError, ValueError, MemoryError) as error:
+        raise CheckError(
+            f"horizon is {horizon}, and there are not so many stamps after {stamp_text(history.index[-1])}; give fewer "
+            "steps."
+        ) from error
     path, variance = _path(report, horizon)
     plan = report.plan
     points = Plan(plan.repairs, tuple(step for step in plan.steps if isinstance(step, PerDay | Log | Power | Logit)))

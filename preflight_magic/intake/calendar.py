@@ -42,6 +42,7 @@ def recognise(index: pd.Index, remedies: Remedies | None = None) -> tuple[Calend
         Where stamps are missing, unsorted, repeated or irregular: names the first one.
     """
     remedies = remedies or Remedies()
+    refuse_business_periods(index, remedies)
     index = plain(index)
     if isinstance(index, pd.DatetimeIndex | pd.PeriodIndex):
         _refuse_disorder(index, remedies)
@@ -103,13 +104,17 @@ def _counter(index: pd.Index, remedies: Remedies) -> tuple[Calendar, pd.Index]:
     raise LacksStampsError(message, calendar, pd.RangeIndex(first, last + 1, name=index.name), "numbers")
 
 
-def _periods(index: pd.PeriodIndex, remedies: Remedies) -> tuple[Calendar, pd.Index]:
-    calendar = calendar_of(index.freqstr)
-    if index.freqstr == "B":
+def refuse_business_periods(index: pd.Index, remedies: Remedies) -> None:
+    """Refuse periods of business days, before anything is done with them: pandas warns of each use."""
+    if isinstance(index.dtype, pd.PeriodDtype) and isinstance(index.dtype.freq, pd.offsets.BusinessDay):
         raise CheckError(
             "the index holds business-day periods, which pandas gives up; use dates with "
             f"{remedies.mend('.to_timestamp()')}."
         )
+
+
+def _periods(index: pd.PeriodIndex, remedies: Remedies) -> tuple[Calendar, pd.Index]:
+    calendar = calendar_of(index.freqstr)
     if calendar is None:
         raise unknown_step(f"periods of {index.freqstr!r}", remedies)
     ordinals = index.asi8

@@ -20,8 +20,8 @@ from preflight_magic.stamps import counted, stamp_text
 
 FEWEST_VALUES = 8
 """Fewest observed values from which anything is decided: common practice."""
-LARGEST = 1e100
-"""Size beyond which sums of squares leave the range of a double; its inverse is the smallest span."""
+LARGEST = 1e75
+"""Size beyond which fourth powers leave the range of a double; its inverse is the smallest span."""
 CYCLES = 2.5
 """Cycles that a season taken from the calendar needs: two to compare, and some more to tell chance from pattern."""
 CYCLES_LONGER = 4.0
@@ -208,13 +208,13 @@ def _infinite(numbers: Floats, index: pd.Index, kind: CalendarKind) -> str | Non
 
 
 def _out_of_scale(values: pd.Series) -> str | None:
-    """Numbers whose squares a computer cannot hold."""
+    """Numbers whose powers a computer cannot hold."""
     low, high = float(values.min()), float(values.max())
     largest = max(abs(low), abs(high))
     if largest > LARGEST:
-        return f"values up to {largest:.3g} in size, too large to be squared; divide the column by a power of ten"
+        return f"values up to {largest:.3g} in size, too large to compute with; divide the column by a power of ten"
     if 0.0 < high - low < 1.0 / LARGEST:
-        return f"values that span {high - low:.3g}, too little to be squared; multiply the column by a power of ten"
+        return f"values that span {high - low:.3g}, too little to compute with; multiply the column by a power of ten"
     return None
 
 

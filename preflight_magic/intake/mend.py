@@ -8,7 +8,7 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from preflight_magic.intake.calendar import recognise
+from preflight_magic.intake.calendar import recognise, refuse_business_periods
 from preflight_magic.intake.dates import plain, readable
 from preflight_magic.intake.remedies import LacksStampsError, Remedies
 from preflight_magic.model import Calendar, IndexRepair, MergeDuplicates, ReadDates, RegularCalendar, Sort
@@ -83,6 +83,7 @@ def mend(index: pd.Index, remedies: Remedies, allowed: frozenset[str]) -> Mended
         Where no allowed repair makes the index regular: names the first odd stamp and the code that would mend it.
     """
     repairs: list[IndexRepair] = []
+    refuse_business_periods(index, remedies)
     index = plain(index)
     dates = readable(index) if "read dates" in allowed else None
     if dates is not None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from itertools import accumulate
 from typing import TYPE_CHECKING
 
+import numpy as np
 import pandas as pd
 
 from preflight_magic.plan.fixed_part import fixed_part, lags_of, regressors
@@ -19,6 +20,12 @@ if TYPE_CHECKING:
 
 def apply(plan: Plan, series: pd.Series, history: pd.Series | None = None) -> pd.Series:
     """Repair and transform a series; see `Plan.apply`."""
+    # A person's own `np.seterr` must not stop it.
+    with np.errstate(all="ignore"):
+        return _applied(plan, series, history)
+
+
+def _applied(plan: Plan, series: pd.Series, history: pd.Series | None) -> pd.Series:
     y = regular(plan.repairs, as_float(series))
     if history is None or history is series:
         past, timeline, x = y, join(y, y), y

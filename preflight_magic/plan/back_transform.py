@@ -24,6 +24,11 @@ Array = npt.NDArray[np.float64]
 
 def back_transform(plan: Plan, forecast: pd.Series, history: pd.Series, variance: object = None) -> pd.Series:
     """Undo the plan on a forecast; see `Plan.back_transform`."""
+    with np.errstate(all="ignore"):
+        return _undone(plan, forecast, history, variance)
+
+
+def _undone(plan: Plan, forecast: pd.Series, history: pd.Series, variance: object) -> pd.Series:
     future, past = as_float(forecast), regular(plan.repairs, as_float(history))
     spread = _variance(variance, future)
     if future.empty:

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import CheckError, FillGaps, MergeDuplicates, ReadDates, RegularCalendar, Sort
+from preflight_magic.model import CheckError, FillGaps, Logit, MergeDuplicates, Power, ReadDates, RegularCalendar, Sort
 from preflight_magic.plan.literals import literal, plain
 from preflight_magic.plan.plan import Plan
 from preflight_magic.plan.points import point_steps
@@ -100,7 +100,7 @@ def _held_out(
         forecast = plan.apply(y, past).iloc[-h:]
     except CheckError:
         return
-    size = _largest(y)
+    size = max(_largest(y), _constant(plan))
     spread = float(np.nanvar(forecast)) if forecast.notna().any() else 0.0
     variance = pd.Series(np.linspace(0.1, 1.0, h) * (spread or 0.01), index=forecast.index)
     for given in (None, variance, float(variance.iloc[-1])):
@@ -152,6 +152,20 @@ def _largest(values: pd.Series) -> float:
     numbers = np.abs(values.to_numpy(dtype="float64", na_value=np.nan))
     numbers = numbers[np.isfinite(numbers)]
     return float(numbers.max()) if len(numbers) else 0.0
+
+
+def _constant(plan: Plan) -> float:
+    """Largest number that undoing a point step adds to a value: the value is rounded as that number is."""
+    sizes = [0.0]
+    for step in point_steps(plan.steps):
+        match step:
+            case Logit(lower=lower, upper=upper):
+                sizes += [abs(lower), abs(upper)]
+            case Power(offset=offset):
+                sizes.append(abs(offset))
+            case _:
+                pass
+    return max(sizes)
 
 
 def _fault(series: pd.Series, what: str) -> EmitError:

@@ -37,7 +37,7 @@ def readable(index: pd.Index) -> pd.Index | None:
     pandas.DatetimeIndex or None
         Missing stamps stay missing.
     """
-    if not _wordy(index):
+    if isinstance(index, pd.MultiIndex) or not _wordy(index):
         return None
     present = index[index.notna()]
     text = all(isinstance(one, str) and _ISO.fullmatch(one) for one in present)

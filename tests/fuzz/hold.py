@@ -151,7 +151,7 @@ def _decisions(one: Any, rungs: tuple[str, ...] = DECIDING) -> list[tuple[str, A
 
 
 def _moved(one: Any, values: pd.Series) -> Any:
-    return pf.check(values, season=one.season, cache=False, progress=False)[one.name]
+    return next(iter(pf.check(values, season=one.season, cache=False, progress=False)))
 
 
 def unit_changes_nothing(report: Any) -> None:
@@ -220,9 +220,7 @@ def whole_holds(report: Any, said: set[str]) -> None:
     assert len(report.overview) == len(report)
     assert isinstance(repr(report), str)
     attempt(report.code, said)
-    shown = [page(report), *bundle(report).values()]
-    for one in report:
-        shown += bundle(one).values()
+    shown = [page(report), *(bundle(one)["text/html"] for one in (report, *report))]
     for text in shown:
         assert "alert(1)<" not in text
     tags = _Tags()

@@ -8,7 +8,6 @@ from collections import OrderedDict
 from collections.abc import Hashable, Iterable, Iterator, Sequence
 from concurrent.futures import Executor
 from dataclasses import replace
-from itertools import repeat
 from typing import Any
 
 import numpy as np
@@ -17,7 +16,8 @@ from preflight_magic.intake import read
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
-from preflight_magic.progress import Progress, follow
+from preflight_magic.pooling import Lost, in_pool
+from preflight_magic.progress import Progress, Tally, follow
 from preflight_magic.report import Report
 from preflight_magic.series_report import SeriesReport
 
@@ -25,6 +25,24 @@ CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
 
 _cache: OrderedDict[bytes, Climb] = OrderedDict()
+
+
+class Interrupted(KeyboardInterrupt):
+    """An interrupt in the middle of a check; `report` holds the series that were done.
+
+    Attributes
+    ----------
+    report : Report
+    total : int
+        Series of the whole check.
+    """
+
+    def __init__(self, report: Report, total: int) -> None:
+        super().__init__(
+            f"stopped after {len(report)} of {total} series; the same check again goes on from there, as long as the "
+            "cache holds what is done"
+        )
+        self.report, self.total = report, total
 
 
 def check(
@@ -78,10 +96,18 @@ def check(
     ------
     CheckError
         When nothing can be checked; a series that cannot be checked among others is reported as ``infeasible``.
+    Interrupted
+        After an interrupt from the keyboard; its `report` holds what was done.
     """
     every = _read(frame, season, time, series, value, only, exclude, repair)
     settings = _settings(season, horizon, significance)
-    return Report(follow(_stream(every, settings, cache, pool), len(every), progress))
+    tally, done = Tally(), list[SeriesReport]()
+    try:
+        for one in follow(_stream(every, settings, cache, pool, tally), len(every), progress, tally):
+            done.append(one)
+    except KeyboardInterrupt:
+        raise Interrupted(Report(done), len(every)) from None
+    return Report(done)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
@@ -106,7 +132,8 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     o = given | options
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
     settings = _settings(o["season"], o["horizon"], o["significance"])
-    return follow(_stream(every, settings, o["cache"], o["pool"]), len(every), o["progress"])
+    tally = Tally()
+    return follow(_stream(every, settings, o["cache"], o["pool"], tally), len(every), o["progress"], tally)
 
 
 def _read(
@@ -135,38 +162,61 @@ def _settings(season: Any, horizon: Any, significance: Any) -> Settings:
 
 
 def _stream(
-    every: Sequence[TimeSeries], settings: Settings, cache: bool, pool: Executor | None
+    every: Sequence[TimeSeries], settings: Settings, cache: bool, pool: Executor | None, tally: Tally
 ) -> Iterator[SeriesReport]:
-    """Reports in the order of the series."""
+    """Reports in the order of the series; after an interrupt those that are done, then the interrupt."""
     keys = [_key(one, settings) if cache else None for one in every]
-    waiting = [key is None or key not in _cache for key in keys]
-    todo = [one for one, waits in zip(every, waiting, strict=True) if waits]
-    found = map(_checked, todo, repeat(settings)) if pool is None else pool.map(_checked, todo, repeat(settings))
-    for one, key, waits in zip(every, keys, waiting, strict=True):
-        if waits:
-            source, known = next(found)
-            if source.problem is None:
-                _remember(key, known)
-        elif key is not None and key in _cache:
-            source, known = one, _cache[key]
-            _cache.move_to_end(key)
-        else:
-            # other results of this run have pushed it out
-            source, known = _checked(one, settings)
-        yield SeriesReport(source, settings, known)
+    # Held from here on, since the results of this run may push them out of the cache.
+    known = {place: kept for place, key in enumerate(keys) if (kept := _recalled(key)) is not None}
+    places = [place for place in range(len(every)) if place not in known]
+    tally.wanted = len(places)
+    start = 0
+    for position, found in _computed([every[place] for place in places], settings, pool, tally):
+        place = places[position]
+        yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, place) if at in known)
+        yield _report(every[place], keys[place], settings, found)
+        start = place + 1
+    yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, len(every)))
 
 
-def _checked(one: TimeSeries, settings: Settings) -> tuple[TimeSeries, Climb]:
+def _computed(
+    todo: Sequence[TimeSeries], settings: Settings, pool: Executor | None, tally: Tally
+) -> Iterator[tuple[int, Climb | Lost]]:
+    """Climb the ladder with each series, here or in a pool."""
+    if pool is not None:
+        yield from in_pool(_checked, todo, settings, pool, tally)
+        return
+    for position, one in enumerate(todo):
+        known = _checked(one, settings)
+        tally.finished += 1
+        yield position, known
+
+
+def _checked(one: TimeSeries, settings: Settings) -> Climb | Lost:
     """Climb the ladder; a fault of ours makes this series infeasible and stops no other."""
     try:
-        return one, climb(one, settings)
+        # What the plan makes of the series costs less to compute again than to send and to keep.
+        return replace(climb(one, settings), transformed=None)
     except Exception as error:
-        problem = (
-            f"column {one.name!r}: the check failed inside preflight_magic ({type(error).__name__}: {error}); "
-            "please report this with the data, and check the other columns meanwhile."
+        return Lost(
+            f"the check failed inside preflight_magic ({type(error).__name__}: {error}); please report this with the "
+            "data, and check the other columns meanwhile"
         )
-        failed = replace(one, problem=problem)
-        return failed, climb(failed, settings)
+
+
+def _report(one: TimeSeries, key: bytes | None, settings: Settings, known: Climb | Lost) -> SeriesReport:
+    if isinstance(known, Lost):
+        failed = replace(one, problem=f"column {one.name!r}: {known.reason}.")
+        return SeriesReport(failed, settings, climb(failed, settings))
+    _remember(key, known)
+    return SeriesReport(one, settings, known)
+
+
+def _recalled(key: bytes | None) -> Climb | None:
+    if key is None or key not in _cache:
+        return None
+    _cache.move_to_end(key)
+    return _cache[key]
 
 
 def _remember(key: bytes | None, found: Climb) -> None:

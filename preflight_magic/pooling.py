@@ -168,7 +168,7 @@ def _refusal(pool: object, error: Exception) -> str:
     if isinstance(error, RuntimeError) and "shutdown" in str(error):
         return f"pool is a {kind} that is already shut down; make a new one, and check before it is closed."
     if not callable(getattr(pool, "submit", None)):
-        return f"pool is a {kind}, not an executor of concurrent.futures; give for example ProcessPoolExecutor()."
+        return f"pool is of type {kind}, not an executor of concurrent.futures; give for example ProcessPoolExecutor()."
     said = " ".join(str(error).split())
     return f"pool is a {kind} that takes no work ({type(error).__name__}: {said}); make a new one, or leave pool out."
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Hashable, Sequence
+from dataclasses import fields
 from typing import Any
 
 import numpy as np
@@ -28,8 +29,8 @@ def pack(one: TimeSeries) -> Packed:
         what is shared once.
     """
     values = one.values
-    words = (one.name, one.calendar, one.season, one.repairs, one.problem, one.notes)
-    return (*words, values.to_numpy(), values.name, _short(values.index))
+    words = {field.name: getattr(one, field.name) for field in fields(one) if field.name != "values"}
+    return words, values.to_numpy(), values.name, _short(values.index)
 
 
 def unpack(packed: Packed) -> TimeSeries:
@@ -45,9 +46,8 @@ def unpack(packed: Packed) -> TimeSeries:
     TimeSeries
         Equal to the one that was packed.
     """
-    name, calendar, season, repairs, problem, notes, numbers, label, index = packed
-    values = pd.Series(numbers, index=_long(index), name=label, copy=False)
-    return TimeSeries(name, values, calendar, season, repairs, problem, notes)
+    words, numbers, name, index = packed
+    return TimeSeries(values=pd.Series(numbers, index=_long(index), name=name, copy=False), **words)
 
 
 def _short(index: pd.Index) -> pd.Index | tuple[str, Hashable, int, int, int]:

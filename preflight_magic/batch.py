@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import operator
 from collections import OrderedDict
-from collections.abc import Hashable, Iterable, Iterator, Sequence
+from collections.abc import Hashable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor
 from dataclasses import replace
 from typing import Any
@@ -13,6 +13,7 @@ from typing import Any
 import numpy as np
 
 from preflight_magic.intake import read
+from preflight_magic.intake.spans import spans_of
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
@@ -99,8 +100,9 @@ def check(
     Interrupted
         After an interrupt from the keyboard; its `report` holds what was done.
     """
-    every = _read(frame, season, time, series, value, only, exclude, repair)
-    settings = _settings(season, horizon, significance)
+    spans = spans_of(exclude)
+    every = _read(frame, season, time, series, value, only, spans, repair)
+    settings = _settings(season, horizon, significance, spans)
     tally, done = Tally(), list[SeriesReport]()
     try:
         for one in follow(_stream(every, settings, cache, pool, tally), len(every), progress, tally):
@@ -124,16 +126,38 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     SeriesReport
         In the order of the table.
     """
+    every, settings, o = opened("stream", frame, options)
+    tally = Tally()
+    return follow(_stream(every, settings, o["cache"], o["pool"], tally), len(every), o["progress"], tally)
+
+
+def opened(
+    caller: str, frame: Any, options: Mapping[str, Any]
+) -> tuple[tuple[TimeSeries, ...], Settings, dict[str, Any]]:
+    """Read a table with the options of `check`, given by name, in the name of a function that hands them on.
+
+    Parameters
+    ----------
+    caller : str
+    frame : DataFrame, Series, or anything with ``to_pandas``
+    options : Mapping
+
+    Returns
+    -------
+    every : tuple of TimeSeries
+    settings : Settings
+    given : dict
+        All options, those left out at their defaults.
+    """
     given: dict[str, Any] = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
     given |= {"exclude": None, "repair": True, "cache": True, "pool": None, "progress": None, "significance": 0.05}
     unknown = sorted(options.keys() - given.keys())
     if unknown:
-        raise TypeError(f"stream() has no option {', '.join(unknown)}")
-    o = given | options
+        raise TypeError(f"{caller}() has no option {', '.join(unknown)}")
+    o = {**given, **options}
+    o["exclude"] = spans_of(o["exclude"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
-    settings = _settings(o["season"], o["horizon"], o["significance"])
-    tally = Tally()
-    return follow(_stream(every, settings, o["cache"], o["pool"], tally), len(every), o["progress"], tally)
+    return every, _settings(o["season"], o["horizon"], o["significance"], o["exclude"]), o
 
 
 def _read(
@@ -142,7 +166,7 @@ def _read(
     return read(frame, season=season, time=time, series=series, value=value, only=only, exclude=exclude, repair=repair)
 
 
-def _settings(season: Any, horizon: Any, significance: Any) -> Settings:
+def _settings(season: Any, horizon: Any, significance: Any, exclude: Any) -> Settings:
     try:
         size = float(significance)
     except (TypeError, ValueError):
@@ -158,7 +182,7 @@ def _settings(season: Any, horizon: Any, significance: Any) -> Settings:
         if steps < 1:
             raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, at least 1.")
     asked = None if season is None else tuple(np.atleast_1d(np.asarray(season)).astype(int).tolist())
-    return Settings(season=asked, horizon=steps, thresholds=Thresholds(significance=size))
+    return Settings(season=asked, horizon=steps, thresholds=Thresholds(significance=size), exclude=exclude)
 
 
 def _stream(

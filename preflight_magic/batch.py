@@ -8,22 +8,25 @@ from collections import OrderedDict
 from collections.abc import Hashable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor
 from dataclasses import replace
-from typing import Any
+from typing import Any, TypeVar
 
 import numpy as np
 
+from preflight_magic import __version__
 from preflight_magic.intake import read
 from preflight_magic.intake.spans import spans_of
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
-from preflight_magic.pooling import Lost, in_pool
+from preflight_magic.pooling import Lost, Work, in_pool
 from preflight_magic.progress import Progress, Tally, follow
 from preflight_magic.report import Report
 from preflight_magic.series_report import SeriesReport
 
 CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
+
+T = TypeVar("T")
 
 _cache: OrderedDict[bytes, Climb] = OrderedDict()
 
@@ -193,30 +196,30 @@ def _stream(
     # Held from here on, since the results of this run may push them out of the cache.
     known = {place: kept for place, key in enumerate(keys) if (kept := _recalled(key)) is not None}
     places = [place for place in range(len(every)) if place not in known]
-    tally.wanted = len(places)
     start = 0
-    for position, found in _computed([every[place] for place in places], settings, pool, tally):
+    for position, found in computed(checked, [every[place] for place in places], settings, pool, tally):
         place = places[position]
         yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, place) if at in known)
-        yield _report(every[place], keys[place], settings, found)
+        yield report_of(every[place], keys[place], settings, found)
         start = place + 1
     yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, len(every)))
 
 
-def _computed(
-    todo: Sequence[TimeSeries], settings: Settings, pool: Executor | None, tally: Tally
-) -> Iterator[tuple[int, Climb | Lost]]:
-    """Climb the ladder with each series, here or in a pool."""
+def computed(
+    work: Work[T], todo: Sequence[TimeSeries], settings: Settings, pool: Executor | None, tally: Tally
+) -> Iterator[tuple[int, T | Lost]]:
+    """Do the same with each series, here or in a pool, and tell the position of each result."""
+    tally.wanted = len(todo)
     if pool is not None:
-        yield from in_pool(_checked, todo, settings, pool, tally)
+        yield from in_pool(work, todo, settings, pool, tally)
         return
     for position, one in enumerate(todo):
-        known = _checked(one, settings)
+        found = work(one, settings)
         tally.finished += 1
-        yield position, known
+        yield position, found
 
 
-def _checked(one: TimeSeries, settings: Settings) -> Climb | Lost:
+def checked(one: TimeSeries, settings: Settings) -> Climb | Lost:
     """Climb the ladder; a fault of ours makes this series infeasible and stops no other."""
     try:
         # What the plan makes of the series costs less to compute again than to send and to keep.
@@ -228,7 +231,8 @@ def _checked(one: TimeSeries, settings: Settings) -> Climb | Lost:
         )
 
 
-def _report(one: TimeSeries, key: bytes | None, settings: Settings, known: Climb | Lost) -> SeriesReport:
+def report_of(one: TimeSeries, key: bytes | None, settings: Settings, known: Climb | Lost) -> SeriesReport:
+    """Report of a series, infeasible where its climb was lost; `key` is what the cache will know it by."""
     if isinstance(known, Lost):
         failed = replace(one, problem=f"column {one.name!r}: {known.reason}.")
         return SeriesReport(failed, settings, climb(failed, settings))
@@ -252,11 +256,15 @@ def _remember(key: bytes | None, found: Climb) -> None:
 
 
 def _key(one: TimeSeries, settings: Settings) -> bytes | None:
-    """Digest of everything a climb depends on; None for a series that cannot be checked."""
-    if one.problem is not None:
-        return None
+    """What the cache knows a climb by; None for a series that cannot be checked."""
+    return None if one.problem is not None else digest_of(one, settings)
+
+
+def digest_of(one: TimeSeries, settings: Settings) -> bytes:
+    """Digest of everything that findings depend on: values, name, calendar, options, version."""
     index = one.values.index
     digest = hashlib.blake2b(one.values.to_numpy().tobytes(), digest_size=16)
-    told = (one.name, type(one.name).__name__, one.calendar, one.season, one.repairs, one.notes, settings)
-    digest.update(repr((told, str(index.dtype), index[0], len(index))).encode())
+    told = (one.name, type(one.name).__name__, one.calendar, one.season, one.repairs, one.problem, one.notes)
+    place = (str(index.dtype), index[:1].tolist(), len(index))
+    digest.update(repr((told, settings, place, __version__)).encode())
     return digest.digest()

@@ -10,7 +10,7 @@ from typing import Any
 import pandas as pd
 
 from preflight_magic.generated import proved_code
-from preflight_magic.overview import row_of
+from preflight_magic.overview import row_of, table_of
 from preflight_magic.saving import save
 from preflight_magic.series_report import SeriesReport
 
@@ -46,13 +46,7 @@ class Report:
     @cached_property
     def overview(self) -> pd.DataFrame:
         """One row a series; columns verdict, plan, log, power, trend, shift, season, D, d, period, n, missing, note."""
-        rows = [row_of(one) for one in self]
-        index = pd.Index(self.names, name="series", tupleize_cols=False)
-        frame = pd.DataFrame(rows, index=index)
-        kinds = dict.fromkeys(("log", "trend", "shift"), "boolean")
-        kinds |= dict.fromkeys(("verdict", "plan", "season", "note"), "string")
-        kinds |= dict.fromkeys(("D", "d", "period", "n", "missing"), "Int64") | {"power": "Float64"}
-        return frame.astype(kinds)
+        return table_of((row_of(one) for one in self), self.names)
 
     def code(self, names: Any = None) -> str:
         """Source that applies and undoes the plans of some series, or of all that could be checked.

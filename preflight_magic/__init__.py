@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from preflight_magic.plan.plan import Plan
     from preflight_magic.report import Report
     from preflight_magic.series_report import SeriesReport
+    from preflight_magic.estimate import time_needed
 
 __version__ = "0.1.0"
 __all__ = [
@@ -34,6 +35,7 @@ __all__ = [
     "check",
     "demo",
     "stream",
+    "time_needed",
     "write_overview",
 ]
 
@@ -42,6 +44,7 @@ _HOMES = {
     "Interrupted": "preflight_magic.batch",
     "check": "preflight_magic.batch",
     "stream": "preflight_magic.batch",
+    "time_needed": "preflight_magic.estimate",
     "write_overview": "preflight_magic.overview_file",
     "Plan": "preflight_magic.plan.plan",
     "Report": "preflight_magic.report",

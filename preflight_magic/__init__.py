@@ -19,11 +19,11 @@ from preflight_magic.model import CheckError
 if TYPE_CHECKING:
     from preflight_magic import demo
     from preflight_magic.batch import Interrupted, check, stream
+    from preflight_magic.estimate import time_needed
     from preflight_magic.overview_file import write_overview
     from preflight_magic.plan.plan import Plan
     from preflight_magic.report import Report
     from preflight_magic.series_report import SeriesReport
-    from preflight_magic.estimate import time_needed
 
 __version__ = "0.1.0"
 __all__ = [

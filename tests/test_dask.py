@@ -9,6 +9,7 @@ import pytest
 import preflight_magic as pf
 from preflight_magic import pooling
 from tests.pool_works import Fatal
+from tests.test_documents import README, blocks
 from tests.test_pooling import assert_same, table
 
 dask = pytest.importorskip("dask")
@@ -57,6 +58,15 @@ def test_fatal_series_is_infeasible_by_name(client, serial):
     assert report[name].verdict == "infeasible"
     assert "the process that checked it ended, and a second one too" in report[name].answer
     assert_same(pf.Report(one for one in report if one.name is not name), serial)
+
+
+def test_lines_of_the_readme(client, serial):
+    (source,) = blocks(README, "py")
+    assert '"scheduler:8786"' in source
+    names = {"pf": pf, "monthly": table(2)}
+    exec(compile(source.replace("scheduler:8786", client.scheduler.address), "README.md", "exec"), names)
+    names["client"].close()
+    assert names["report"].names == serial.names[:2]
 
 
 def test_executor_that_is_shut_down(client):

@@ -1,8 +1,8 @@
 """Many series: pace, two processes, rerun, memory, sizes, overheads and first looks; prints and never fails.
 
 Run ``OPENBLAS_NUM_THREADS=1 python -m tests.bench.bench_batch [series]`` from the root of the project. The last lines
-tell from these measurements what a million series cost on 64 workers. What happens in one process is measured in time of
-the processor, so that a busy machine does not count; what happens in pools on the clock.
+tell from these measurements what a million series cost on 64 workers. What happens in one process is measured in time
+of the processor, so that a busy machine counts less; what happens in pools on the clock.
 """
 
 from __future__ import annotations
@@ -151,7 +151,7 @@ def main(k: int) -> None:
 def first_card() -> None:
     """Time from the report to its first card, in a fresh process: what is loaded once counts."""
     code = (
-        "import time, preflight_magic as pf; from tests.bench.bench_batch import table\n"
+        "import time, IPython, preflight_magic as pf; from tests.bench.bench_batch import table\n"
         "report = pf.check(table(3, 1), progress=False); start = time.process_time()\n"
         "report._ipython_display_(); print('\\n%.4f' % (time.process_time() - start))\n"
     )

@@ -17,6 +17,7 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
 REPORT = {"answer", "overview", "generated", "saving", "series_report", "reference", "report", "progress", "batch"}
+REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "magic"}
 

@@ -20,7 +20,8 @@ def alive():
     found = getattr(widget, "_instances", None)
     return len(found if found is not None else widget.Widget.widgets)
 def counts():
-    # The shell itself keeps every value it has shown.
+    # The shell itself keeps every value it has shown, and from IPython 9 on everything that was displayed.
+    getattr(get_ipython().history_manager, "outputs", {}).clear()
     for name in [name for name in get_ipython().user_ns if name.strip("_").isdigit() or not name.strip("_")]:
         get_ipython().user_ns[name] = None
         get_ipython().user_ns_hidden.pop(name, None)

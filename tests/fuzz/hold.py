@@ -157,7 +157,9 @@ def _moved(one: Any, values: pd.Series) -> Any:
 def unit_changes_nothing(report: Any) -> None:
     """Another unit, a power of two or not, leaves every decision."""
     for one in report:
-        if one.problem is None and one.series.abs().max() < 1e70 and one.series.std() > 1e-70:
+        # Changes near the last digit of the values are rounded otherwise in another unit.
+        fine = one.problem is None and one.series.abs().max() < min(1e70, 1e6 * one.series.std())
+        if fine and one.series.std() > 1e-70:
             base = _moved(one, one.series)
             for factor in (2.0**20, 1e-3):
                 other = _moved(one, one.series * factor)

@@ -16,7 +16,7 @@ from tests.fuzz.plans import Trial, trials
 
 CASES = int(os.environ.get("PREFLIGHT_CASES", "20000"))
 QUICK = settings(
-    max_examples=60, deadline=None, database=None, derandomize=True, suppress_health_check=list(HealthCheck)
+    max_examples=20, deadline=None, database=None, derandomize=True, suppress_health_check=list(HealthCheck)
 )
 LONG = settings(QUICK, max_examples=CASES, derandomize=False, print_blob=True)
 
@@ -54,7 +54,7 @@ def test_what_is_done_is_undone_and_the_code_does_it_too(trial):
 
 
 @given(trials())
-@QUICK
+@settings(QUICK, max_examples=15)
 def test_repairs_give_the_regular_series(trial):
     repaired(trial)
 
@@ -120,7 +120,7 @@ def test_hostile_names_run_and_do_nothing_but_their_job(tmp_path, monkeypatch):
 
 
 @given(trials())
-@settings(QUICK, max_examples=25)
+@settings(QUICK, max_examples=5)
 @example(Trial("numbers", 80, 1, 1.0, (pf.Logit(-1.0, 2.0e3),), (), False, 5))
 def test_bounds_far_beyond_the_values_do_not_fail_the_proof(trial):
     y = trial.series() * 1e-12

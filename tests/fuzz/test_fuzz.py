@@ -12,7 +12,7 @@ from tests.fuzz.hold import hold
 
 CASES = int(os.environ.get("PREFLIGHT_CASES", "20000"))
 QUICK = settings(
-    max_examples=20, deadline=None, database=None, derandomize=True, suppress_health_check=list(HealthCheck)
+    max_examples=10, deadline=None, database=None, derandomize=True, suppress_health_check=list(HealthCheck)
 )
 LONG = settings(QUICK, max_examples=CASES, derandomize=False, print_blob=True)
 

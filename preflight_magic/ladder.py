@@ -37,6 +37,8 @@ if TYPE_CHECKING:
 
 READING = ("time index", "values")
 """Rungs that say whether the series can be checked at all."""
+NO_NUMBERS = (np.linalg.LinAlgError, ArithmeticError)
+"""What a singular system or a number out of range raises: a rung that meets it is not decided, and says so."""
 DECIDING = ("calendar length", "spread", "shift and trend", "season", "unit root")
 """Rungs whose doubts make the series inconclusive; those after them add notes."""
 
@@ -173,7 +175,10 @@ def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:
 
 
 def _comparison(series: TimeSeries, thresholds: Thresholds) -> Comparison | None:
-    return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds), series.season[1:])
+    try:
+        return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds), series.season[1:])
+    except NO_NUMBERS:
+        return None
 
 
 @cache
@@ -184,7 +189,10 @@ def _comes_after(name: str, other: str) -> bool:
 
 
 def _finding(rung: Rung, series: TimeSeries, context: Context, thresholds: Thresholds) -> Finding:
-    evidence: Evidence = rung.examine(series, context)
+    try:
+        evidence: Evidence = rung.examine(series, context)
+    except NO_NUMBERS as error:
+        evidence = Evidence(problem=f"the numbers of this rung could not be computed ({str(error).rstrip('.')}).")
     if context.transformed is None:
         evidence = replace(evidence, tests=_named_per_day(evidence.tests, context.steps))
     judgement: Judgement = rung.judge(evidence, thresholds)

@@ -456,7 +456,7 @@ def test_categories_of_numbers_become_numbers():
     ],
 )
 def test_objects_at_the_edge_of_what_is_a_number(values, told):
-    found = problem(pd.array(values, dtype=object))
+    found = problem(pd.Series(values, index=MONTHS, dtype=object))
     assert found is None if told is None else told in found
     assert "\n" not in (found or "")
 

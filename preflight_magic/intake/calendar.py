@@ -147,7 +147,9 @@ def _dates(index: pd.DatetimeIndex, remedies: Remedies) -> tuple[Calendar, pd.In
     for freq in _candidates(wall):
         # Hours are steps of absolute time, everything longer of local dates.
         stamps = index if freq.endswith(("h", "min")) else wall
-        expected = pd.date_range(stamps[0], stamps[-1], freq=freq)
+        expected = _whole(stamps, freq)
+        if expected is None:
+            continue
         common = int(stamps.isin(expected).sum())
         score = common / (len(expected) + len(stamps) - common)
         if score == 1.0:
@@ -167,6 +169,18 @@ def _dates(index: pd.DatetimeIndex, remedies: Remedies) -> tuple[Calendar, pd.In
     if zoned and regular.tz is None:
         regular = _local(_in_zone(regular, index, remedies), best[1], remedies)
     raise LacksStampsError(str(found), calendar, regular, "dates")
+
+
+def _whole(stamps: pd.DatetimeIndex, freq: str) -> pd.DatetimeIndex | None:
+    """Every stamp of a calendar from the first to the last; None where most of them are lacking, or past all dates."""
+    usual = float(np.median(gap_days(stamps if stamps.tz is None else stamps.tz_convert(None))))
+    # As days, since the difference of two dates of nanoseconds may be too long for one.
+    if stamps[-1].to_julian_date() - stamps[0].to_julian_date() > 4 * usual * (len(stamps) + 25):
+        return None
+    try:
+        return pd.date_range(stamps[0], stamps[-1], freq=freq)
+    except (OverflowError, ValueError):
+        return None
 
 
 def _in_zone(regular: pd.DatetimeIndex, index: pd.DatetimeIndex, remedies: Remedies) -> pd.DatetimeIndex:

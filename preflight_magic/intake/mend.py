@@ -11,7 +11,7 @@ import pandas as pd
 from preflight_magic.intake.calendar import recognise, refuse_business_periods
 from preflight_magic.intake.dates import plain, readable
 from preflight_magic.intake.remedies import LacksStampsError, Remedies
-from preflight_magic.model import Calendar, IndexRepair, MergeDuplicates, ReadDates, RegularCalendar, Sort
+from preflight_magic.model import Calendar, CheckError, IndexRepair, MergeDuplicates, ReadDates, RegularCalendar, Sort
 from preflight_magic.stamps import stamp_text
 
 REPAIRS = ("read dates", "sort", "merge duplicates", "regular calendar", "fill gaps")
@@ -104,6 +104,11 @@ def mend(index: pd.Index, remedies: Remedies, allowed: frozenset[str]) -> Mended
         place = (np.cumsum(~again) - 1)[place]
         index = index[~again]
         repairs.append(MergeDuplicates())
+        if len(index) < 2:
+            raise CheckError(
+                f"the index holds one stamp only, {stamp_text(index[0])}; put the dates there, or name the column that "
+                "tells the series apart with series=."
+            )
     try:
         calendar, regular = recognise(index, remedies)
     except LacksStampsError as found:

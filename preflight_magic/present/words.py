@@ -84,7 +84,7 @@ def number(value: float, digits: int = 3) -> str:
     if not 1e-4 <= size < 1e9:
         mantissa, exponent = f"{size:.{digits - 1}e}".split("e")
         # A power of ten below 1e-308 is no number, so the digits are read from the text.
-        short = _short(mantissa, float(f"{size:.16e}".split("e")[0]))
+        short = _short(mantissa, float(f"{size:.15e}".split("e")[0]))
         return f"{sign}{short}e{int(exponent)}".replace("e-", f"e{MINUS}")
     decimals = max(0, digits - 1 - math.floor(math.log10(float(f"{size:.{digits - 1}e}"))))
     return f"{sign}{_short(f'{size:,.{decimals}f}', size)}"

@@ -22,6 +22,9 @@ FOUND = {
     ),
     "one value of 1e74 among small ones": Case(n=60, columns=(Column(kind="walk", seed=1, scale=1.0, odd="large"),)),
     "hours where midnight does not exist": Case(n=100, index="America/Sao_Paulo h"),
+    "nothing changes after the plan": Case(
+        n=37, index="period D", columns=(Column(kind="parabola", seed=786, scale=-1.0, offset=1e15),), seed=2580
+    ),
     "a stamp lost from text": Case(n=40, index="text days", mess=("rows gone", "twice")),
 }
 

@@ -14,9 +14,9 @@ import numpy as np
 from scipy.linalg.lapack import dpotrf, dtrtrs
 
 from preflight_magic.kernels.least_squares import FloatArray, polynomial
-from preflight_magic.kernels.long_run_variance import andrews_bandwidth, within_rounding
+from preflight_magic.kernels.long_run_variance import andrews_bandwidth
 from preflight_magic.kernels.quadratic_forms import cramer_von_mises_p_value
-from preflight_magic.kernels.scaling import to_unit_size
+from preflight_magic.kernels.scaling import to_unit_size, within_rounding
 
 _EPSILON = float(np.finfo(np.float64).eps)
 _DEPENDENT = 1e-7  # relative to its own length, what the columns before leave of a regressor that repeats them

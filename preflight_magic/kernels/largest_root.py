@@ -23,7 +23,7 @@ from preflight_magic.kernels.dickey_fuller import (
 )
 from preflight_magic.kernels.lag_length import Criterion
 from preflight_magic.kernels.least_squares import FloatArray
-from preflight_magic.kernels.long_run_variance import within_rounding
+from preflight_magic.kernels.scaling import within_rounding
 
 _DEGREE = {"c": 0, "ct": 1}
 _CHUNK = 20_000  # values of the simulated series held at a time, few enough for the cache

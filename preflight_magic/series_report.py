@@ -28,6 +28,7 @@ from preflight_magic.model import (
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.reference import reference_forecast
+from preflight_magic.root_intervals import root_intervals
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -197,6 +198,37 @@ class SeriesReport:
             For a series that could not be checked, or options out of range.
         """
         return reference_forecast(self, self.horizon if horizon is None else horizon, coverage)
+
+    def root_intervals(
+        self, coverage: float = 0.9, *, replications: int = 199, seed: int = 0, from_modulus: float = 0.5
+    ) -> pd.DataFrame:
+        """Intervals of roots that stay valid near one, by seeded bootstrap; takes up to a minute.
+
+        Parameters
+        ----------
+        coverage : float
+            Probability of an interval.
+        replications : int
+            Simulated series at each value that is tested, at least 99.
+        seed : int
+        from_modulus : float
+            ARMA roots with a smaller modulus are left out.
+
+        Returns
+        -------
+        DataFrame
+            First, `of` the series ``before differences``, the sum of the coefficients of an autoregression about a
+            line, one at a unit root (`part` is ``AR sum``; Hansen 1999, `modulus` is median-unbiased); then, ``after
+            the plan``, the roots of the ARMA model (``AR`` or ``MA``). Columns `of`, `part`, `seasonal`, `period`
+            (steps a cycle), `modulus`, `lower`, `upper`, and but for MA roots `half_life`, `half_life_lower`,
+            `half_life_upper`: in steps, infinite at one.
+
+        Raises
+        ------
+        CheckError
+            For a series that could not be checked, or options out of range.
+        """
+        return root_intervals(self, self._source, coverage, replications, seed, from_modulus)
 
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""

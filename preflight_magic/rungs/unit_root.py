@@ -87,8 +87,7 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     }
     values, told_series = _subject(series, context)
     lost = len(series.values) - len(values)  # at the start, to seasonal differences
-    tests = root_tests(values, told_series)
-    tests += level_tests(values, told_series, lambda at: stamp_text(series.values.index[lost + at]))
+    tests = level_tests(values, told_series, lambda at: stamp_text(series.values.index[lost + at]))
     if comparison.best.d:
         tests += root_tests(difference(values, 1), f"{told_series}, differenced once")
     return Evidence(measures, tuple(tests))

@@ -76,7 +76,7 @@ def test_in_a_long_series_the_p_value_is_that_of_mackinnon() -> None:
         for width in (0, "newey-west"):
             found = phillips_perron(y, "ct", width)
             assert found is not None
-            # MacKinnon (1994), Journal of Business and Economic Statistics 12: both err by a hundredth in the middle of the law
+            # MacKinnon (1994), Journal of Business and Economic Statistics 12; in the middle both err by a hundredth
             assert found.p_value == pytest.approx(dickey_fuller_p_value(found.statistic, "ct")[0], abs=0.02)
 
 

@@ -101,9 +101,10 @@ def of_season(period: int, name: str, differences: int) -> PValues:
 
 def of_innovations(y: np.ndarray) -> dict[str, float]:
     """Tests of the residuals, where nothing was fitted."""
+    short, long = (min(lags, y.size // 5) for lags in (10, 24))  # as the rung takes them
     found = {
-        "Ljung-Box, 10 lags": ljung_box(y, 10),
-        "Ljung-Box, 24 lags": ljung_box(y, 24),
+        "Ljung-Box, 10 lags": ljung_box(y, short),
+        "Ljung-Box, 10, 20 and 24 lags": ljung_box(y, long),
         "ARCH-LM, 4 lags": arch_lm(y, 4),
         "Jarque-Bera": jarque_bera(y),
     }

@@ -28,6 +28,7 @@ REPORT = {
     "progress",
     "batch",
 }
+REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "magic"}
 

@@ -174,8 +174,10 @@ class SeriesReport:
             raise CheckError(f"There is no code of the form {form!r}; use 'pandas'.")
         return proved_code([self])
 
-    def reference_forecast(self, horizon: int | None = None, coverage: float = 0.9) -> pd.DataFrame:
-        """Forecast with the ARMA model of the roots rung: a yardstick for the real model.
+    def reference_forecast(
+        self, horizon: int | None = None, coverage: float = 0.9, *, average: bool = True
+    ) -> pd.DataFrame:
+        """Forecast with ARMA models through their plans: a yardstick for the real model.
 
         Parameters
         ----------
@@ -183,6 +185,11 @@ class SeriesReport:
             Steps ahead; by default `horizon`.
         coverage : float
             Probability of the interval.
+        average : bool
+            False: the plan alone, with the ARMA model of the roots rung. True: so too where no other plan is left
+            within odds of 20 to 1, or you have chosen the plan; else the interval is that of all plans left, weighted
+            by their share of the evidence, each with its own ARMA model. Median and mean are theirs as well where
+            their median lies farther than a quarter of a standard error from the plan's own.
 
         Returns
         -------
@@ -194,7 +201,7 @@ class SeriesReport:
         CheckError
             For a series that could not be checked, or options out of range.
         """
-        return reference_forecast(self, self.horizon if horizon is None else horizon, coverage)
+        return reference_forecast(self, self.horizon if horizon is None else horizon, coverage, average)
 
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""

@@ -16,7 +16,8 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
-REPORT = {"answer", "overview", "generated", "saving", "series_report", "reference", "report", "progress", "batch"}
+REPORT = {"answer", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
+REPORT |= {"reference", "reference_mixture", "reference_parts"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "magic"}
 

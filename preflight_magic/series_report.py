@@ -9,7 +9,7 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.answer import answer_of
-from preflight_magic.generated import proved_code
+from preflight_magic.generated import code_of
 from preflight_magic.kernels.correlation import autocorrelation
 from preflight_magic.ladder import Climb, climb, ladder
 from preflight_magic.model import (
@@ -157,7 +157,9 @@ class SeriesReport:
 
         Parameters
         ----------
-        form : {"pandas"}
+        form : {"pandas", "model", "features"}
+            ``pandas``: `prepare` and `restore`. ``model``: a statsmodels SARIMAX model that holds what a model can of
+            the plan, and its forecast in the original units. ``features``: columns for a learner.
 
         Returns
         -------
@@ -170,9 +172,7 @@ class SeriesReport:
         EmitError
             When the code does not do what the plan does: a fault of this package.
         """
-        if form != "pandas":
-            raise CheckError(f"There is no code of the form {form!r}; use 'pandas'.")
-        return proved_code([self])
+        return code_of(self, form)
 
     def reference_forecast(
         self, horizon: int | None = None, coverage: float = 0.9, *, average: bool = True

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Mapping
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -27,6 +28,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
+from preflight_magic.proof_result import Proof
 from preflight_magic.reference import reference_forecast
 
 if TYPE_CHECKING:
@@ -204,6 +206,17 @@ class SeriesReport:
             For a series that could not be checked, or options out of range.
         """
         return reference_forecast(self, self.horizon if horizon is None else horizon, coverage, average)
+
+    @cached_property
+    def proof(self) -> Proof:
+        """Forecasts from past origins with the plan, without each step, and with naive ones, over `horizon` steps.
+
+        Computed when first asked for, within seconds; it decides nothing. A series that is too short gives a result
+        whose `problem` says so.
+        """
+        from preflight_magic.proof import prove_plan
+
+        return prove_plan(self)
 
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""

@@ -89,6 +89,11 @@ class SeriesReport:
         return self._source.calendar.noun if self._source.calendar else "step"
 
     @property
+    def significance(self) -> float:
+        """Size of the tests shown."""
+        return self._settings.thresholds.significance
+
+    @property
     def season(self) -> tuple[int, ...]:
         """Seasonal periods considered, shortest first."""
         return self._source.season

@@ -17,7 +17,8 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
 REPORT = {"answer", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
-REPORT |= {"reference", "reference_mixture", "reference_parts", "proof", "proof_result", "proof_words", "together"}
+REPORT |= {"reference", "reference_mixture", "reference_parts", "together", "together_words"}
+REPORT |= {"proof", "proof_result", "proof_words"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "magic"}
 

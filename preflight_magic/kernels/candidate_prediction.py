@@ -89,7 +89,7 @@ def predict_candidate(
     mean = found.mean
     for level, lag in reversed(list(zip(chain, lags, strict=False))):
         mean = undo_differences(mean, lag, level)
-    variance = found.square / degrees * (found.noise + found.effects).diagonal() + sum(apart) / n
+    variance = found.variance(len(values), candidate.order.size, degrees) + sum(apart) / n
     return Ahead(mean, variance, float(degrees))
 
 

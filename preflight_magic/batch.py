@@ -22,6 +22,7 @@ from preflight_magic.pooling import Lost, Work, in_pool
 from preflight_magic.progress import Progress, Tally, follow
 from preflight_magic.report import Report
 from preflight_magic.series_report import SeriesReport
+from preflight_magic.together import check_target
 
 CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
@@ -59,6 +60,7 @@ def check(
     value: Hashable | None = None,
     significance: float = 0.05,
     only: Hashable | Iterable[Hashable] | None = None,
+    target: Hashable | None = None,
     exclude: Iterable[tuple[Any, Any]] | None = None,
     repair: bool | str | Iterable[str] = True,
     cache: bool = True,
@@ -81,6 +83,8 @@ def check(
         Size of the tests shown; it changes what their sentences say, never the plan.
     only : name or iterable of names, optional
         Series to check.
+    target : name, optional
+        The series that the others are meant to explain: `Report.together` says whether they may.
     exclude : iterable of (start, end), optional
         Spans known to be special: left out of every decision as if missing.
     repair : bool, str or iterable of str
@@ -106,6 +110,8 @@ def check(
     spans, season = spans_of(exclude), season_of(season)
     _refuse_wrong_tools(pool, progress)
     every = _read(frame, season, time, series, value, only, spans, repair)
+    if target is not None:
+        check_target([one.name for one in every], target)
     settings = _settings(season, horizon, significance, spans)
     tally, done = Tally(), list[SeriesReport]()
     try:
@@ -113,7 +119,7 @@ def check(
             done.append(one)
     except KeyboardInterrupt:
         raise Interrupted(Report(done), len(every)) from None
-    return Report(done)
+    return Report(done, target)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
@@ -155,6 +161,7 @@ def opened(
     """
     given: dict[str, Any] = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
     given |= {"exclude": None, "repair": True, "cache": True, "pool": None, "progress": None, "significance": 0.05}
+    given |= {"target": None}
     unknown = sorted(options.keys() - given.keys())
     if unknown:
         raise TypeError(f"{caller}() has no option {', '.join(unknown)}")
@@ -162,6 +169,8 @@ def opened(
     o["exclude"], o["season"] = spans_of(o["exclude"]), season_of(o["season"])
     _refuse_wrong_tools(o["pool"], o["progress"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
+    if o["target"] is not None:
+        check_target([one.name for one in every], o["target"])
     return every, _settings(o["season"], o["horizon"], o["significance"], o["exclude"]), o
 
 

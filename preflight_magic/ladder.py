@@ -137,14 +137,14 @@ def _climbed(series: TimeSeries, settings: Settings, plan: Plan | None, earlier:
                 context,
                 steps=chosen.steps,
                 transformed=transformed,
-                nuisance=_nuisance(series, chosen, len(transformed)),
+                nuisance=nuisance_of(series, chosen, len(transformed)),
             )
         if earlier is not None and not late:
             finding = earlier.findings[rung.name]
         else:
             finding = _finding(rung, subject, context, settings.thresholds)
         findings[rung.name] = finding
-        if not late and finding.steps:
+        if not late and finding.steps and not needs_another_road(findings, settings.thresholds):
             recommended = Plan(recommended.repairs, (*recommended.steps, *finding.steps))
             context = replace(context, steps=recommended.steps)
         if rung.name == "roots":
@@ -152,6 +152,12 @@ def _climbed(series: TimeSeries, settings: Settings, plan: Plan | None, earlier:
     if transformed is None and series.problem is None:
         transformed = (plan if plan is not None else recommended).apply(series.values).dropna()
     return Climb(findings, context.comparison, recommended, recommended if plan is None else plan, transformed)
+
+
+def needs_another_road(findings: Mapping[str, Finding], thresholds: Thresholds) -> bool:
+    """Whether demand is intermittent, so that no ARMA plan is made."""
+    interval = findings["values"].measures.get("demand_interval") if "values" in findings else None
+    return isinstance(interval, float) and interval >= thresholds.intermittent_interval
 
 
 def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:
@@ -222,8 +228,26 @@ def _named_per_day(tests: tuple[HypothesisTest, ...], steps: tuple[Step, ...]) -
     return tuple(named)
 
 
-def _nuisance(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] | None:
-    """Indicators of the missing values, differenced as the plan does."""
+def nuisance_of(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] | None:
+    """Indicators of the missing values, differenced as the plan does.
+
+    Parameters
+    ----------
+    series : TimeSeries
+    plan : Plan
+    rows : int
+        Values left after the plan.
+
+    Returns
+    -------
+    ndarray, shape (rows, missing), or None
+        None where nothing is missing.
+
+    Raises
+    ------
+    CheckError
+        When the plan leaves gaps open.
+    """
     columns = missing_columns(series.values.to_numpy(dtype=float))
     if not columns.shape[1]:
         return None

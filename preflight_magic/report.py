@@ -10,6 +10,7 @@ from typing import Any
 import pandas as pd
 
 from preflight_magic.generated import proved_code
+from preflight_magic.model import Finding
 from preflight_magic.overview import row_of, table_of
 from preflight_magic.saving import save
 from preflight_magic.series_report import SeriesReport
@@ -22,9 +23,12 @@ class Report:
     Parameters
     ----------
     reports : iterable of SeriesReport
+    target : Hashable, optional
+        The series that the others are meant to explain.
     """
 
-    def __init__(self, reports: Iterable[SeriesReport]) -> None:
+    def __init__(self, reports: Iterable[SeriesReport], target: Hashable | None = None) -> None:
+        self._target = target
         self._reports = {one.name: one for one in reports}
 
     @property
@@ -66,6 +70,16 @@ class Report:
             from the plan) or ``noted``, the first that holds; `reason`: a sentence for each that does.
         """
         return attention(self, earlier, false_alarms)
+
+    @cached_property
+    def together(self) -> Finding | None:
+        """Whether the other series may explain the target, and which of their lags are known; None without one."""
+        if self._target is None:
+            return None
+        from preflight_magic.together import examine_together
+
+        every = list(self)
+        return examine_together(every, self._target, every[0].significance)
 
     def code(self, names: Any = None) -> str:
         """Source that applies and undoes the plans of some series, or of all that could be checked.

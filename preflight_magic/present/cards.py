@@ -120,8 +120,12 @@ class OverviewRow:
 
 @dataclass(frozen=True, eq=False)
 class OverviewCard:
-    """All series of a report, or the first of very many; `left_out` counts the others, `counts` all of them."""
+    """All series of a report, or the first of very many; `left_out` counts the others, `counts` all of them.
+
+    `together` says whether the others may explain a target; empty without one.
+    """
 
     counts: tuple[tuple[Verdict, int], ...]
     rows: tuple[OverviewRow, ...]
     left_out: int = 0
+    together: str = ""

@@ -184,6 +184,7 @@ def overview(card: OverviewCard, linked: bool = False) -> Markup:
         el("p", _summary(card), class_="pfm-summary"),
         el("table", el("thead", el("tr", heads)), el("tbody", rows), class_="pfm-table pfm-overview"),
         el("p", more, class_="pfm-faint") if more else None,
+        el("p", card.together, class_="pfm-together") if card.together else None,
         class_="pfm pfm-many",
     )
 

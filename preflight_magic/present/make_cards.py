@@ -220,4 +220,12 @@ def overview(report: ReportView, limit: int | None = OVERVIEW_ROWS) -> OverviewC
                 rungs=tuple((f.question, f.verdict, words.plain(f.headline)) for f in view.findings.values()),
             )
         )
-    return OverviewCard(counts, tuple(rows), len(names) - len(shown))
+    return OverviewCard(counts, tuple(rows), len(names) - len(shown), _together(report))
+
+
+def _together(report: ReportView) -> str:
+    """Finding about several series, as verdict, headline and reason; empty where there is none."""
+    finding = getattr(report, "together", None)
+    if finding is None:
+        return ""
+    return words.plain(f"{finding.question} {finding.verdict}: {finding.headline}. {finding.reason}")

@@ -150,4 +150,6 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     lines = [*wrap(summary, width), *columns(rows, [name, 14, rest])]
     if card.left_out:
         lines += wrap(f"and {card.left_out:,} more; report.overview holds them all", width)
+    if card.together:
+        lines += ["", *wrap(card.together, width)]
     return "\n".join(lines)

@@ -8,6 +8,7 @@ from collections.abc import Callable
 from html.parser import HTMLParser
 from typing import Any
 
+import matplotlib.figure  # noqa: F401  (its own import warns in older releases, which is not what is asked here)
 import numpy as np
 import pandas as pd
 

@@ -79,9 +79,17 @@ def check(
     CheckError
         When nothing can be checked; a series that cannot be checked among others is reported as ``infeasible``.
     """
+    if isinstance(exclude, Iterator):
+        exclude = list(exclude)
+    if isinstance(repair, Iterator):
+        repair = list(repair)
     every = _read(frame, season, time, series, value, only, exclude, repair)
     settings = _settings(season, horizon, significance)
-    return Report(follow(_stream(every, settings, cache, pool), len(every), progress))
+    asked: dict[str, object] = {"season": settings.season, "horizon": settings.horizon, "significance": significance}
+    asked |= {"time": time, "series": series, "value": value, "exclude": exclude, "repair": repair}
+    usual = {"significance": 0.05, "repair": True}
+    options = {name: one for name, one in asked.items() if one is not None and one != usual.get(name)}
+    return Report(follow(_stream(every, settings, cache, pool), len(every), progress), options)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:

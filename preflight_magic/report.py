@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable, Iterable, Iterator
+from collections.abc import Hashable, Iterable, Iterator, Mapping
 from functools import cached_property
 from pathlib import Path
 from typing import Any
@@ -21,15 +21,23 @@ class Report:
     Parameters
     ----------
     reports : iterable of SeriesReport
+    options : Mapping, optional
+        Options of the check that a record keeps, to read the same data again.
     """
 
-    def __init__(self, reports: Iterable[SeriesReport]) -> None:
+    def __init__(self, reports: Iterable[SeriesReport], options: Mapping[str, object] | None = None) -> None:
         self._reports = {one.name: one for one in reports}
+        self._options = dict(options or {})
 
     @property
     def names(self) -> tuple[Hashable, ...]:
         """Names of the series."""
         return tuple(self._reports)
+
+    @property
+    def options(self) -> Mapping[str, object]:
+        """Options of the check that differ from their defaults, without those that only say how it runs."""
+        return dict(self._options)
 
     def __getitem__(self, name: Hashable) -> SeriesReport:
         try:
@@ -75,7 +83,19 @@ class Report:
         return proved_code(chosen)
 
     def save(self, path: str | Path) -> None:
-        """Write the report: ``.html`` for a page that opens offline, ``.py`` for the code of all series."""
+        """Write the report, whole or not at all.
+
+        Parameters
+        ----------
+        path : str or Path
+            ``.html`` for a page that opens offline, ``.json`` for a record that `preflight_magic.load` reads, ``.py``
+            for the code of all series.
+
+        Raises
+        ------
+        CheckError
+            For another suffix, or a folder that does not exist.
+        """
         save(self, Path(path))
 
     def __repr__(self) -> str:

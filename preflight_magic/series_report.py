@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Hashable, Mapping
+from collections.abc import Callable, Hashable, Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -13,6 +13,7 @@ from preflight_magic.generated import proved_code
 from preflight_magic.kernels.correlation import autocorrelation
 from preflight_magic.ladder import Climb, climb, ladder
 from preflight_magic.model import (
+    Calendar,
     CheckError,
     Difference,
     Finding,
@@ -26,6 +27,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
+from preflight_magic.record.fingerprint import Span, fingerprint, span_of
 from preflight_magic.reference import reference_forecast
 
 if TYPE_CHECKING:
@@ -40,10 +42,15 @@ class SeriesReport:
     source : TimeSeries
     settings : Settings
     found : Climb
+    why : str
+        Why `found` is of another plan than the recommended one, in a sentence; empty where a person chose it.
     """
 
-    def __init__(self, source: TimeSeries, settings: Settings, found: Climb) -> None:
-        self._source, self._settings, self._found = source, settings, found
+    has_data = True
+    """Whether the values are here; a record keeps none."""
+
+    def __init__(self, source: TimeSeries, settings: Settings, found: Climb, why: str = "") -> None:
+        self._source, self._settings, self._found, self._why = source, settings, found, why
 
     @property
     def name(self) -> Hashable:
@@ -54,6 +61,31 @@ class SeriesReport:
     def series(self) -> pd.Series:
         """Values from first to last observed, NaN where missing; shape (n,)."""
         return self._source.values.copy()
+
+    @property
+    def span(self) -> Span:
+        """First and last stamp, steps from one to the other, and missing values."""
+        return span_of(self._source.values)
+
+    @property
+    def fingerprint(self) -> str:
+        """Digest of the values, by which a record knows them again."""
+        return fingerprint(self._source.values)
+
+    @property
+    def index(self) -> pd.Index:
+        """Time index of the values."""
+        return self._source.values.index
+
+    @property
+    def calendar(self) -> Calendar | None:
+        """What the time index counts; None where it is not regular."""
+        return self._source.calendar
+
+    @property
+    def settings(self) -> Settings:
+        """What was asked for."""
+        return self._settings
 
     @property
     def findings(self) -> Mapping[str, Finding]:
@@ -76,6 +108,11 @@ class SeriesReport:
         return self._found.recommended
 
     @property
+    def why(self) -> str:
+        """Why the plan is not the recommended one, in a sentence; empty where it is, or where a person chose it."""
+        return self._why if self.plan != self.recommended else ""
+
+    @property
     def problem(self) -> str | None:
         """Why the series cannot be checked, or None."""
         return self._source.problem
@@ -93,7 +130,7 @@ class SeriesReport:
     @property
     def answer(self) -> str:
         """One sentence."""
-        return answer_of(self.verdict, self.plan, self.recommended, self.findings, self.problem)
+        return self.why or answer_of(self.verdict, self.plan, self.recommended, self.findings, self.problem)
 
     @property
     def transformed(self) -> pd.Series:
@@ -204,17 +241,21 @@ class SeriesReport:
         """Examine the series again with one more step, at its place in canonical order."""
         return self._again(lambda plan: plan.with_step(step))
 
-    def _again(self, change: Callable[[Plan], Plan]) -> SeriesReport:
+    def with_plan(self, steps: Iterable[Step], why: str = "") -> SeriesReport:
+        """Examine the series again with these steps in place of those of the plan; `why` is a sentence for readers."""
+        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)), why)
+
+    def _again(self, change: Callable[[Plan], Plan], why: str = "") -> SeriesReport:
         if self.problem is not None:
             raise CheckError(self.problem)
         found = climb(self._source, self._settings, change(self.plan), self._found)
-        return SeriesReport(self._source, self._settings, found)
+        return SeriesReport(self._source, self._settings, found, why)
 
     @property
     def horizon(self) -> int:
         """Steps ahead: as asked, or one season, at least 6 and at most a quarter of the data."""
         asked = self._settings.horizon
-        return asked if asked is not None else max(1, min(max(self.season[0], 6), len(self._source.values) // 4))
+        return asked if asked is not None else max(1, min(max(self.season[0], 6), self.span.n // 4))
 
     def __repr__(self) -> str:
         return f"<SeriesReport {self.name!r}: {self.verdict}, {self.problem or self.plan}>"

@@ -88,7 +88,9 @@ def check(
     asked: dict[str, object] = {"season": settings.season, "horizon": settings.horizon, "significance": significance}
     asked |= {"time": time, "series": series, "value": value, "exclude": exclude, "repair": repair}
     usual = {"significance": 0.05, "repair": True}
-    options = {name: one for name, one in asked.items() if one is not None and one != usual.get(name)}
+    options = {
+        name: one for name, one in asked.items() if one is not None and (name not in usual or one != usual[name])
+    }
     return Report(follow(_stream(every, settings, cache, pool), len(every), progress), options)
 
 

@@ -18,6 +18,7 @@ from preflight_magic.model import CheckError
 
 if TYPE_CHECKING:
     from preflight_magic import demo
+    from preflight_magic.against import PlansChanged
     from preflight_magic.batch import check, stream
     from preflight_magic.plan.plan import Plan
     from preflight_magic.record.read import load
@@ -25,13 +26,14 @@ if TYPE_CHECKING:
     from preflight_magic.series_report import SeriesReport
 
 __version__ = "0.1.0"
-__all__ = ["CheckError", "Plan", "Report", "SeriesReport", "check", "demo", "load", "stream"]
+__all__ = ["CheckError", "Plan", "PlansChanged", "Report", "SeriesReport", "check", "demo", "load", "stream"]
 
 # Found when first asked for, so that loading the extension costs next to nothing.
 _HOMES = {
     "check": "preflight_magic.batch",
     "stream": "preflight_magic.batch",
     "load": "preflight_magic.record.read",
+    "PlansChanged": "preflight_magic.against",
     "Plan": "preflight_magic.plan.plan",
     "Report": "preflight_magic.report",
     "SeriesReport": "preflight_magic.series_report",

@@ -9,7 +9,9 @@ from typing import Any
 
 import pandas as pd
 
+from preflight_magic.against import CLEAR, changes_of, kept_plans, refuse_changes, report_of
 from preflight_magic.generated import proved_code
+from preflight_magic.group import group_of, shared_steps
 from preflight_magic.overview import row_of
 from preflight_magic.saving import save
 from preflight_magic.series_report import SeriesReport
@@ -23,11 +25,19 @@ class Report:
     reports : iterable of SeriesReport
     options : Mapping, optional
         Options of the check that a record keeps, to read the same data again.
+    changes : DataFrame, optional
+        What changed since an earlier report whose plans were kept where they stand.
     """
 
-    def __init__(self, reports: Iterable[SeriesReport], options: Mapping[str, object] | None = None) -> None:
+    def __init__(
+        self,
+        reports: Iterable[SeriesReport],
+        options: Mapping[str, object] | None = None,
+        changes: pd.DataFrame | None = None,
+    ) -> None:
         self._reports = {one.name: one for one in reports}
         self._options = dict(options or {})
+        self.changes = changes
 
     @property
     def names(self) -> tuple[Hashable, ...]:
@@ -97,6 +107,82 @@ class Report:
             For another suffix, or a folder that does not exist.
         """
         save(self, Path(path))
+
+    def against(self, earlier: Report | str | Path, *, odds: float = CLEAR, strict: bool = False) -> pd.DataFrame:
+        """Compare with an earlier report: which of its plans still stand on these data, what moved, and since when.
+
+        A plan stands while the odds of the best plan against it are no longer than `odds`, so that plans do not go to
+        and fro with each new value.
+
+        Parameters
+        ----------
+        earlier : Report, or the path of a record
+        odds : float
+            Odds from which the evidence against an old plan is clear.
+        strict : bool
+            Raise `PlansChanged` where something changed.
+
+        Returns
+        -------
+        DataFrame
+            A row a series: ``status`` (``stands``, ``changed``, ``new``, ``gone``, ``infeasible``), ``plan`` (the
+            one to use: the earlier one while it stands), ``plan_before``, ``plan_now`` (recommended on these data
+            alone), ``odds`` (of that against the earlier one), ``since`` (first stamp with whose value the earlier
+            plan no longer stands), ``verdict_before``, ``verdict_now``, ``data`` (``same``, ``longer``, ``revised``,
+            ``shorter``, ``other span``) and ``note``.
+
+        Raises
+        ------
+        CheckError
+            Where this report comes from a record and has no data.
+        PlansChanged
+            A CheckError, only with `strict`.
+        """
+        changes = changes_of(self, report_of(earlier), odds)
+        if strict:
+            refuse_changes(changes)
+        return changes
+
+    def keeping(self, earlier: Report | str | Path, *, odds: float = CLEAR) -> Report:
+        """These data under the plans of an earlier report, as far as they stand.
+
+        Parameters
+        ----------
+        earlier : Report, or the path of a record
+        odds : float
+            As for `against`.
+
+        Returns
+        -------
+        Report
+            With the table of `against` as its `changes`.
+        """
+        before = report_of(earlier)
+        changes = changes_of(self, before, odds)
+        return Report(kept_plans(self, before, changes), self._options, changes)
+
+    def one_plan(self, names: Iterable[Hashable] | None = None) -> Report:
+        """Examine a group of like series under one plan: the one with the largest evidence summed over them.
+
+        Parameters
+        ----------
+        names : iterable of names, optional
+            The group; by default all series that could be checked.
+
+        Returns
+        -------
+        Report
+            The others stay as they are.
+
+        Raises
+        ------
+        CheckError
+            Where no plan is possible for all, or a series has no data.
+        """
+        members = group_of(self, names)
+        steps = shared_steps(members)
+        shared = {one.name: one.with_plan(steps, "group") for one in members}
+        return Report((shared.get(one.name, one) for one in self), self._options)
 
     def __repr__(self) -> str:
         counts = pd.Series([one.verdict for one in self]).value_counts(sort=False)

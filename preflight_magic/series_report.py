@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Iterable, Mapping
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Literal
 
 import numpy as np
 import pandas as pd
@@ -22,6 +22,7 @@ from preflight_magic.model import (
     RemovePattern,
     RemoveShift,
     RemoveTrend,
+    Stamp,
     Step,
     TimeSeries,
     Verdict,
@@ -30,9 +31,14 @@ from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.record.fingerprint import Span, fingerprint, span_of
 from preflight_magic.reference import reference_forecast
+from preflight_magic.standing import below, fails_since
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
+
+Chosen = Literal["person", "kept", "group"]
+MOST = 700.0
+"""Log odds whose exponential is still a number; longer odds are infinite."""
 
 
 class SeriesReport:
@@ -43,15 +49,16 @@ class SeriesReport:
     source : TimeSeries
     settings : Settings
     found : Climb
-    why : str
-        Why `found` is of another plan than the recommended one, in a sentence; empty where a person chose it.
+    chosen : {"person", "kept", "group"}
+        Where the plan of `found` comes from if it is not the recommended one: a person, an earlier report that was
+        compared, or a group of series that share one.
     """
 
     has_data = True
     """Whether the values are here; a record keeps none."""
 
-    def __init__(self, source: TimeSeries, settings: Settings, found: Climb, why: str = "") -> None:
-        self._source, self._settings, self._found, self._why = source, settings, found, why
+    def __init__(self, source: TimeSeries, settings: Settings, found: Climb, chosen: Chosen = "person") -> None:
+        self._source, self._settings, self._found, self._chosen = source, settings, found, chosen
 
     @property
     def name(self) -> Hashable:
@@ -109,9 +116,9 @@ class SeriesReport:
         return self._found.recommended
 
     @property
-    def why(self) -> str:
-        """Why the plan is not the recommended one, in a sentence; empty where it is, or where a person chose it."""
-        return self._why if self.plan != self.recommended else ""
+    def chosen(self) -> Literal["recommended", "person", "kept", "group"]:
+        """Where the plan comes from: the rungs, a person, an earlier report, or a group that shares one."""
+        return self._chosen if self.plan != self.recommended or self._chosen == "group" else "recommended"
 
     @property
     def problem(self) -> str | None:
@@ -131,7 +138,7 @@ class SeriesReport:
     @property
     def answer(self) -> str:
         """One sentence."""
-        return self.why or answer_of(self.verdict, self.plan, self.recommended, self.findings, self.problem)
+        return answer_of(self.verdict, self.plan, self.recommended, self.findings, self.problem, self.chosen)
 
     @property
     def transformed(self) -> pd.Series:
@@ -243,15 +250,66 @@ class SeriesReport:
         """Examine the series again with one more step, at its place in canonical order."""
         return self._again(lambda plan: plan.with_step(step))
 
-    def with_plan(self, steps: Iterable[Step], why: str = "") -> SeriesReport:
-        """Examine the series again with these steps in place of those of the plan; `why` is a sentence for readers."""
-        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)), why)
+    def with_plan(self, steps: Iterable[Step], chosen: Chosen = "person") -> SeriesReport:
+        """Examine the series again with these steps in place of those of the plan; repairs stay.
 
-    def _again(self, change: Callable[[Plan], Plan], why: str = "") -> SeriesReport:
+        Parameters
+        ----------
+        steps : iterable of Step
+        chosen : {"person", "kept", "group"}
+            Where they come from, if they are not the recommended ones.
+
+        Returns
+        -------
+        SeriesReport
+        """
+        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)), chosen)
+
+    def _again(self, change: Callable[[Plan], Plan], chosen: Chosen = "person") -> SeriesReport:
         if self.problem is not None:
             raise CheckError(self.problem)
         found = climb(self._source, self._settings, change(self.plan), self._found)
-        return SeriesReport(self._source, self._settings, found, why)
+        return SeriesReport(self._source, self._settings, found, chosen)
+
+    def odds_against(self, plan: Plan) -> float:
+        """Odds of the recommended plan against another one on these data.
+
+        Parameters
+        ----------
+        plan : Plan
+
+        Returns
+        -------
+        float
+            From one up; infinite for a plan that the data do not allow, NaN for one that the comparison of plans does
+            not know, such as one with a power.
+
+        Raises
+        ------
+        CheckError
+            For a series that could not be checked.
+        """
+        if self.problem is not None:
+            raise CheckError(self.problem)
+        found = below(self._source, self._found, self._settings.thresholds, plan)
+        return float("inf") if found > MOST else float(np.exp(found))
+
+    def fails_since(self, plan: Plan, start: int, odds: float) -> Stamp:
+        """First stamp with whose value the odds against a plan passed some odds.
+
+        Parameters
+        ----------
+        plan : Plan
+            Against which the odds on the whole series are longer.
+        start : int
+            Number of steps on which they were not yet.
+        odds : float
+
+        Returns
+        -------
+        Period, Timestamp or int
+        """
+        return fails_since(self._source, self._settings, plan, start, float(np.log(odds)))
 
     @property
     def horizon(self) -> int:

@@ -41,7 +41,7 @@ class LoadedSeries(SeriesReport):
         name: Hashable,
         problem: str | None,
         found: Climb,
-        why: str,
+        chosen: Any,
         span: Span,
         fingerprint: str,
         calendar: Calendar | None,
@@ -51,7 +51,7 @@ class LoadedSeries(SeriesReport):
     ) -> None:
         nothing = pd.Series(np.empty(0), index=_index(span, calendar)[:0], dtype=float)
         source = TimeSeries(name, nothing, calendar, season, found.plan.repairs, problem)
-        super().__init__(source, settings, found, why)
+        super().__init__(source, settings, found, chosen)
         self._span, self._fingerprint, self._alternatives = span, fingerprint, alternatives
 
     @property
@@ -88,6 +88,8 @@ class LoadedSeries(SeriesReport):
     leave_out: Any = _refused("leave_out")
     put_in: Any = _refused("put_in")
     with_plan: Any = _refused("with_plan")
+    odds_against: Any = _refused("odds_against")
+    fails_since: Any = _refused("fails_since")
 
 
 class LoadedReport(Report):
@@ -192,6 +194,6 @@ def _compare(record: SeriesReport, source: TimeSeries) -> None:
 
 def _planned(now: SeriesReport, record: SeriesReport) -> SeriesReport:
     steps = steps_on(record.plan.steps, now.index)
-    if now.problem is not None or now.plan.steps == steps:
+    if now.problem is not None or (now.plan.steps == steps and record.chosen != "group"):
         return now
-    return now.with_plan(steps, record.why)
+    return now.with_plan(steps, "kept" if record.chosen == "recommended" else record.chosen)

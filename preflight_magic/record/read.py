@@ -25,8 +25,8 @@ OPTIONS = ("season", "horizon", "time", "series", "value", "significance", "excl
 """Options of a check that a record may hold."""
 _VERDICTS = get_args(Verdict)
 _FIELDS = (
-    "name", "problem", "verdict", "plan", "recommended", "why", "span", "fingerprint", "calendar", "season", "settings",
-    "alternatives", "findings",
+    "name", "problem", "verdict", "plan", "recommended", "chosen", "span", "fingerprint", "calendar", "season",
+    "settings", "alternatives", "findings",
 )  # fmt: skip
 
 
@@ -148,11 +148,14 @@ def _series(node: Node) -> LoadedSeries:
         raise at["findings"].refuse(f"lack {' or '.join(READING)}")
     if at["verdict"].one_of(_VERDICTS) != climb.verdict or (problem is not None and climb.verdict != "infeasible"):
         raise at["verdict"].refuse(f"is {at['verdict'].text()}, which does not follow from the findings")
+    chosen = at["chosen"].one_of(("recommended", "person", "kept", "group"))
+    if chosen != "group" and (chosen == "recommended") != (climb.plan == climb.recommended):
+        raise at["chosen"].refuse(f"is {chosen!r}, which does not follow from the plans")
     return LoadedSeries(
         name=at["name"].label(),
         problem=problem,
         found=climb,
-        why=at["why"].text(),
+        chosen=cast(Any, chosen),
         span=_span(at["span"]),
         fingerprint=at["fingerprint"].text(),
         calendar=_calendar(at["calendar"]),

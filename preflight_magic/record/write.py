@@ -68,7 +68,7 @@ def _line(one: SeriesReport) -> str:
             "verdict": one.verdict,
             "plan": plan_object(one.plan),
             "recommended": plan_object(one.recommended),
-            "why": one.why,
+            "chosen": one.chosen,
             "span": {field.name: encode(getattr(span, field.name)) for field in fields(span)},
             "fingerprint": one.fingerprint,
             "calendar": None

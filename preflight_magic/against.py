@@ -13,6 +13,7 @@ from preflight_magic.model import CheckError, Stamp
 from preflight_magic.plan.plan import Plan
 from preflight_magic.record.fingerprint import Span, fingerprint, position_of, steps_on
 from preflight_magic.stamps import stamp_text
+from preflight_magic.standing import fails_since
 
 if TYPE_CHECKING:
     from preflight_magic.report import Report
@@ -73,12 +74,13 @@ def changes_of(now: Report, earlier: Report, odds: float = CLEAR) -> pd.DataFram
     known = set(earlier.names)
     rows = [_row(one, earlier[one.name], odds) if one.name in known else _new(one) for one in now]
     here = set(now.names)
-    lost = [name for name in earlier.names if name not in here]
+    # what was not asked for is not gone
+    lost = [] if "only" in now.options else [name for name in earlier.names if name not in here]
     rows += [_gone(earlier[name]) for name in lost]
     index = pd.Index([*now.names, *lost], name="series", tupleize_cols=False)
-    frame = pd.DataFrame(rows, index=index, columns=list(COLUMNS))
-    kinds: dict[Hashable, Any] = dict.fromkeys(COLUMNS, "string") | {"odds": "Float64", "since": object}
-    return frame.astype(kinds)
+    # column by column, so that pandas guesses no type from the stamps
+    kinds = dict.fromkeys(COLUMNS, "string") | {"odds": "Float64", "since": "object"}
+    return pd.DataFrame({key: pd.Series([row.get(key) for row in rows], index, kind) for key, kind in kinds.items()})
 
 
 def moved(changes: pd.DataFrame) -> tuple[Hashable, ...]:
@@ -109,19 +111,22 @@ def kept_plans(now: Report, earlier: Report, changes: pd.DataFrame) -> list[Seri
     changes : DataFrame
         From `changes_of`.
     """
-    reports = []
-    for one, plan, status in zip(now, changes["plan"], changes["status"], strict=False):
-        before = earlier[one.name] if one.name in earlier.names else None
-        if before is None or one.problem is not None or before.problem is not None:
-            reports.append(one)
-        elif _is_own_choice(before) or (status == "stands" and str(one.plan) != plan):
-            chosen = before.chosen if before.chosen in ("person", "group") else "kept"
-            reports.append(one.with_plan(steps_on(before.plan.steps, one.index), chosen))
-        elif one.plan != one.recommended and str(one.plan) != plan:
-            reports.append(one.with_plan(one.recommended.steps))
-        else:
-            reports.append(one)
-    return reports
+    known = set(earlier.names)
+    return [
+        _kept(one, earlier[one.name], plan) if one.name in known else one
+        for one, plan in zip(now, changes["plan"], strict=False)
+    ]
+
+
+def _kept(now: SeriesReport, before: SeriesReport, plan: object) -> SeriesReport:
+    if now.problem is not None or before.problem is not None:
+        return now
+    if plan != str(before.plan):
+        return now if now.plan == now.recommended else now.with_plan(now.recommended.steps)
+    steps = steps_on(before.plan.steps, now.index)
+    if now.plan.steps == steps and before.chosen != "group":
+        return now
+    return now.with_plan(steps, "kept" if before.chosen == "recommended" else before.chosen)
 
 
 # ---------------------------------------------------------------------------------------------- one series
@@ -143,11 +148,12 @@ def _row(now: SeriesReport, before: SeriesReport, margin: float) -> dict[str, ob
     odds = now.odds_against(old)
     stands = odds <= margin
     row |= {"status": "stands" if stands else "changed", "odds": None if math.isnan(odds) else odds}
-    row["plan"] = str(before.plan if own else old if stands else now.recommended)
+    possible = own and not math.isinf(now.odds_against(before.plan))
+    row["plan"] = str(before.plan if possible else old if stands else now.recommended)
     since = None if stands else _since(now, before, old, margin)
     row["since"] = since
     notes = [_lean(now, old, odds, margin)] if stands else [_against(now, old, odds, since)]
-    if own:
+    if possible:
         whose = "a person's choice" if before.chosen == "person" else "the plan of a group"
         notes.append(f"The plan {str(before.plan)!r} is {whose} and stays.")
     if data == "revised":
@@ -187,7 +193,7 @@ def _against(now: SeriesReport, old: Plan, odds: float, since: Stamp | None) -> 
         told = f"{str(old)!r} cannot be on these data; {best!r} is recommended"
     else:
         told = f"The odds are {_to_one(odds)} for {best!r} against {str(old)!r}"
-    kind = now.calendar.kind if now.calendar else None
+    kind = now.source.calendar.kind if now.source.calendar else None
     return f"{told}{'' if since is None else f', since {stamp_text(since, kind)}'}."
 
 
@@ -200,7 +206,7 @@ def _since(now: SeriesReport, before: SeriesReport, old: Plan, margin: float) ->
     last = None if before.span.last is None else position_of(before.span.last, now.index)
     if last is None or last + 1 >= now.span.n:
         return None
-    return now.fails_since(old, last + 1, margin)
+    return fails_since(now.source, now.settings, old, last + 1, math.log(margin))
 
 
 def _data(then: Span, digest: str, now: SeriesReport) -> str | None:

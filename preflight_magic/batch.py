@@ -88,6 +88,7 @@ def check(
     asked: dict[str, object] = {"season": settings.season, "horizon": horizon, "significance": significance}
     asked |= {"time": time, "series": series, "value": value, "exclude": spans or None, "repair": repair}
     usual = {"significance": 0.05, "repair": True}
+    asked["only"] = None if only is None else tuple(one.name for one in every)
     options = {key: one for key, one in asked.items() if one is not None and (key not in usual or one != usual[key])}
     return Report(follow(_stream(every, settings, cache, pool), len(every), progress), options)
 

@@ -189,6 +189,8 @@ class Report:
         return f"<Report of {len(self)} series: {', '.join(f'{n} {verdict}' for verdict, n in counts.items())}>"
 
     def _ipython_display_(self) -> None:
-        from preflight_magic.present.widgets import show
+        from preflight_magic.present.widgets import show, show_changes
 
         show(self)
+        if self.changes is not None:
+            show_changes(self.changes)

@@ -13,7 +13,6 @@ from preflight_magic.generated import proved_code
 from preflight_magic.kernels.correlation import autocorrelation
 from preflight_magic.ladder import Climb, climb, ladder
 from preflight_magic.model import (
-    Calendar,
     CheckError,
     Difference,
     Finding,
@@ -22,7 +21,6 @@ from preflight_magic.model import (
     RemovePattern,
     RemoveShift,
     RemoveTrend,
-    Stamp,
     Step,
     TimeSeries,
     Verdict,
@@ -31,14 +29,12 @@ from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.record.fingerprint import Span, fingerprint, span_of
 from preflight_magic.reference import reference_forecast
-from preflight_magic.standing import below, fails_since
+from preflight_magic.standing import odds_against
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
 Chosen = Literal["person", "kept", "group"]
-MOST = 700.0
-"""Log odds whose exponential is still a number; longer odds are infinite."""
 
 
 class SeriesReport:
@@ -86,9 +82,9 @@ class SeriesReport:
         return self._source.values.index
 
     @property
-    def calendar(self) -> Calendar | None:
-        """What the time index counts; None where it is not regular."""
-        return self._source.calendar
+    def source(self) -> TimeSeries:
+        """The series as it was read, with its calendar; a record gives it without values."""
+        return self._source
 
     @property
     def settings(self) -> Settings:
@@ -281,35 +277,12 @@ class SeriesReport:
         Returns
         -------
         float
-            From one up; infinite for a plan that the data do not allow, NaN for one that the comparison of plans does
-            not know, such as one with a power.
-
-        Raises
-        ------
-        CheckError
-            For a series that could not be checked.
+            From one up; infinite for a plan that the data do not allow, NaN for one that is not among those compared,
+            such as one with a power.
         """
         if self.problem is not None:
             raise CheckError(self.problem)
-        found = below(self._source, self._found, self._settings.thresholds, plan)
-        return float("inf") if found > MOST else float(np.exp(found))
-
-    def fails_since(self, plan: Plan, start: int, odds: float) -> Stamp:
-        """First stamp with whose value the odds against a plan passed some odds.
-
-        Parameters
-        ----------
-        plan : Plan
-            Against which the odds on the whole series are longer.
-        start : int
-            Number of steps on which they were not yet.
-        odds : float
-
-        Returns
-        -------
-        Period, Timestamp or int
-        """
-        return fails_since(self._source, self._settings, plan, start, float(np.log(odds)))
+        return odds_against(self._source, self._found, self._settings.thresholds, plan)
 
     @property
     def horizon(self) -> int:

@@ -34,6 +34,16 @@ ENOUGH = math.log(1e6)
 """Log odds beyond which nothing more is computed."""
 
 
+_MOST = 700.0
+"""Log odds whose exponential is still a number; longer odds are infinite."""
+
+
+def odds_against(source: TimeSeries, found: Climb, thresholds: Thresholds, plan: Plan) -> float:
+    """Odds of the recommended plan against another one, from the logarithm that `below` gives."""
+    log_odds = below(source, found, thresholds, plan)
+    return math.inf if log_odds > _MOST else math.exp(log_odds)
+
+
 def below(source: TimeSeries, found: Climb, thresholds: Thresholds, plan: Plan) -> float:
     """Log odds of the recommended plan against another one.
 

@@ -67,7 +67,7 @@ class LoadedSeries(SeriesReport):
     @property
     def index(self) -> pd.Index:
         """The first two stamps of the time index, which tell its kind; the others are not needed."""
-        return _index(self._span, self.calendar)
+        return _index(self._span, self._source.calendar)
 
     @property
     def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
@@ -89,7 +89,6 @@ class LoadedSeries(SeriesReport):
     put_in: Any = _refused("put_in")
     with_plan: Any = _refused("with_plan")
     odds_against: Any = _refused("odds_against")
-    fails_since: Any = _refused("fails_since")
 
 
 class LoadedReport(Report):
@@ -134,7 +133,7 @@ class LoadedReport(Report):
         from preflight_magic.intake import read
 
         reading = ("season", "time", "series", "value", "exclude", "repair")
-        given: dict[str, Any] = dict(self.options)
+        given: dict[str, Any] = {key: one for key, one in self.options.items() if key != "only"}
         every = {one.name: one for one in read(frame, **{key: given[key] for key in reading if key in given})}
         for one in self:
             if one.name not in every:

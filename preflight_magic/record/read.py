@@ -21,7 +21,7 @@ from preflight_magic.record.write import FORMAT, VERSION
 
 LARGEST = 400_000_000
 """Bytes; ten thousand series take less than half of it."""
-OPTIONS = ("season", "horizon", "time", "series", "value", "significance", "exclude", "repair", "target")
+OPTIONS = ("season", "horizon", "time", "series", "value", "significance", "only", "exclude", "repair", "target")
 """Options of a check that a record may hold."""
 _VERDICTS = get_args(Verdict)
 _FIELDS = (

@@ -60,7 +60,7 @@ def _line(one: SeriesReport) -> str:
         raise CheckError(
             f"column {one.name!r}: its name is {error}, which a record cannot hold; rename it to text."
         ) from None
-    span, calendar, settings = one.span, one.calendar, one.settings
+    span, calendar, settings = one.span, one.source.calendar, one.settings
     return _json(
         {
             "name": name,

@@ -188,9 +188,13 @@ class Report:
         counts = pd.Series([one.verdict for one in self]).value_counts(sort=False)
         return f"<Report of {len(self)} series: {', '.join(f'{n} {verdict}' for verdict, n in counts.items())}>"
 
+    def _shown(self) -> Report:
+        """What cards are made of."""
+        return self
+
     def _ipython_display_(self) -> None:
         from preflight_magic.present.widgets import show, show_changes
 
-        show(self)
+        show(self._shown())
         if self.changes is not None:
             show_changes(self.changes)

@@ -31,7 +31,7 @@ def save(report: Report, path: Path) -> None:
     if path.suffix == ".html":
         from preflight_magic.present.html import page
 
-        text = page(report)
+        text = page(report._shown())
     elif path.suffix == ".py":
         text = report.code()
     elif path.suffix == ".json":

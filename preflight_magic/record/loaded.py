@@ -90,6 +90,40 @@ class LoadedSeries(SeriesReport):
     with_plan: Any = _refused("with_plan")
     odds_against: Any = _refused("odds_against")
 
+    def _ipython_display_(self) -> None:
+        from preflight_magic.present.widgets import show
+
+        show(_ShownSeries(self))
+
+
+class _ShownSeries(LoadedSeries):
+    """A loaded series as cards see it: empty data that tell their span."""
+
+    def __init__(self, one: LoadedSeries) -> None:
+        vars(self).update(vars(one))
+
+    @property
+    def series(self) -> pd.Series:
+        """No values, with what is known of them."""
+        from preflight_magic.present import words
+
+        nothing = self._source.values.copy()
+        span, noun = self._span, self.noun
+        if span.first is not None:
+            ends = f"{words.stamp(span.first, noun)} to {words.stamp(span.last, noun)}"
+            missing = f", {span.missing:,} missing" if span.missing else ""
+            nothing.attrs["span"] = f"{words.count_of(span.n, noun)}, {ends}{missing}; the data are not in this record"
+        return nothing
+
+    @property
+    def transformed(self) -> pd.Series:
+        """No values."""
+        return self._source.values.copy()
+
+    def correlograms(self, nlags: int) -> tuple[np.ndarray, np.ndarray, float]:
+        """No autocorrelations."""
+        return np.empty(0), np.empty(0), 0.0
+
 
 class LoadedReport(Report):
     """Report from a record, without the data.
@@ -141,6 +175,9 @@ class LoadedReport(Report):
             _compare(one, every[one.name])
         found = check(frame, only=list(self.names), pool=pool, progress=progress, **given)
         return Report((_planned(found[one.name], one) for one in self), self.options)
+
+    def _shown(self) -> Report:
+        return Report(_ShownSeries(one) for one in self if isinstance(one, LoadedSeries))
 
     def __repr__(self) -> str:
         return f"{super().__repr__()[:-1]}, from a record without data>"

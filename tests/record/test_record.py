@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import pickle
+from html import escape
 from typing import Any
 
 import numpy as np
@@ -11,6 +12,7 @@ import pandas as pd
 import pytest
 
 import preflight_magic as pf
+from preflight_magic.present import html, make_cards, text
 from preflight_magic.record.loaded import LoadedReport, LoadedSeries
 from tests.small_table import BAD, small_table
 
@@ -156,6 +158,19 @@ def test_loaded_reports_travel(loaded):
 def test_one_line_repr(loaded):
     assert repr(loaded).endswith("from a record without data>")
     assert "\n" not in repr(loaded) + repr(loaded["cargo"])
+
+
+def test_a_loaded_report_shows_itself_without_its_data(report, loaded, tmp_path, capsys):
+    loaded._ipython_display_()
+    loaded["cargo"]._ipython_display_()
+    out = capsys.readouterr().out
+    assert "30 years, 1990 to 2019; the data are not in this record" in " ".join(out.split())
+    loaded.save(tmp_path / "a.html")
+    page = (tmp_path / "a.html").read_text(encoding="utf-8")
+    for one in report:
+        for finding in one.findings.values():
+            assert escape(finding.headline[1:]) in page
+    assert "which is a fault of this program" not in page
 
 
 # ------------------------------------------------------------------------------------------------------ attach
@@ -355,6 +370,12 @@ def used(loaded: LoadedReport) -> None:
     """Everything that shows a loaded report."""
     repr(loaded)
     assert len(loaded.overview) == len(loaded)
+    shown = loaded._shown()
+    page = html.page(shown)
+    assert "<script>alert(1)" not in page
+    text.overview_text(make_cards.overview(shown))
+    for one in shown:
+        text.card_text(make_cards.card(one))
     for one in loaded:
         for ask in (lambda one=one: one.answer, one.code, lambda one=one: repr(one), lambda one=one: one.horizon):
             try:
@@ -365,11 +386,11 @@ def used(loaded: LoadedReport) -> None:
 
 def test_random_damage_gives_check_errors_and_nothing_else(report, tmp_path, monkeypatch):
     monkeypatch.chdir(tmp_path)
-    text = text_of(report, tmp_path)
+    record = text_of(report, tmp_path)
     refusals, seed = 0, 4711
     rng = np.random.default_rng(seed)
     for _ in range(250):
-        told = json.loads(text)
+        told = json.loads(record)
         for _ in range(rng.integers(1, 4)):
             mutated(told, rng)
         (tmp_path / "b.json").write_text(json.dumps(told), encoding="utf-8")

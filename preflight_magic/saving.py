@@ -55,7 +55,12 @@ def write_whole(path: Path, text: str) -> None:
     beside = path.parent / f".preflight-{secrets.token_hex(8)}"
     try:
         handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666 if mode is None else 0o600)
-        with os.fdopen(handle, "w", encoding="utf-8", errors="replace", newline="\n") as file:
+        try:
+            file = os.fdopen(handle, "w", encoding="utf-8", errors="replace", newline="\n")
+        except BaseException:
+            os.close(handle)
+            raise
+        with file:
             file.write(text)
             file.flush()
             os.fsync(handle)

@@ -389,7 +389,7 @@ def test_random_damage_gives_check_errors_and_nothing_else(report, tmp_path, mon
     record = text_of(report, tmp_path)
     refusals, seed = 0, 4711
     rng = np.random.default_rng(seed)
-    for _ in range(250):
+    for _ in range(150):
         told = json.loads(record)
         for _ in range(rng.integers(1, 4)):
             mutated(told, rng)
@@ -398,14 +398,14 @@ def test_random_damage_gives_check_errors_and_nothing_else(report, tmp_path, mon
             used(pf.load(tmp_path / "b.json"))
         except pf.CheckError:
             refusals += 1
-    assert refusals > 60
+    assert refusals > 40
     assert not (tmp_path / "owned").exists()
 
 
 def test_a_record_cut_or_with_flipped_bytes_is_refused_or_read(report, tmp_path):
     data = bytearray(text_of(report, tmp_path).encode())
     rng = np.random.default_rng(99)
-    for i in range(120):
+    for i in range(80):
         damaged = bytearray(data[: rng.integers(len(data))] if i % 2 else data)
         for at in rng.integers(len(damaged), size=3) if i % 2 == 0 else ():
             damaged[at] = rng.integers(256)

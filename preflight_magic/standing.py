@@ -110,15 +110,15 @@ def fails_since(source: TimeSeries, settings: Settings, plan: Plan, start: int, 
 
 
 def _below(subject: TimeSeries, comparison: Comparison, thresholds: Thresholds, steps: tuple[Step, ...]) -> float:
-    form = _form(steps, comparison.period, subject)
+    form = _form(steps, subject)
     if form is None:
         return math.nan
     values = subject.values.to_numpy(dtype=float)
-    return below_best(values, comparison, prior_of(thresholds), form, ENOUGH)
+    return below_best(values, subject.season, comparison, prior_of(thresholds), form, ENOUGH)
 
 
 def _compared(subject: TimeSeries, thresholds: Thresholds) -> Comparison | None:
-    return compare(subject.values.to_numpy(dtype=float), subject.season[0], prior_of(thresholds))
+    return compare(subject.values.to_numpy(dtype=float), subject.season[0], prior_of(thresholds), subject.season[1:])
 
 
 def _applies(source: TimeSeries, steps: tuple[Step, ...]) -> bool:
@@ -147,11 +147,12 @@ def _per_day_odds(
     return abs(cast(float, gains[0]) - thresholds.calendar_margin) / 2.0
 
 
-def _form(steps: Iterable[Step], period: int, subject: TimeSeries) -> PlanForm | None:
+def _form(steps: Iterable[Step], subject: TimeSeries) -> PlanForm | None:
     """Plan as the comparison knows plans; None for one that it does not know."""
     log = trend = pattern = False
     d = D = 0
     shift: int | None = None
+    period = 1
     for step in steps:
         match step:
             case PerDay():
@@ -160,12 +161,12 @@ def _form(steps: Iterable[Step], period: int, subject: TimeSeries) -> PlanForm |
                 log = True
             case Difference(lag=1):
                 d += 1
-            case Difference(lag=lag) if lag == period:
-                D += 1
+            case Difference(lag=lag) if lag in subject.season:
+                D, period = D + 1, lag
             case RemoveTrend():
                 trend = True
-            case RemovePattern(period=length) if length == period:
-                pattern = True
+            case RemovePattern(period=length) if length in subject.season and period in (1, length):
+                pattern, period = True, length
             case RemoveShift(at=at) if shift is None:
                 shift = position_of(at, subject.values.index)
                 if shift is None:
@@ -173,4 +174,4 @@ def _form(steps: Iterable[Step], period: int, subject: TimeSeries) -> PlanForm |
             case _:
                 return None
     known = d + D <= 2 and D <= 1 and not (pattern and D) and not ((trend or shift is not None) and d + D)
-    return PlanForm(log, d, D, trend, pattern, shift) if known else None
+    return PlanForm(log, d, D, trend, pattern, shift, period) if known else None

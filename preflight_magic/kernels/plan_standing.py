@@ -31,6 +31,8 @@ class PlanForm:
         A fixed seasonal pattern removed.
     shift : int or None
         First position of the new level.
+    period : int
+        Of the pattern or the seasonal difference; 1 for a plan without a season.
     """
 
     log: bool
@@ -39,24 +41,24 @@ class PlanForm:
     trend: bool
     pattern: bool
     shift: int | None
-
-    @property
-    def seasonal(self) -> bool:
-        """Whether the plan takes the series to have a season."""
-        return self.pattern or self.D > 0
+    period: int
 
 
-def below_best(values: Array, comparison: Comparison, prior: PlanPrior, form: PlanForm, enough: float) -> float:
+def below_best(
+    values: Array, periods: tuple[int, ...], comparison: Comparison, prior: PlanPrior, form: PlanForm, enough: float
+) -> float:
     """Log odds of the best plan against a given one.
 
     Within one comparison this is the difference of the evidence. Where the plan differs from the comparison in the
-    log or in there being a season, which are decided before it, the distance of their statistics from their margins is
-    added, and the rest is compared with the log and the season of the plan.
+    log or in its season, which are decided before it, the distance of their statistics from their margins is added,
+    and the rest is compared with the log and the season of the plan.
 
     Parameters
     ----------
     values : ndarray, shape (n,)
         NaN where missing; what `comparison` compared.
+    periods : tuple of int
+        Seasonal periods considered, shortest first.
     comparison : Comparison
     prior : PlanPrior
     form : PlanForm
@@ -69,17 +71,20 @@ def below_best(values: Array, comparison: Comparison, prior: PlanPrior, form: Pl
         At least zero; infinite where the plan cannot be, NaN where it was not compared.
     """
     before = 0.0
+    season = comparison.period if _has_season(comparison, prior) else 1
     if form.log != comparison.log:
         before += _finite(abs(comparison.log_gain - prior.log_margin) / 2.0)
-    found = _has_season(comparison, prior)
-    if form.seasonal != found:
+    if form.period != season:
+        if form.period > 1 and form.period != periods[0]:
+            return float("nan")
         before += _season_odds(comparison, prior)
     if before > enough:
         return before
-    if form.log != comparison.log or form.seasonal != found:
-        forced = replace(prior, log_margin=-np.inf if form.log else np.inf, season_p=2.0 if form.seasonal else -1.0)
-        other = _compared(np.ascontiguousarray(values, dtype=float).tobytes(), comparison.period, forced)
-        if other is None or other.log != form.log or _has_season(other, forced) != form.seasonal:
+    if form.log != comparison.log or form.period != season:
+        forced = replace(prior, log_margin=-np.inf if form.log else np.inf, season_p=2.0 if form.period > 1 else -1.0)
+        longer = (form.period,) if form.period > periods[0] else ()
+        other = _compared(np.ascontiguousarray(values, dtype=float).tobytes(), periods[0], forced, longer)
+        if other is None or other.log != form.log or form.period not in (1, other.period):
             return float("inf")
         comparison = other
     same = [one for one in comparison.candidates if _is(one, form, comparison, values)]
@@ -89,9 +94,9 @@ def below_best(values: Array, comparison: Comparison, prior: PlanPrior, form: Pl
 
 
 @lru_cache(maxsize=16)
-def _compared(values: bytes, period: int, prior: PlanPrior) -> Comparison | None:
+def _compared(values: bytes, period: int, prior: PlanPrior, longer: tuple[int, ...]) -> Comparison | None:
     """Comparison under a prior that forces the log and the season; several plans of a series ask for the same."""
-    return compare(np.frombuffer(values), period, prior)
+    return compare(np.frombuffer(values), period, prior, longer)
 
 
 def _finite(value: float) -> float:
@@ -100,7 +105,7 @@ def _finite(value: float) -> float:
 
 def _has_season(comparison: Comparison, prior: PlanPrior) -> bool:
     presence = comparison.presence
-    return presence is not None and presence.p_value < prior.season_p
+    return presence is not None and presence.standardised < prior.season_p
 
 
 def _season_odds(comparison: Comparison, prior: PlanPrior) -> float:
@@ -108,7 +113,7 @@ def _season_odds(comparison: Comparison, prior: PlanPrior) -> float:
     presence = comparison.presence
     if presence is None or not np.isfinite(presence.p_value):
         return float("inf")
-    at, bound = (float(chdtri(presence.numerator, p)) for p in (presence.p_value, prior.season_p))
+    at, bound = (float(chdtri(presence.numerator, p)) for p in (presence.standardised, prior.season_p))
     return _finite(abs(at - bound) / 2.0)
 
 

@@ -45,25 +45,25 @@ def _airline(rng: np.random.Generator, n: int) -> np.ndarray:
 
 
 PROCESSES: dict[str, tuple[Draw, PlanForm]] = {
-    "returns to a mean, root 0.8": (lambda r, n: _ar(r, n, 0.8), PlanForm(False, 0, 0, False, False, None)),
-    "random walk": (lambda r, n: np.cumsum(r.standard_normal(n)), PlanForm(False, 1, 0, False, False, None)),
+    "returns to a mean, root 0.8": (lambda r, n: _ar(r, n, 0.8), PlanForm(False, 0, 0, False, False, None, 1)),
+    "random walk": (lambda r, n: np.cumsum(r.standard_normal(n)), PlanForm(False, 1, 0, False, False, None, 1)),
     "random walk with drift": (
-        lambda r, n: np.cumsum(0.3 + r.standard_normal(n)), PlanForm(False, 1, 0, False, False, None),
+        lambda r, n: np.cumsum(0.3 + r.standard_normal(n)), PlanForm(False, 1, 0, False, False, None, 1),
     ),
     "line and root 0.6": (
-        lambda r, n: 0.08 * np.arange(n) + _ar(r, n, 0.6), PlanForm(False, 0, 0, True, False, None),
+        lambda r, n: 0.08 * np.arange(n) + _ar(r, n, 0.6), PlanForm(False, 0, 0, True, False, None, 1),
     ),
     "fixed pattern and root 0.6": (
-        lambda r, n: _pattern(n, 1.2) + _ar(r, n, 0.6), PlanForm(False, 0, 0, False, True, None),
+        lambda r, n: _pattern(n, 1.2) + _ar(r, n, 0.6), PlanForm(False, 0, 0, False, True, None, 12),
     ),
-    "weak pattern": (lambda r, n: _pattern(n, 0.45) + _ar(r, n, 0.3), PlanForm(False, 0, 0, False, True, None)),
-    "airline model": (_airline, PlanForm(False, 1, 1, False, False, None)),
+    "weak pattern": (lambda r, n: _pattern(n, 0.45) + _ar(r, n, 0.3), PlanForm(False, 0, 0, False, True, None, 12)),
+    "airline model": (_airline, PlanForm(False, 1, 1, False, False, None, 12)),
     "log of a random walk": (
         lambda r, n: np.exp(5 + np.cumsum(0.01 + 0.06 * r.standard_normal(n))),
-        PlanForm(True, 1, 0, False, False, None),
+        PlanForm(True, 1, 0, False, False, None, 1),
     ),
     "level shift": (
-        lambda r, n: 3.0 * (np.arange(n) >= 40) + _ar(r, n, 0.3), PlanForm(False, 0, 0, False, False, 40),
+        lambda r, n: 3.0 * (np.arange(n) >= 40) + _ar(r, n, 0.3), PlanForm(False, 0, 0, False, False, 40, 1),
     ),
 }  # fmt: skip
 
@@ -72,7 +72,8 @@ def form_of(comparison: Comparison) -> PlanForm:
     """The leading plan."""
     best = comparison.best
     free = best.d + best.D == 0
-    return PlanForm(comparison.log, best.d, best.D, best.trend and free, best.pattern, best.shift)
+    period = comparison.period if best.pattern or best.D else 1
+    return PlanForm(comparison.log, best.d, best.D, best.trend and free, best.pattern, best.shift, period)
 
 
 def alike(one: PlanForm, other: PlanForm) -> bool:
@@ -96,7 +97,7 @@ def follow(y: np.ndarray, truth: PlanForm) -> dict[float, tuple[int, int]]:
         best = form_of(comparison)
         for odds in ODDS:
             old = force.setdefault(odds, best)
-            against = below_best(y[:n], comparison, prior, old, 20.0)
+            against = below_best(y[:n], (12,), comparison, prior, old, 20.0)
             keep = alike(old, best) if odds == 1.0 else against <= math.log(odds)
             if not keep:
                 found[odds][0] += 1

@@ -18,6 +18,7 @@ NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
 REPORT = {"answer", "overview", "generated", "saving", "series_report", "reference", "report", "progress", "batch"}
 REPORT |= {"record", "against", "group", "standing"}
+REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "magic", "named"}
 

@@ -49,7 +49,9 @@ def row_of(report: SeriesReport) -> dict[str, object]:
     power = next((step.exponent for step in steps if isinstance(step, Power)), 0.0 if Log() in steps else 1.0)
     trend = RemoveTrend() in steps
     if len(lags) == 1:
-        trend = next(iter(report.findings["shift and trend"].measures.get("trend_shares", ())), "") == "trend"  # type: ignore[call-overload]
+        finding = report.findings.get("shift and trend")
+        shares = finding.measures.get("trend_shares") if finding else None
+        trend = isinstance(shares, Mapping) and next(iter(shares), "") == "trend"
     return {
         "verdict": report.verdict,
         "plan": str(report.plan),
@@ -61,7 +63,7 @@ def row_of(report: SeriesReport) -> dict[str, object]:
         "D": seasonal,
         "d": len(lags) - seasonal,
         "period": period,
-        "n": int(report.series.notna().sum()),
-        "missing": int(report.series.isna().sum()),
+        "n": report.span.n - report.span.missing,
+        "missing": report.span.missing,
         "note": note_of(report.findings),
     }

@@ -65,7 +65,8 @@ def card(view: SeriesView, recommended: SeriesView | None = None) -> Card:
 def span_text(series: pd.Series, noun: str) -> str:
     """Count, first and last stamp and missing values of a series, in words."""
     if not len(series):
-        return "no values"
+        # a record holds no data, but it knows their span
+        return str(series.attrs.get("span", "no values"))
     missing = int(series.isna().sum())
     ends = f"{words.stamp(series.index[0], noun)} to {words.stamp(series.index[-1], noun)}"
     return f"{words.count_of(len(series), noun)}, {ends}" + (f", {missing:,} missing" if missing else "")

@@ -14,6 +14,8 @@ from preflight_magic.present.markup import join
 from preflight_magic.present.switches import Switch, settle, states, switches, walk
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from preflight_magic.present.contract import SeriesView
 
 FIND_FROM = 30
@@ -48,6 +50,16 @@ def show(view: ReportView | SeriesView) -> Controller | None:
     registry.register(controller)
     controller.show()
     return controller
+
+
+def show_changes(changes: pd.DataFrame) -> None:
+    """Show what changed since an earlier report: a table in a notebook, as text in a terminal."""
+    from preflight_magic.present.changes import changes_html, changes_text
+
+    if in_notebook():
+        _display({"text/html": changes_html(changes), "text/plain": changes_text(changes)})
+    else:
+        print(f"\n{changes_text(changes)}")
 
 
 def bundle(view: ReportView | SeriesView) -> Bundle:

@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Hashable, Mapping
+from collections.abc import Callable, Hashable, Iterable, Mapping, Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 import pandas as pd
 
 from preflight_magic.answer import answer_of
+from preflight_magic.changes import with_season, without_span
 from preflight_magic.generated import proved_code
 from preflight_magic.kernels.correlation import autocorrelation
 from preflight_magic.ladder import Climb, climb, ladder
@@ -203,6 +205,22 @@ class SeriesReport:
     def put_in(self, step: Step) -> SeriesReport:
         """Examine the series again with one more step, at its place in canonical order."""
         return self._again(lambda plan: plan.with_step(step))
+
+    def with_plan(self, steps: Iterable[Step]) -> SeriesReport:
+        """Examine the series again with these steps in place of those of the plan; repairs stay."""
+        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)))
+
+    def with_season(self, season: int | Sequence[int]) -> SeriesReport:
+        """Check the series anew with other seasonal periods, in steps; 1 for none. The plan is the one that follows."""
+        source = with_season(self._source, season)
+        return self._anew(source, replace(self._settings, season=source.season))
+
+    def without_span(self, start: Any, end: Any) -> SeriesReport:
+        """Check the series anew with the values from start to end, both included, treated as missing."""
+        return self._anew(without_span(self._source, start, end), self._settings)
+
+    def _anew(self, source: TimeSeries, settings: Settings) -> SeriesReport:
+        return SeriesReport(source, settings, climb(source, settings))
 
     def _again(self, change: Callable[[Plan], Plan]) -> SeriesReport:
         if self.problem is not None:

@@ -58,7 +58,7 @@ def read(
     """
     table = _table(frame)
     spans = spans_of(exclude)
-    options = Options(_season(season), _may_fill(repair))
+    options = Options(season_of(season), _may_fill(repair))
     if spans and not options.fill_gaps:
         raise CheckError(
             "exclude leaves gaps, and repair does not allow filling them; drop exclude, or use repair=True."
@@ -97,7 +97,8 @@ def _table(frame: Any) -> pd.DataFrame | pd.Series:
     return frame
 
 
-def _season(season: Any) -> tuple[int, ...] | None:
+def season_of(season: Any) -> tuple[int, ...] | None:
+    """Read seasonal periods, shortest first; None stays None, and a CheckError says what is no period."""
     if season is None:
         return None
     given = season if isinstance(season, tuple | list) else [season]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+import numpy as np
 import pandas as pd
 
 from preflight_magic.answer import note_of
@@ -25,6 +26,8 @@ def row_of(report: SeriesReport) -> dict[str, object]:
     pattern = any(isinstance(step, RemovePattern) for step in steps)
     power = next((step.exponent for step in steps if isinstance(step, Power)), 0.0 if Log() in steps else 1.0)
     trend = RemoveTrend() in steps
+    values = report.series.to_numpy(dtype=float)
+    missing = int(np.isnan(values).sum())
     if len(lags) == 1:
         trend = next(iter(report.findings["shift and trend"].measures.get("trend_shares", ())), "") == "trend"  # type: ignore[call-overload]
     return {
@@ -38,7 +41,7 @@ def row_of(report: SeriesReport) -> dict[str, object]:
         "D": seasonal,
         "d": len(lags) - seasonal,
         "period": period,
-        "n": int(report.series.notna().sum()),
-        "missing": int(report.series.isna().sum()),
+        "n": len(values) - missing,
+        "missing": missing,
         "note": note_of(report.findings),
     }

@@ -53,11 +53,29 @@ class RungCard:
 
 @dataclass(frozen=True)
 class PlanRow:
-    """A candidate plan and the odds of the best plan against it."""
+    """A candidate plan and the odds of the best plan against it, in words and as natural logarithm."""
 
     text: str
     odds: str
+    below: float
     shown: bool
+
+
+@dataclass(frozen=True)
+class Change:
+    """What is different from the recommendation: what, what it was, what it is."""
+
+    what: str
+    before: str
+    after: str
+
+
+@dataclass(frozen=True)
+class CodeForm:
+    """Code in one form: pandas, or arguments of a model."""
+
+    title: str
+    source: str
 
 
 @dataclass(frozen=True, eq=False)
@@ -86,8 +104,18 @@ class RootsPicture:
 
 
 @dataclass(frozen=True, eq=False)
+class HalvesPicture:
+    """Numbers of the picture of both halves; `moments` are name, first half, second half, and z of the difference."""
+
+    after: pd.Series
+    second_from: object
+    moments: tuple[tuple[str, float, float, float], ...]
+    noun: str
+
+
+@dataclass(frozen=True, eq=False)
 class Card:
-    """Everything that is shown of one series."""
+    """Everything that is shown of one series; `yours` tells season and spans that a person chose."""
 
     name: Hashable
     verdict: Verdict
@@ -96,32 +124,39 @@ class Card:
     problem: str | None
     repairs: tuple[StepMark, ...] = ()
     steps: tuple[StepMark, ...] = ()
-    switched: bool = False
+    yours: str = ""
+    changes: tuple[Change, ...] = ()
     picture: Picture | None = None
     roots: RootsPicture | None = None
+    halves: HalvesPicture | None = None
     rungs: tuple[RungCard, ...] = ()
     plans: tuple[PlanRow, ...] = ()
-    code: str | None = None
+    codes: tuple[CodeForm, ...] = ()
     code_problem: str | None = None
 
 
 @dataclass(frozen=True, eq=False)
 class OverviewRow:
-    """One series in a line; `values` are those of its small picture, `rungs` question, verdict and headline."""
+    """One series in a line; `values` and `after` are those of its small pictures, `after` None without steps.
 
+    `position` is its place in the report, `rungs` holds question, verdict and headline.
+    """
+
+    position: int
     name: Hashable
     verdict: Verdict
     plan: str
     note: str
     values: np.ndarray
+    after: np.ndarray | None
     span: str
     rungs: tuple[tuple[str, Verdict, str], ...]
 
 
 @dataclass(frozen=True, eq=False)
 class OverviewCard:
-    """All series of a report, or the first of very many; `left_out` counts the others, `counts` all of them."""
+    """Some or all series of a report; `counts` counts the verdicts of all, `part` says which are shown and how."""
 
     counts: tuple[tuple[Verdict, int], ...]
     rows: tuple[OverviewRow, ...]
-    left_out: int = 0
+    part: str

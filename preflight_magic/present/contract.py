@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable, Mapping, Sequence
-from typing import TYPE_CHECKING, Protocol, runtime_checkable
+from collections.abc import Hashable, Iterable, Mapping, Sequence
+from typing import TYPE_CHECKING, Any, Protocol, runtime_checkable
 
 if TYPE_CHECKING:
     import numpy as np
@@ -64,6 +64,10 @@ class SeriesView(Protocol):
         """A step of the calendar: ``month``."""
 
     @property
+    def season(self) -> tuple[int, ...]:
+        """Seasonal periods considered, shortest first; (1,) for none."""
+
+    @property
     def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
         """Candidate plans as (text, natural log of the odds of the best against it, steps)."""
 
@@ -81,11 +85,14 @@ class SeriesView(Protocol):
     def code(self, form: str = "pandas") -> str:
         """Python source of the plan."""
 
-    def leave_out(self, step: Step) -> SeriesView:
-        """The series examined again without this step."""
+    def with_plan(self, steps: Iterable[Step]) -> SeriesView:
+        """The series examined again with these steps; the recommendation stays what it was."""
 
-    def put_in(self, step: Step) -> SeriesView:
-        """The series examined again with this step, in canonical order."""
+    def with_season(self, season: int | Sequence[int]) -> SeriesView:
+        """The series checked anew with other seasonal periods, with the plan that is recommended then."""
+
+    def without_span(self, start: Any, end: Any) -> SeriesView:
+        """The series checked anew without the values from start to end, both included."""
 
 
 @runtime_checkable

@@ -77,8 +77,10 @@ def card_text(card: Card, width: int | None = None) -> str:
     if not card.problem:
         lines += wrap(f"Plan: {chain(card.repairs, card.steps)}", width, "", "      ")
     lines += wrap(f"{card.span}.", width)
-    if card.switched:
-        lines += wrap("You have switched steps; this is not the recommended plan.", width)
+    if card.yours:
+        lines += wrap(card.yours, width)
+    for change in card.changes:
+        lines += wrap(f"{change.what}: {change.before} as recommended, {change.after} as chosen.", width, "  ", "    ")
     for rung in card.rungs:
         lines += _rung(rung, width)
     if card.plans:
@@ -87,7 +89,7 @@ def card_text(card: Card, width: int | None = None) -> str:
         lines += columns(rows, [width - 30, 26], "  ")
     if card.code_problem:
         lines += ["", *wrap(card.code_problem, width)]
-    elif card.code is not None:
+    elif card.codes:
         lines += ["", *wrap("The pandas code: .code() of this series.", width)]
     return "\n".join([*lines, *wrap(words.CAUTION, width)])
 
@@ -148,6 +150,5 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     counts = ", ".join(f"{count:,} {words.verdict_text(verdict)}" for verdict, count in card.counts)
     summary = f"{sum(count for _, count in card.counts):,} series: {counts}"
     lines = [*wrap(summary, width), *columns(rows, [name, 14, rest])]
-    if card.left_out:
-        lines += wrap(f"and {card.left_out:,} more; report.overview holds them all", width)
+    lines += wrap(card.part, width)
     return "\n".join(lines)

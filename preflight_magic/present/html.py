@@ -165,8 +165,9 @@ def page(report: ReportView, title: str = "Series checked before forecasting") -
     ]
     everything = el(
         "main",
-        el("h2", title, class_="pfm-title"),
+        el("h1", title, class_="pfm-title"),
         overview(make_overview.overview(report, limit=None), linked=True) if len(views) > 1 else None,
+        el("h2", "Series by series", class_="pfm-title") if len(views) > 1 else None,
         sections,
         class_="pfm-page",
     )

@@ -171,7 +171,8 @@ def page(report: ReportView, title: str = "Series checked before forecasting") -
         sections,
         class_="pfm-page",
     )
-    opened = "document.querySelectorAll('details').forEach(function(d){d.open=true})"
+    # On paper the pictures and the answers are open; how each question is decided would stand there for every series.
+    opened = "document.querySelectorAll('.pfm-body details:not(.pfm-how)').forEach(function(d){d.open=true})"
     start = (
         '<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8">'
         '<meta name="viewport" content="width=device-width, initial-scale=1">'

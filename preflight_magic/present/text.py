@@ -79,8 +79,10 @@ def card_text(card: Card, width: int | None = None) -> str:
     lines += wrap(f"{card.span}.", width)
     if card.yours:
         lines += wrap(card.yours, width)
+    if card.changes:
+        lines.append("What changed, recommended \u2192 yours:")
     for change in card.changes:
-        lines += wrap(f"{change.what}: {change.before} as recommended, {change.after} as chosen.", width, "  ", "    ")
+        lines += wrap(f"{change.what}: {change.before}{ARROW}{change.after}", width, "  ", "    ")
     for rung in card.rungs:
         lines += _rung(rung, width)
     if card.plans:
@@ -128,7 +130,7 @@ def _tests(tests: Sequence[TestRow], width: int, inside: str) -> list[str]:
     lines = columns([("test", "statistic", "p-value", "null hypothesis")], widths, inside)
     series = ""
     for test in tests:
-        if test.series != series:
+        if test.series and test.series != series:
             series = test.series
             lines += wrap(f"Series: {series}", width, inside)
         lines += columns([(test.test, test.statistic, test.p, test.null)], widths, inside)

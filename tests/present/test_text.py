@@ -35,7 +35,7 @@ def test_text_tells_switched_steps_and_problems() -> None:
     told = text.card_text(make_cards.card(view.leave_out(view.plan.steps[0]), view), 80)
     assert "log (left out)" in told
     told = " ".join(told.split())
-    assert "plan: log, difference 12, difference 1 as recommended, difference 12, difference 1 as chosen." in told
+    assert "plan: log, difference 12, difference 1 → difference 12, difference 1 odds" in told
     assert "With the recommended plan: ◆ transform: Take logs." in told
     infeasible = FakeSeries(problem="No values.", verdict="infeasible", plan=Plan(), recommended=Plan())
     told = text.card_text(make_cards.card(infeasible), 80)

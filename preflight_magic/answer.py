@@ -5,8 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from preflight_magic.ladder import DECIDING
-from preflight_magic.model import Finding, Verdict
+from preflight_magic.model import Difference, Finding, Verdict
 from preflight_magic.plan.plan import Plan
+from preflight_magic.policy import Thresholds
+from preflight_magic.rungs.shares import per_cent
 
 
 def answer_of(
@@ -38,24 +40,43 @@ def answer_of(
     return f"{text} The evidence on {_and(doubts)} is too even to call, so a person decides."
 
 
-def note_of(findings: Mapping[str, Finding]) -> str:
+def note_of(findings: Mapping[str, Finding], near_share: float = Thresholds.near_share) -> str:
     """Say what a person should look at first in a series; empty where there is nothing.
 
     Parameters
     ----------
     findings : Mapping from rung name to Finding
+    near_share : float
+        Share of the evidence for one difference less from which a root is called near one.
 
     Returns
     -------
     str
-        Headlines of the rungs that are inconclusive, those that decide first.
+        Headlines of the rungs that are inconclusive, in the order of the ladder. What a person has to know of the
+        decision is said in fixed words: ``too even to call``, ``near-unit root``, ``over-differenced``, ``too short``.
     """
-    notes = [
-        f"{name}: {finding.headline}, too even to call" if name in DECIDING else f"{name}: {finding.headline}"
-        for name, finding in findings.items()
-        if finding.verdict == "inconclusive"
-    ]
+    notes = []
+    for name, finding in findings.items():
+        if finding.verdict == "inconclusive":
+            notes.append(f"{name}: {finding.headline}{_even(name, finding)}")
+        elif name == "unit root" and (near := _near_one(finding, near_share)):
+            notes.append(f"{name}: near-unit root, {near} of the evidence is for one difference less")
     return "; ".join(notes)
+
+
+def _even(name: str, finding: Finding) -> str:
+    """What is said of a rung that decides and cannot."""
+    if name not in DECIDING or finding.headline == "not examined":
+        return ""
+    return ", near-unit root, too even to call" if name == "unit root" else ", too even to call"
+
+
+def _near_one(finding: Finding, bound: float) -> str:
+    """Share of the evidence for one difference less than is taken, where it is notable."""
+    split = finding.measures.get("d_shares")
+    taken = sum(isinstance(step, Difference) for step in finding.steps)
+    share = split.get(taken - 1, 0.0) if taken and isinstance(split, Mapping) else 0.0
+    return per_cent(share) if share >= bound else ""
 
 
 def _quoted(plan: Plan) -> str:

@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 
 from preflight_magic.intake import read
+from preflight_magic.intake.spans import spans_of
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
@@ -79,8 +80,9 @@ def check(
     CheckError
         When nothing can be checked; a series that cannot be checked among others is reported as ``infeasible``.
     """
-    every = _read(frame, season, time, series, value, only, exclude, repair)
-    settings = _settings(season, horizon, significance)
+    spans = spans_of(exclude)
+    every = _read(frame, season, time, series, value, only, spans, repair)
+    settings = _settings(season, horizon, significance, spans)
     return Report(follow(_stream(every, settings, cache, pool), len(every), progress))
 
 
@@ -104,8 +106,9 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     if unknown:
         raise TypeError(f"stream() has no option {', '.join(unknown)}")
     o = given | options
+    o["exclude"] = spans_of(o["exclude"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
-    settings = _settings(o["season"], o["horizon"], o["significance"])
+    settings = _settings(o["season"], o["horizon"], o["significance"], o["exclude"])
     return follow(_stream(every, settings, o["cache"], o["pool"]), len(every), o["progress"])
 
 
@@ -115,7 +118,7 @@ def _read(
     return read(frame, season=season, time=time, series=series, value=value, only=only, exclude=exclude, repair=repair)
 
 
-def _settings(season: Any, horizon: Any, significance: Any) -> Settings:
+def _settings(season: Any, horizon: Any, significance: Any, exclude: Any) -> Settings:
     try:
         size = float(significance)
     except (TypeError, ValueError):
@@ -131,7 +134,7 @@ def _settings(season: Any, horizon: Any, significance: Any) -> Settings:
         if steps < 1:
             raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, at least 1.")
     asked = None if season is None else tuple(np.atleast_1d(np.asarray(season)).astype(int).tolist())
-    return Settings(season=asked, horizon=steps, thresholds=Thresholds(significance=size))
+    return Settings(season=asked, horizon=steps, thresholds=Thresholds(significance=size), exclude=exclude)
 
 
 def _stream(

@@ -13,20 +13,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from preflight_magic import rungs
-from preflight_magic.kernels.plan_likelihood import Comparison, PlanPrior, compare
+from preflight_magic.kernels.plan_likelihood import Comparison, compare
 from preflight_magic.kernels.restricted_likelihood import difference, missing_columns
 from preflight_magic.model import (
     CheckError,
     Difference,
     Evidence,
     Finding,
+    HypothesisTest,
     Judgement,
+    PerDay,
+    Step,
     TimeSeries,
     Verdict,
 )
-from preflight_magic.plan.plan import Plan
+from preflight_magic.plan.plan import Plan, describe
 from preflight_magic.policy import Settings, Thresholds
-from preflight_magic.rungs.contract import Context, Rung
+from preflight_magic.rungs.contract import Context, Rung, with_fit
+from preflight_magic.rungs.shares import prior_of
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -105,17 +109,21 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
         When `plan` cannot be applied to the series.
     """
     findings: dict[str, Finding] = {}
-    context = Context(settings=settings)
-    if earlier is None and series.problem is None:
-        context = replace(context, comparison=_comparison(series, settings.thresholds))
-    elif earlier is not None:
-        context = replace(context, comparison=earlier.comparison)
+    context = Context(settings=settings, comparison=earlier.comparison if earlier else None)
     recommended = Plan(series.repairs)
+    subject = series
+    compared = earlier is not None
     transformed: pd.Series | None = None
     for rung in ladder():
-        late = _is_late(rung.name)
-        if late and transformed is None and series.problem is None:
+        if series.problem is not None and rung.name not in READING:
+            continue
+        late = _comes_after(rung.name, "unit root")
+        if not compared and _comes_after(rung.name, "calendar length"):
+            compared, subject = True, per_day(series, recommended.steps)
+            context = replace(context, comparison=_comparison(subject, settings.thresholds))
+        if late and transformed is None:
             chosen = plan if plan is not None else recommended
+            subject = per_day(series, chosen.steps)
             transformed = chosen.apply(series.values).dropna()
             context = replace(
                 context,
@@ -123,37 +131,39 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
                 transformed=transformed,
                 nuisance=_nuisance(series, chosen, len(transformed)),
             )
-        if series.problem is not None and rung.name not in READING:
-            continue
         if earlier is not None and not late:
             finding = earlier.findings[rung.name]
         else:
-            finding = _finding(rung, series, context, settings.thresholds)
+            finding = _finding(rung, subject, context, settings.thresholds)
         findings[rung.name] = finding
         if not late and finding.steps:
             recommended = Plan(recommended.repairs, (*recommended.steps, *finding.steps))
             context = replace(context, steps=recommended.steps)
         if rung.name == "roots":
-            context = _with_fit(context, finding)
+            context = with_fit(context, finding)
     if transformed is None and series.problem is None:
         transformed = (plan if plan is not None else recommended).apply(series.values).dropna()
     return Climb(findings, context.comparison, recommended, recommended if plan is None else plan, transformed)
 
 
-def prior_of(thresholds: Thresholds) -> PlanPrior:
-    """What the comparison of plans believes before the data."""
-    return PlanPrior(
-        log_margin=thresholds.log_margin,
-        season_p=thresholds.season_p,
-        trend=thresholds.trend_odds,
-        shift=thresholds.shift_odds,
-        difference=thresholds.difference_odds,
-        second=thresholds.second_difference_odds,
-        wandering=thresholds.wandering_odds,
-        both=thresholds.both_differences_odds,
-        slope=thresholds.slope_scale,
-        outlier_bound=thresholds.outlier_bound,
-    )
+def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:
+    """The series that rungs after "calendar length" examine: per day once the plan divides by days.
+
+    Parameters
+    ----------
+    series : TimeSeries
+        Totals.
+    steps : tuple of Step
+        Of the plan so far; only `PerDay` is read.
+
+    Returns
+    -------
+    TimeSeries
+        The same series with values per day, gaps kept, or `series` itself without such a step. So no rung has to
+        know of the division, and the comparison of plans, the log and the tests all speak of the same values.
+    """
+    divided = tuple(step for step in steps if isinstance(step, PerDay))
+    return replace(series, values=Plan((), divided).apply(series.values)) if divided else series
 
 
 def _comparison(series: TimeSeries, thresholds: Thresholds) -> Comparison | None:
@@ -161,14 +171,16 @@ def _comparison(series: TimeSeries, thresholds: Thresholds) -> Comparison | None
 
 
 @cache
-def _is_late(name: str) -> bool:
-    """Does a rung come after the unit root, directly or through others?"""
+def _comes_after(name: str, other: str) -> bool:
+    """Does a rung come after another, directly or through others?"""
     after = next(rung.after for rung in ladder() if rung.name == name)
-    return "unit root" in after or any(_is_late(one) for one in after)
+    return other in after or any(_comes_after(one, other) for one in after)
 
 
 def _finding(rung: Rung, series: TimeSeries, context: Context, thresholds: Thresholds) -> Finding:
     evidence: Evidence = rung.examine(series, context)
+    if context.transformed is None:
+        evidence = replace(evidence, tests=_named_per_day(evidence.tests, context.steps))
     judgement: Judgement = rung.judge(evidence, thresholds)
     return Finding(
         rung=rung.name,
@@ -180,6 +192,20 @@ def _finding(rung: Rung, series: TimeSeries, context: Context, thresholds: Thres
         measures=evidence.measures,
         steps=judgement.steps,
     )
+
+
+def _named_per_day(tests: tuple[HypothesisTest, ...], steps: tuple[Step, ...]) -> tuple[HypothesisTest, ...]:
+    """Tests of values per day, with the division among what was done to their series."""
+    divided = next((step for step in steps if isinstance(step, PerDay)), None)
+    if divided is None:
+        return tests
+    word = describe(divided)
+    named = []
+    for test in tests:
+        series = str(test.options.get("series", "as given"))
+        series = series.replace("as given", word) if "as given" in series else f"{word}, {series}"
+        named.append(replace(test, options={**test.options, "series": series}))
+    return tuple(named)
 
 
 def _nuisance(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] | None:
@@ -196,10 +222,3 @@ def _nuisance(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] 
             "allow gaps to be filled (repair=True)."
         )
     return columns
-
-
-def _with_fit(context: Context, finding: Finding) -> Context:
-    fit = finding.measures.get("fit")
-    if fit is None:
-        return context
-    return replace(context, innovations=fit.innovations, fitted_parameters=fit.order.size)  # type: ignore[attr-defined]

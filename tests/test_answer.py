@@ -83,10 +83,41 @@ def test_plan_as_given_by_a_person_reads_well():
         (("roots",), "roots: headline of roots"),
         (
             ("unit root", "spread", "roots"),
-            "spread: headline of spread, too even to call; unit root: headline of unit root, too even to call; roots: "
-            "headline of roots",
+            "spread: headline of spread, too even to call; unit root: headline of unit root, near-unit root, too "
+            "even to call; roots: headline of roots",
         ),
     ],
 )
 def test_note(doubts, expected):
     assert note_of(findings(*doubts)) == expected
+
+
+def unit_root(verdict, steps, **shares):
+    split = {int(d[1:]): share for d, share in shares.items()}
+    return {"unit root": Finding("unit root", "?", verdict, "one difference", "", (), {"d_shares": split}, steps)}
+
+
+@pytest.mark.parametrize(
+    ("found", "expected"),
+    [
+        (unit_root("transform", (Difference(1),), d1=0.9, d0=0.1), ""),
+        (
+            unit_root("transform", (Difference(1),), d1=0.75, d0=0.25),
+            "unit root: near-unit root, 25 % of the evidence is for one difference less",
+        ),
+        # A second difference that is not taken is no root near one.
+        (unit_root("transform", (Difference(1),), d1=0.75, d2=0.25), ""),
+        (unit_root("clear", (), d0=0.75, d1=0.25), ""),
+        (
+            unit_root("inconclusive", (Difference(1),), d1=0.6, d0=0.4),
+            "unit root: one difference, near-unit root, too even to call",
+        ),
+    ],
+)
+def test_a_root_near_one_is_noted(found, expected):
+    assert note_of(found) == expected
+
+
+def test_what_was_not_examined_is_not_called_even():
+    found = {"season": Finding("season", "?", "inconclusive", "not examined", "No plan could be computed.")}
+    assert note_of(found) == "season: not examined"

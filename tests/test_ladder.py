@@ -18,7 +18,7 @@ from preflight_magic.model import Difference, Finding, Log, RemovePattern, Remov
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 
-KNOWN = ("time index", "values", "spread", "shift and trend", "season", "unit root")
+KNOWN = ("time index", "values", "calendar length", "spread", "shift and trend", "season", "unit root")
 
 RUNG_FILE = """
 from preflight_magic.model import Difference, Evidence, Judgement

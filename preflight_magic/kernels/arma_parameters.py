@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import tanh
 
 import numpy as np
 from numpy.typing import NDArray
@@ -109,6 +110,42 @@ def polynomials(order: Order, values: Array) -> tuple[Array, Array]:
     if order.Q:
         right = np.convolve(right, _spread(sma, order.period))
     return left, right
+
+
+def polynomials_at(order: Order, free: Array) -> tuple[Array, Array]:
+    """AR and MA polynomials from unconstrained numbers: ``polynomials(order, coefficients(order, free))``.
+
+    Parameters
+    ----------
+    order : Order
+    free : ndarray, shape (order.size,)
+
+    Returns
+    -------
+    ar, ma : ndarray, shapes (p + P s + 1,), (q + Q s + 1,)
+    """
+    if order.p > 2 or order.q > 2 or order.P:
+        return polynomials(order, coefficients(order, free))
+    # The recursion written out in plain numbers: this is called some thousand times a series.
+    partial = [tanh(value) for value in free.tolist()]
+    ar, ma = [1.0], [1.0]
+    if order.p == 1:
+        ar = [1.0, -partial[0]]
+    elif order.p == 2:
+        ar = [1.0, -partial[0] * (1.0 - partial[1]), -partial[1]]
+    if order.q == 1:
+        ma = [1.0, partial[order.p]]
+    elif order.q == 2:
+        first, second = partial[order.p : order.p + 2]
+        ma = [1.0, first * (1.0 + second), second]
+    right = np.array(ma)
+    if order.Q == 1:
+        plain, right = right, np.zeros(order.q + order.period + 1)
+        right[: order.q + 1] = plain
+        right[order.period :] += partial[-1] * plain
+    elif order.Q:
+        return polynomials(order, coefficients(order, free))
+    return np.array(ar), right
 
 
 def _spread(values: Array, period: int) -> Array:

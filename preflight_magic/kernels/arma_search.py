@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
+from math import exp
 
 import numpy as np
 
-from preflight_magic.kernels.arma_parameters import Order, coefficients, free_parameters, polynomials
-from preflight_magic.kernels.damped_least_squares import least_squares
-from preflight_magic.kernels.restricted_likelihood import Array, Contrasts, evaluate
+from preflight_magic.kernels.arma_parameters import Order, coefficients, free_parameters, polynomials_at
+from preflight_magic.kernels.arma_start import periodogram, whittle_start
+from preflight_magic.kernels.quasi_newton import least_squares
+from preflight_magic.kernels.restricted_likelihood import Array, Contrasts, concentrated, evaluate
 from preflight_magic.kernels.whiten import NotPositiveDefiniteError
 
 EDGE = 4.0
@@ -25,17 +28,8 @@ _PRIOR = {
     "sma": ((-0.6, 0.5), (0.0, 0.5)),
 }
 
-# Where a search may start, by (p, q): a few typical points, the best of which is taken.
-_STARTS: dict[tuple[int, int], tuple[tuple[float, ...], ...]] = {
-    (0, 0): ((),),
-    (1, 0): ((0.3,), (0.8,), (0.97,)),
-    (0, 1): ((0.4,), (-0.4,), (-0.8,)),
-    (1, 1): ((0.5, 0.3), (0.9, -0.5), (0.97, -0.8), (-0.4, 0.6), (0.4, -0.9)),
-    (2, 0): ((0.5, 0.2), (1.2, -0.4), (1.7, -0.75), (-0.3, 0.1), (0.3, 0.6)),
-    (0, 2): ((0.3, 0.1), (-0.3, -0.1), (-1.2, 0.4), (-0.6, 0.1)),
-    (2, 1): ((1.2, -0.4, 0.1), (1.5, -0.55, -0.6), (0.4, 0.1, 0.3), (0.4, 0.1, -0.8), (1.6, -0.8, -0.3)),
-}
-_SEASONAL_START = -0.5
+_TOLERANCE = 4e-4
+"""A relative fall of the sum of squares below which the next step is the last; m / 2 times that in log likelihood."""
 FIRST_ORDERS = ((0, 0), (1, 0), (0, 1), (1, 1), (2, 0))
 FURTHER_ORDERS = ((0, 2), (2, 1))
 """The plain orders (p, q) that are tried, the further ones only where a plan is not far behind."""
@@ -56,6 +50,7 @@ class Fitted:
     evidence: float
 
 
+@lru_cache(maxsize=64)
 def _prior(order: Order) -> tuple[Array, Array]:
     parts = zip(("ar", "ma", "sar", "sma"), (order.p, order.q, order.P, order.Q), strict=True)
     pairs = [_PRIOR[part][min(k, 1)] for part, count in parts for k in range(count)]
@@ -63,21 +58,23 @@ def _prior(order: Order) -> tuple[Array, Array]:
     return table[:, 0], table[:, 1]
 
 
-def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | None:
+def fit(view: Contrasts, order: Order, hint: Array | None = None, useful: float = -np.inf) -> Fitted | None:
     """Fit one order to one plan and integrate its likelihood.
 
     Parameters
     ----------
     view : Contrasts
     order : Order
-        Without a hint, ``(p, q)`` must be one of `FIRST_ORDERS` or `FURTHER_ORDERS`.
     hint : ndarray, shape (order.size,), optional
-        Coefficients to start from, instead of the usual points.
+        Coefficients to start from; by default the best of a grid under Whittle's likelihood.
+    useful : float
+        Evidence from which the order matters; where it seems out of reach the search is given up early, and the
+        evidence returned is too low.
 
     Returns
     -------
     Fitted or None
-        None where no start gives a finite likelihood.
+        None where the start has no finite likelihood.
 
     Notes
     -----
@@ -89,39 +86,41 @@ def fit(view: Contrasts, order: Order, hint: Array | None = None) -> Fitted | No
     mean, width = _prior(order)
     m = view.count
 
-    def at(free: Array) -> tuple[float, float, Array]:
-        inside = np.clip(free, -EDGE, EDGE)
-        value, scaled = evaluate(view, *polynomials(order, coefficients(order, inside)))
-        penalty = 0.5 * float((((free - mean) / width) ** 2).sum())
-        return value, value - penalty, scaled * np.exp(min(penalty / m, 50.0))
-
-    best: tuple[float, float, Array, Array] | None = None
-    usual = ((*start, *(_SEASONAL_START,) * (order.P + order.Q)) for start in _STARTS.get((order.p, order.q), ()))
-    for start in (hint,) if hint is not None else usual:
-        free = free_parameters(order, np.asarray(start, dtype=float))
+    def residuals(free: Array) -> Array | None:
         try:
-            value, height, scaled = at(free)
-        except NotPositiveDefiniteError:
-            continue
-        if best is None or height > best[1]:
-            best = (value, height, free, scaled)
-    if best is None:
-        return None
-    value, height, free, scaled = best
-    if order.size == 0:
-        return Fitted(view, order, np.empty(0), value, height)
-
-    def residuals(point: Array) -> Array | None:
-        try:
-            return at(point)[2]
+            _, scaled = evaluate(view, *polynomials_at(order, np.minimum(np.maximum(free, -EDGE), EDGE)))
         except NotPositiveDefiniteError:
             return None
+        return scaled * exp(min(penalty(free) / m, 50.0))
 
-    # A relative fall of 5e-5 in the sum of squares is m / 2 of that in the log likelihood: far below what matters.
-    free, curvature = least_squares(residuals, free, scaled, 5e-5)
-    value, height, scaled = at(free)
-    left = float(scaled @ scaled)
-    curvature = m / left * curvature if left > 0.0 else m * np.eye(order.size)
-    precision = curvature + np.diag(width**-2.0)
+    def penalty(free: Array) -> float:
+        away = (free - mean) / width
+        return 0.5 * float(away @ away)
+
+    free = _start(view, order, hint, mean, width)
+    scaled = residuals(free)
+    if scaled is None:
+        return None
+    total = float(scaled @ scaled)
+    if order.size == 0:
+        height = concentrated(view, total)
+        return Fitted(view, order, np.empty(0), height, height)
+    # The sum of squares at which the height is that of the evidence wanted.
+    wanted = total * exp(min(2.0 * (concentrated(view, total) - useful) / m, 700.0)) if useful > -np.inf else np.inf
+    free, curvature, total = least_squares(residuals, free, scaled, _TOLERANCE, width**-2.0 / m, wanted)
+    height = concentrated(view, total)
+    precision = (m / total * curvature if total > 0.0 else m * np.eye(order.size)) + np.diag(width**-2.0)
     evidence = height - float(np.log(width).sum()) - 0.5 * float(np.linalg.slogdet(precision)[1])
-    return Fitted(view, order, coefficients(order, np.clip(free, -EDGE, EDGE)), value, evidence)
+    found = coefficients(order, np.clip(free, -EDGE, EDGE))
+    return Fitted(view, order, found, height + penalty(free), evidence)
+
+
+def _start(view: Contrasts, order: Order, hint: Array | None, mean: Array, width: Array) -> Array:
+    """Unconstrained parameters where the search begins."""
+    if hint is not None:
+        return free_parameters(order, hint)
+    if order.size == 0:
+        return np.empty(0)
+    series, regressors = view.stacked[:, 0], view.stacked[:, 1:]
+    left = series - regressors @ (regressors.T @ series)
+    return whittle_start(periodogram(left), len(left), order, mean, width)

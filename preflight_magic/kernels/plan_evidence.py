@@ -270,18 +270,25 @@ def _log_size(column: Array, base: list[Array]) -> float:
 
 
 def _fits(view: Contrasts, period: int, D: int, best: float, hints: Mapping[Order, Array] | None) -> list[Fitted]:
+    fits: list[Fitted] = []
     if hints is not None:
-        return _tried(view, hints.keys(), hints)
-    fits = _tried(view, [Order(p, q, 0, D, period) for p, q in FIRST_ORDERS], {})
+        _try(fits, view, hints.keys(), hints)
+        return fits
+    _try(fits, view, [Order(p, q, 0, D, period) for p, q in FIRST_ORDERS], {})
     if fits and max(one.evidence for one in fits) > best - _HOPELESS - 0.05 * view.count:
-        fits += _tried(view, [Order(p, q, 0, D, period) for p, q in FURTHER_ORDERS], {})
+        _try(fits, view, [Order(p, q, 0, D, period) for p, q in FURTHER_ORDERS], {})
     if D and fits:
         # the leading order once more without its seasonal moving average: a season that wanders freely
         leading = max(fits, key=lambda one: one.evidence).order
-        fits += _tried(view, [Order(leading.p, leading.q, 0, 0, period)], {})
+        _try(fits, view, [Order(leading.p, leading.q, 0, 0, period)], {})
     return fits
 
 
-def _tried(view: Contrasts, orders: Iterable[Order], hints: Mapping[Order, Array]) -> list[Fitted]:
-    found = (fit(view, order, hints.get(order)) for order in orders if order.size + 2 < view.count)
-    return [one for one in found if one is not None]
+def _try(fits: list[Fitted], view: Contrasts, orders: Iterable[Order], hints: Mapping[Order, Array]) -> None:
+    """Add the fits of some orders to those there are; an order that falls far behind them is given up early."""
+    for order in orders:
+        if order.size + 2 < view.count:
+            useful = max((one.evidence for one in fits), default=-np.inf) - _NEGLIGIBLE
+            found = fit(view, order, hints.get(order), useful)
+            if found is not None:
+                fits.append(found)

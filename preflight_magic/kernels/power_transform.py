@@ -83,7 +83,7 @@ def log_gain(values: Array, period: int) -> float:
     raw, logged = lagged_design(plain, period, lags), lagged_design(np.log(plain), period, lags)
     if raw[2] < 0 or logged[2] < 0:
         return float("nan")
-    return _deviance(*raw[:2]) - _deviance(*logged[:2]) - 2.0 * float(logged[1].sum())
+    return deviance(*raw[:2]) - deviance(*logged[:2]) - 2.0 * float(logged[1].sum())
 
 
 _DEGREES = 5.0
@@ -98,7 +98,7 @@ _FARTHEST = 8.0
 """Standard deviations beyond which an error counts no further, so that one wild value does not decide."""
 
 
-def _deviance(design: Array, response: Array) -> float:
+def deviance(design: Array, response: Array) -> float:
     """-2 log likelihood of a regression with t errors, without its constant."""
     basis = np.linalg.qr(design)[0]
     left = response - basis @ (basis.T @ response)

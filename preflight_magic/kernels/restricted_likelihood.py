@@ -9,9 +9,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import lru_cache
+from math import exp, log, pi, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg.blas import dgemm
 from scipy.linalg.lapack import dpotrf, dpotrs
 
 from preflight_magic.kernels.whiten import NotPositiveDefiniteError, whiten
@@ -187,18 +189,27 @@ def evaluate(view: Contrasts, ar: Array, ma: Array) -> tuple[float, Array]:
         At parameters on the boundary.
     """
     whitened, log_determinant = whiten(ar, ma, view.stacked)
-    series, regressors = whitened[:, 0], whitened[:, 1:]
-    if regressors.shape[1]:
-        factor, info = dpotrf(regressors.T @ regressors, lower=1)
+    series = whitened[:, 0]
+    if whitened.shape[1] > 1:
+        regressors = whitened[:, 1:]
+        products = dgemm(1.0, whitened, whitened, trans_a=1)
+        factor, info = dpotrf(products[1:, 1:], lower=1)
         if info != 0:
             raise NotPositiveDefiniteError
-        effects = dpotrs(factor, regressors.T @ series, lower=1)[0]
-        series = series - regressors @ effects
-        log_determinant += 2.0 * float(np.log(factor.diagonal()).sum())
+        series = series - regressors @ dpotrs(factor, products[1:, 0], lower=1)[0]
+        log_determinant += 2.0 * sum(map(log, factor.diagonal().tolist()))
+    total, floor = float(series @ series), view.count * view.floor
+    if total < floor:
+        # rounding errors, of which only the size is known
+        series, total = np.full(len(series), sqrt(floor / len(series))), floor
+    scale = exp(log_determinant / (2.0 * view.count))
+    return concentrated(view, total * scale**2), series * scale
+
+
+def concentrated(view: Contrasts, total: float) -> float:
+    """Restricted log likelihood from the sum of squares of the scaled residuals of `evaluate`."""
     m = view.count
-    total = max(float(series @ series), m * view.floor)
-    value = -0.5 * (m * (np.log(2.0 * np.pi * total / m) + 1.0) + log_determinant) + view.constant
-    return value, series * np.exp(log_determinant / (2.0 * m))
+    return -0.5 * m * (log(2.0 * pi * total / m) + 1.0) + view.constant
 
 
 def residuals(view: Contrasts, ar: Array, ma: Array) -> Array:

@@ -7,11 +7,11 @@ result is banded and the rotation has determinant one, so one banded factor give
 from __future__ import annotations
 
 from functools import lru_cache
+from math import log, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.linalg import solve_triangular
-from scipy.linalg.lapack import dgesv, dpbtrf, dtbtrs
+from scipy.linalg.lapack import dgesv, dpbtrf, dpotrf, dtbtrs, dtrtrs
 
 Array = NDArray[np.float64]
 
@@ -87,20 +87,28 @@ def _autocovariances(ar: Array, cross: Array) -> Array:
     p = len(ar) - 1
     right = np.zeros(p + 1)
     right[: len(cross)] = cross[: p + 1]
-    if p == 1:
-        # The two equations written out: this is called some thousand times a series.
-        phi = -float(ar[1])
-        first, second = right.tolist()
-        rest = 1.0 - phi * phi
-        if rest <= 0.0:
-            raise NotPositiveDefiniteError
-        return np.array([first + phi * second, second + phi * first]) / rest
+    if p <= 2:
+        return _short_autocovariances(ar.tolist(), right.tolist())
     rows, lags, terms = _autocovariance_indices(p)
     matrix = np.bincount(rows * (p + 1) + lags, ar[terms], (p + 1) ** 2).reshape(p + 1, p + 1)
     _, _, solution, info = dgesv(matrix, right)
     if info != 0:
         raise NotPositiveDefiniteError
     return np.asarray(solution, dtype=float)
+
+
+def _short_autocovariances(ar: list[float], right: list[float]) -> Array:
+    """The equations for one or two AR coefficients written out: this is called some thousand times a series."""
+    if len(ar) == 1:
+        return np.array(right)
+    one, two = -ar[1], -ar[2] if len(ar) == 3 else 0.0
+    further = right[2] if len(right) == 3 else 0.0
+    side = (1.0 - two) * (1.0 - two * two) - one * one * (1.0 + two)
+    if side <= 0.0 or abs(two) >= 1.0:
+        raise NotPositiveDefiniteError
+    zero = ((1.0 - two) * (right[0] + two * further) + one * (1.0 + two) * right[1]) / side
+    first = (right[1] + one * zero) / (1.0 - two)
+    return np.array([zero, first, further + one * first + two * zero][: len(ar)])
 
 
 def _filter(ar: Array, values: Array) -> Array:
@@ -150,13 +158,7 @@ def whiten(ar: Array, ma: Array, values: Array) -> tuple[Array, float]:
     gamma = _autocovariances(ar, cross) if cross is not None else None
     if q == 0:
         assert gamma is not None
-        block = gamma[np.abs(np.subtract.outer(np.arange(p), np.arange(p)))]
-        try:
-            factor = np.linalg.cholesky(block)
-        except np.linalg.LinAlgError as error:
-            raise NotPositiveDefiniteError from error
-        rotated[:p] = solve_triangular(factor, rotated[:p], lower=True, check_finite=False)
-        return rotated, 2.0 * float(np.log(factor.diagonal()).sum())
+        return _start_whitened(gamma[:p], rotated)
     band = _band(ma, n, p, gamma, cross)
     factor, info = dpbtrf(band, lower=1, overwrite_ab=1)
     if info != 0:
@@ -165,6 +167,22 @@ def whiten(ar: Array, ma: Array, values: Array) -> tuple[Array, float]:
     if info != 0:
         raise NotPositiveDefiniteError
     return whitened, 2.0 * float(np.log(factor[0]).sum())
+
+
+def _start_whitened(gamma: Array, rotated: Array) -> tuple[Array, float]:
+    """Whiten the first rows of a filtered autoregression, which are still as they were."""
+    p = len(gamma)
+    if p == 1:
+        scale = float(gamma[0])
+        if scale <= 0.0:
+            raise NotPositiveDefiniteError
+        rotated[0] /= sqrt(scale)
+        return rotated, log(scale)
+    factor, info = dpotrf(gamma[np.abs(np.subtract.outer(np.arange(p), np.arange(p)))], lower=1)
+    if info != 0:
+        raise NotPositiveDefiniteError
+    rotated[:p] = dtrtrs(factor, rotated[:p], lower=1)[0]
+    return rotated, 2.0 * sum(map(log, factor.diagonal().tolist()))
 
 
 def _band(ma: Array, n: int, p: int, gamma: Array | None, cross: Array | None) -> Array:

@@ -11,6 +11,7 @@ import pandas as pd
 
 from preflight_magic.model import CheckError, Log, Logit, PerDay, Power, Step
 from preflight_magic.plan.words import called, describe, stamp_text
+from preflight_magic.stamps import days_of
 
 Array = npt.NDArray[np.float64]
 PointStep = PerDay | Log | Power | Logit
@@ -141,23 +142,7 @@ def day_counts(index: pd.Index, unit: str, given: pd.Series) -> Array:
     refusal = CheckError(
         f"{called(given)} has no monthly, quarterly or yearly index, which 'per day' needs; leave PerDay out."
     )
-    freq = getattr(index, "freq", None)
-    if len(index) == 1 and freq is not None:
-        return day_counts(index.append(type(index)([index[0] + freq])), unit, given)[:1]
-    if isinstance(index, pd.PeriodIndex):
-        stamps = index.to_timestamp(how="start")
-    elif isinstance(index, pd.DatetimeIndex):
-        stamps = index.tz_localize(None)
-    else:
+    counts = days_of(index, unit)
+    if counts is None:
         raise refusal
-    first = np.asarray(stamps.year, dtype="int64") * 12 + np.asarray(stamps.month, dtype="int64") - 1 - 1970 * 12
-    length = np.unique(np.diff(first))
-    if len(length) != 1 or length[0] < 1:
-        raise refusal
-    # Stamps late in the month close their period, the others open it.
-    if isinstance(index, pd.DatetimeIndex) and (np.asarray(stamps.day) > 15).all():
-        first = first - length[0] + 1
-    start = first.astype("datetime64[M]").astype("datetime64[D]")
-    end = (first + length[0]).astype("datetime64[M]").astype("datetime64[D]")
-    counts = end - start if unit == "days" else np.busday_count(start, end)
-    return np.asarray(counts.astype("float64"))
+    return counts

@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
+from preflight_magic.kernels.arma import ArmaFit
 from preflight_magic.kernels.plan_likelihood import Comparison
-from preflight_magic.model import Evidence, Judgement, Step, TimeSeries
+from preflight_magic.model import Evidence, Finding, Judgement, Step, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
 
 
@@ -34,6 +35,8 @@ class Context:
         Standardised innovations of the ARMA fit; only for rungs that come after "roots".
     fitted_parameters : int
         Coefficients of that fit.
+    fit : ArmaFit or None
+        That fit.
     """
 
     settings: Settings = field(default_factory=Settings)
@@ -43,6 +46,15 @@ class Context:
     nuisance: NDArray[np.float64] | None = None
     innovations: NDArray[np.float64] | None = None
     fitted_parameters: int = 0
+    fit: ArmaFit | None = None
+
+
+def with_fit(context: Context, finding: Finding) -> Context:
+    """The context of the rungs after one whose finding holds an ARMA fit; unchanged where it holds none."""
+    fit = finding.measures.get("fit")
+    if not isinstance(fit, ArmaFit):
+        return context
+    return replace(context, fit=fit, innovations=fit.innovations, fitted_parameters=fit.order.size)
 
 
 @dataclass(frozen=True)

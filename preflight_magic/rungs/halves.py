@@ -8,7 +8,7 @@ from typing import cast
 import numpy as np
 
 from preflight_magic.kernels.halves import Moment, compare_halves
-from preflight_magic.kernels.plan_columns import seasonal_lag
+from preflight_magic.kernels.plan_columns import removed_columns, seasonal_lag
 from preflight_magic.model import Evidence, Judgement, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
@@ -16,7 +16,8 @@ from preflight_magic.rungs.contract import Context, Rung
 METHOD = (
     "Weak stationarity read directly: mean, variance and autocovariances of the first and of the second half of the "
     "transformed series. Each difference is divided by its standard error, from the long-run variance, which allows "
-    "for dependence; the bound on these z-values allows for the number of moments that are compared."
+    "for dependence, and stretched as Student's t asks where few values estimate it; the bound on these z-values "
+    "allows for the number of moments that are compared."
 )
 SOURCES = (
     "Andrews, D. W. K. and Monahan, J. C. (1992). An improved heteroskedasticity and autocorrelation consistent "
@@ -42,7 +43,9 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         return Evidence(problem=series.problem or "there is no transformed series.")
     values = context.transformed.to_numpy(dtype=np.float64)
     season = seasonal_lag(context.steps)
-    moments = compare_halves(values, (1, 2, season) if season > 2 else (1, 2))
+    removed = removed_columns(context.steps, series.values.index, len(values))
+    fitted = 0 if removed is None else removed.shape[1] - 1
+    moments = compare_halves(values, (1, 2, season) if season > 2 else (1, 2), fitted)
     if moments is None:
         return Evidence(problem=f"the {len(values)} values left after the plan are too few, or all the same.")
     index = context.transformed.index
@@ -78,7 +81,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         "inconclusive",
         f"{names} {'differs' if len(apart) == 1 else 'differ'} between the halves",
         f"{' '.join(told)} By chance one of {len(moments)} moments passes {bound:.1f} about once in "
-        f"{1.0 / thresholds.significance:.0f} stationary series, more often in short ones.",
+        f"{1.0 / thresholds.significance:.0f} stationary series.",
     )
 
 

@@ -15,7 +15,7 @@ from preflight_magic.kernels.arma_order import search
 from preflight_magic.kernels.arma_parameters import split
 from preflight_magic.kernels.arma_response import implied_variance, response
 from preflight_magic.kernels.arma_roots import CommonFactor, common_factors, inverse_roots
-from preflight_magic.kernels.plan_columns import removed_columns, seasonal_lag
+from preflight_magic.kernels.plan_columns import likelihood_columns, seasonal_lag
 from preflight_magic.model import (
     Difference,
     Evidence,
@@ -29,6 +29,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
+from preflight_magic.rungs.shares import order_shares, per_cent, summed_share
 
 Floats = NDArray[np.float64]
 
@@ -39,8 +40,8 @@ CYCLE_AT_ONE = 0.98
 """Modulus from which a cycle hardly fades. Common practice."""
 VARIANCE_FACTOR = 2.0
 """Ratio from which the variance implied and that of the sample disagree. Common practice."""
-_MOST_WORK = 2e7
-"""Rows times squared number of missing values beyond which their fills are taken for observations."""
+MA_FAR = 2.2
+"""The same at the 1% point, beyond which an MA root is not at one whatever else is known."""
 
 METHOD = (
     "An ARMA model is fitted to the transformed series by exact Gaussian likelihood, its order chosen by corrected "
@@ -77,7 +78,10 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         ``1 + c B``), `psi_sum`, `half_life` (steps), `variance_implied`, `variance_sample`, `common_factors`,
         `ma_at_one`, `seasonal_ma_at_one` (fall of the log likelihood when the root is held at one), `mean_fitted`,
         `mean`, `log_likelihood`, `aicc`, `differences` and `seasonal_difference` (lag, 0 for none) of the plan,
-        `season` (lag of the seasonal terms tried, 1 for none), `gaps` and `fit`.
+        `season` (lag of the seasonal terms tried, 1 for none), `gaps` and `fit`; from the comparison of plans the
+        shares of the evidence `share_more`, `share_less` (for more or fewer differences than the plan takes),
+        `share_fixed` and `share_wandering` (for kinds of season), and where an MA root of a series without
+        differences may be one, `share_summed`: for no difference in the plans of the summed series.
     """
     if context.transformed is None:
         return Evidence(problem=series.problem or "there is no transformed series.")
@@ -86,11 +90,8 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         return Evidence(problem=f"nothing varies in the {len(values)} values left after the plan.")
     lags = [step.lag for step in context.steps if isinstance(step, Difference)]
     season = seasonal_lag(context.steps)
-    fixed = removed_columns(context.steps, series.values.index, len(values))
-    mean = fixed is None and len(lags) < 2
-    nuisance, gaps = _affordable(context.nuisance, len(values))
-    if fixed is not None and len(values) * fixed.shape[1] ** 2 > _MOST_WORK:
-        fixed = None
+    columns = likelihood_columns(context.steps, series.values.index, len(values), context.nuisance)
+    mean, nuisance, fixed = columns.mean, columns.nuisance, columns.fixed
     fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance, fixed=fixed)
     if fit is None:
         return Evidence(problem=f"the {len(values)} values left after the plan are too few for an ARMA model.")
@@ -109,17 +110,12 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
             "differences": lags.count(1),
             "seasonal_difference": max((lag for lag in lags if lag > 1), default=0),
             "season": season,
-            "gaps": gaps,
+            "gaps": columns.gaps,
             "fit": fit,
+            **({} if context.comparison is None else order_shares(context.comparison, context.steps)),
+            **({} if lags or not held.plain < MA_FAR else {"share_summed": summed_share(values, context)}),
         }
     )
-
-
-def _affordable(nuisance: Floats | None, n: int) -> tuple[Floats | None, str]:
-    """The indicators of missing values, or None where there are too many, and what is done with those values."""
-    if nuisance is None or nuisance.shape[1] == 0:
-        return None, "none"
-    return (nuisance, "skipped") if n * nuisance.shape[1] ** 2 <= _MOST_WORK else (None, "filled")
 
 
 def _varies(values: Floats, series: TimeSeries, steps: tuple[Step, ...]) -> bool:
@@ -160,7 +156,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         return Judgement("inconclusive", "not examined", evidence.problem[:1].upper() + evidence.problem[1:])
     found = evidence.measures
     roots = cast("tuple[Root, ...]", found["roots"])
-    doubts = [*_ar_notes(found, roots, thresholds), *_ma_notes(found, roots)]
+    doubts = [*_ar_notes(found, roots, thresholds), *_ma_notes(found, roots, thresholds)]
     remarks = _remarks(found)
     if doubts:
         headline = doubts[0][0]
@@ -183,37 +179,52 @@ def _ar_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: 
     for root in (root for root in roots if root.part == "AR" and root not in cancelled):
         size = _per_season(root, found)
         near = size.modulus >= thresholds.near_unit_modulus or size.modulus + size.standard_error >= 1.0
-        if root.seasonal and near and root.period == found["season"]:
+        if root.seasonal and near and root.period == found["season"] and _likely(found, "share_wandering", thresholds):
             head = "the season may wander" if not found["seasonal_difference"] else "the season still wanders"
             text = f"The seasonal AR root is {_told(size)}, so {head}: "
             notes.append((head, text + f"a difference at lag {found['season']} may be needed."))
-        elif not root.seasonal and near and np.isinf(root.period):
-            text = (
-                f"The largest AR root is {_told(size)}, too near one to tell it from one: a shock {_lasting(found)}, "
-            )
-            notes.append(("one more difference may be needed", text + "and one more difference may be needed."))
+        elif not root.seasonal and near and np.isinf(root.period) and _likely(found, "share_more", thresholds):
+            text = f"The largest AR root is {_told(size)}, hardly to be told from one: a shock {_lasting(found)}, "
+            head = "one more difference may be needed"
+            notes.append((f"near-unit root: {head}", f"{text}and {head}."))
         elif not root.seasonal and np.isfinite(root.period) and root.modulus >= CYCLE_AT_ONE:
             text = f"A cycle of {root.period:.3g} steps has an AR root of {_told(size)} and hardly fades: "
             notes.append(("a cycle that hardly fades", text + "a season of that length may have been missed."))
     return notes[:2]
 
 
-def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...]) -> list[Note]:
+def _likely(found: Mapping[str, object], share: str, thresholds: Thresholds) -> bool:
+    """Whether the comparison of plans does not contradict a root: its plan has more than a negligible share."""
+    return cast(float, found.get(share, 1.0)) >= thresholds.contradicted_share
+
+
+def _at_one(found: Mapping[str, object], root: str, share: str, thresholds: Thresholds) -> bool:
+    """Whether an MA root is at one: by itself where the comparison of plans allows it, or less so where it says so."""
+    fall, evidence = cast(float, found[root]), cast(float, found.get(share, float("nan")))
+    if evidence >= thresholds.even_share:
+        return fall < MA_FAR
+    return fall < MA_AT_ONE and not evidence < thresholds.contradicted_share
+
+
+def _ma_notes(found: Mapping[str, object], roots: tuple[Root, ...], thresholds: Thresholds) -> list[Note]:
     """What MA roots at one, where a model is not invertible, say about the differences taken."""
     notes: list[Note] = []
     plain, seasonal = (cast(float, found[key]) for key in ("ma_at_one", "seasonal_ma_at_one"))
     largest = [root for root in roots if root.part == "MA" and not root.seasonal and np.isinf(root.period)]
-    if plain < MA_AT_ONE:
-        size = f"is {_told(largest[0])}, and holding it at one" if largest else "may be one: holding it there"
-        text = f"The largest MA root {size} costs only {max(plain, 0.0):.2f} of log likelihood; "
-        if found["differences"] or found["seasonal_difference"]:
+    size = f"is {_told(largest[0])}, and holding it at one" if largest else "may be one: holding it there"
+    text = f"The largest MA root {size} costs only {max(plain, 0.0):.2f} of log likelihood; "
+    if found["differences"] or found["seasonal_difference"]:
+        if _at_one(found, "ma_at_one", "share_less", thresholds):
             text += "one difference too many leaves such a root, so the plan with one less is worth a look."
-            notes.append(("one difference too many", text))
-        else:
-            text += "no difference was taken, so the series may already have been differenced, or be a change itself."
-            notes.append(("it may already have been differenced", text))
+            notes.append(("over-differenced: one difference too many", text))
+    # Without differences no plan has one less, so the series is summed up and asked again.
+    elif plain < MA_FAR and cast(float, found.get("share_summed", 1.0)) >= thresholds.even_share:
+        text += "no difference was taken, so the series may already have been differenced, or be a change itself"
+        if "share_summed" in found:
+            text += f": {per_cent(cast(float, found['share_summed']))} of the evidence says that its sums need none"
+        notes.append(("over-differenced: it may already have been differenced", f"{text}."))
     sized = [_per_season(root, found) for root in roots if root.part == "MA" and root.seasonal]
-    if seasonal < MA_AT_ONE and sized and found["seasonal_difference"]:
+    if sized and found["seasonal_difference"] and _at_one(found, "seasonal_ma_at_one", "share_fixed", thresholds):
         text = (
             f"The seasonal MA root is {_told(sized[0])}, and holding it at one costs only {max(seasonal, 0.0):.2f} of "
         )
@@ -271,7 +282,7 @@ def _reason(found: Mapping[str, object], roots: tuple[Root, ...]) -> str:
     if cycle is not None:
         parts.append(f"one pair makes a cycle of {cycle.period:.3g} steps with modulus {cycle.modulus:.2f}")
     half = cast(float, found["half_life"])
-    fading = f"after {half:.2g} steps" if half >= 1.0 else "within one step"
+    fading = ("after one step" if half < 1.05 else f"after {half:.2g} steps") if half >= 1.0 else "within one step"
     parts.append(f"the absolute psi weights sum to {found['psi_sum']:.3g}, and a shock is halved {fading}")
     return "; ".join(parts) + "."
 

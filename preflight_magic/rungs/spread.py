@@ -95,7 +95,7 @@ def _even(reason: str, even: bool) -> str:
 RUNG = Rung(
     name="spread",
     question="Does the spread grow with the level?",
-    after=("values",),
+    after=("calendar length",),
     method=METHOD,
     sources=(
         "Box and Cox (1964), An analysis of transformations, Journal of the Royal Statistical Society B 26, 211-252",

@@ -71,14 +71,20 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Returns
     -------
     Evidence
-        Measures `d_shares` and `n`; ADF, KPSS, DF-GLS and Phillips-Perron with constant, and with constant and line,
-        of the series after log and season, and once more of its first difference where the leading plan takes one;
-        Zivot-Andrews and the union of rejections of the former.
+        Measures `d_shares`, `n` and `outliers_at` (text: values that the comparison left out); ADF, KPSS, DF-GLS and
+        Phillips-Perron with constant, and with constant and line, of the series after log and season, and once more
+        of its first difference where the leading plan takes one; Zivot-Andrews and the union of rejections of the
+        former.
     """
     comparison = context.comparison
     if comparison is None:
         return Evidence(problem="no plan could be computed.")
-    measures = {"d_shares": shares(comparison, lambda one: one.d), "n": comparison.count}
+    kind = series.calendar.kind if series.calendar else None
+    measures = {
+        "d_shares": shares(comparison, lambda one: one.d),
+        "n": comparison.count,
+        "outliers_at": tuple(stamp_text(series.values.index[at], kind) for at in sorted(comparison.outliers)),
+    }
     values, told_series = _subject(series, context)
     lost = len(series.values) - len(values)  # at the start, to seasonal differences
     tests = root_tests(values, told_series)
@@ -118,7 +124,7 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     if evidence.problem is not None:
         return Judgement("inconclusive", "not examined", capital(evidence.problem))
     split = cast("Mapping[Hashable, float]", evidence.measures["d_shares"])
-    d = cast(int, next(iter(split)))
+    found, d = evidence.measures, cast(int, next(iter(split)))
     even = split[d] < thresholds.even_share
     reason = told(split, _WORDS)
     if even:
@@ -129,7 +135,18 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     beside = _beside(evidence.tests, d, thresholds.significance)
     steps = tuple(Difference(1) for _ in range(d))
     verdict: Verdict = "inconclusive" if even else "transform" if d else "clear"
-    return Judgement(verdict, _HEADLINES[d], f"{reason} {beside}".strip(), steps)
+    return Judgement(verdict, _HEADLINES[d], f"{reason} {beside}".strip() + _outliers(found), steps)
+
+
+def _outliers(found: Mapping[str, object]) -> str:
+    """What is done about isolated outliers; empty where there are none."""
+    stamps = cast("tuple[str, ...]", found.get("outliers_at", ()))
+    if not stamps:
+        return ""
+    shown = ", ".join(stamps[:3]) + (f" and {len(stamps) - 3} more" if len(stamps) > 3 else "")
+    what = "One isolated outlier was" if len(stamps) == 1 else f"{len(stamps)} isolated outliers were"
+    stay = "stays" if len(stamps) == 1 else "stay"
+    return f" {what} left out of the comparison of plans and {stay} in the data: {shown}."
 
 
 def _beside(tests: tuple[HypothesisTest, ...], d: int, significance: float) -> str:

@@ -8,7 +8,7 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from preflight_magic.model import CalendarKind, Evidence, Judgement, TimeSeries
+from preflight_magic.model import CalendarKind, Evidence, Judgement, TimeSeries, Verdict
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.stamps import counted, stamp_text
@@ -24,7 +24,8 @@ METHOD = (
     "mean interval between demands and the squared coefficient of variation of their sizes. A value stands alone if "
     "it lies many robust standard deviations from the running median of seven values, after the running median of the "
     "same season in seven cycles was taken from each; where all values are positive it must do so in the logs as "
-    "well, so that a peak which grows with the level is none."
+    "well, so that a peak which grows with the level is none. Where the last value stands alone below its neighbours, "
+    "its period may not be over: the clock is not asked, so the same data always give the same finding."
 )
 SOURCES = (
     "Syntetos, A. A., Boylan, J. E. and Croston, J. D. (2005). On the categorization of demand patterns. "
@@ -47,7 +48,8 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Evidence
         Measures `n`, `observed`, `missing`, `missing_share`, `longest_gap` (steps), `longest_gap_at`, `zeros`,
         `negatives`, `distinct`, `commonest_share`, `minimum`, `maximum`, `whole_numbers`, `unit_interval` (all values
-        from 0 to 1), `demand_interval` (steps), `demand_variation`, `outliers` and `outliers_at` (text).
+        from 0 to 1), `demand_interval` (steps), `demand_variation`, `outliers` and `outliers_at` (text), `incomplete`
+        (stamp of the last value where its period may not be over, else None) and `excluded` (spans, text).
     """
     if series.problem is not None:
         return Evidence(problem=series.problem)
@@ -58,6 +60,11 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     counts = np.unique(seen, return_counts=True)[1]
     interval, variation = demand_pattern(y)
     alone = np.flatnonzero(stands_alone(y, series.season[0], context.settings.thresholds.outlier_z))
+    last = len(y) - 1
+    near = y[max(last - REACH, 0) : last]
+    low = 0.0 <= y[last] < np.median(near[np.isfinite(near)]) if np.isfinite(near).any() else False
+    partial = kind not in (None, "counter") and last in alone and low
+    alone = alone[alone != last] if partial else alone
     measures: dict[str, object] = {
         "n": len(y),
         "observed": len(seen),
@@ -77,6 +84,10 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         "demand_variation": variation,
         "outliers": len(alone),
         "outliers_at": tuple(_text(series.values.index, int(row), kind) for row in alone),
+        "incomplete": _text(series.values.index, last, kind) if partial else None,
+        "excluded": tuple(
+            f"{stamp_text(first, kind)} to {stamp_text(end, kind)}" for first, end in context.settings.exclude
+        ),
     }
     return Evidence(measures)
 
@@ -201,7 +212,23 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     demand = _demand(found, thresholds)
     extra = demand or _alone(found)
     headline = f"{found['n']} values, {missing}" + (f", {extra}" if extra else "")
-    return Judgement("clear", headline, _reason(found, demand))
+    notes, sentences = [], [_reason(found, demand)]
+    if found["observed"] < thresholds.few_observations:
+        notes.append("too short")
+        sentences.append(
+            f"Fewer than {thresholds.few_observations} values are too short a series to tell a season, a shift or a "
+            "slow return to the mean: the plan leans on what is usual."
+        )
+    if found.get("incomplete"):
+        notes.append("the last value may be an incomplete period")
+        sentences.append(
+            f"The last value may be an incomplete period: {found['incomplete']} lies far below what its neighbours "
+            "and its season make plausible. If it is, drop it; the comparison of plans leaves out what stands alone."
+        )
+    if found.get("excluded"):
+        sentences.append(f"Excluded as asked, so treated as missing in every decision: {', '.join(found['excluded'])}.")
+    verdict: Verdict = "inconclusive" if notes else "clear"
+    return Judgement(verdict, ", ".join([headline, *notes]), " ".join(sentences))
 
 
 def _demand(found: dict[str, Any], thresholds: Thresholds) -> str:
@@ -227,7 +254,10 @@ def _reason(found: dict[str, Any], demand: str) -> str:
     elif found["outliers"]:
         stamps = found["outliers_at"]
         shown = ", ".join(stamps[:3]) + (f" and {len(stamps) - 3} more" if len(stamps) > 3 else "")
-        parts.append(f"values far from their neighbours at {shown}")
+        parts.append(
+            f"values far from their neighbours at {shown}: they stay in the data, and those that stand alone under the "
+            "leading plan are left out of the comparison of plans"
+        )
     if found["negatives"]:
         parts.append(f"{counted(found['negatives'], 'value')} below zero, so no log")
     elif found["zeros"]:

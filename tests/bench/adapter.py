@@ -6,6 +6,19 @@ import pandas as pd
 
 import preflight_magic as pf
 
+_WORDS = {
+    "over-differenced": "over-differenced",
+    "near-unit root": "near-unit-root",
+    "too even to call": "undecidable",
+    "too short": "too-short",
+}
+"""Words of a note, and the flags that a scorer knows."""
+
+
+def flags_of(note: str) -> tuple[str, ...]:
+    """Flags that a note of the overview raises."""
+    return tuple(flag for words, flag in _WORDS.items() if words in note)
+
 
 def decide(series: pd.Series, season: int) -> dict[str, object]:
     """Check one series and say which plan it was given.
@@ -19,7 +32,7 @@ def decide(series: pd.Series, season: int) -> dict[str, object]:
     Returns
     -------
     dict
-        Keys `log`, `trend`, `d`, `season` and `shift`, as in the overview.
+        Keys `log`, `trend`, `d`, `season` and `shift`, as in the overview, and `flags`: what its note warns of.
 
     Raises
     ------
@@ -35,4 +48,5 @@ def decide(series: pd.Series, season: int) -> dict[str, object]:
         "d": int(row["d"]),
         "season": str(row["season"]),
         "shift": bool(row["shift"]),
+        "flags": flags_of(str(row["note"])),
     }

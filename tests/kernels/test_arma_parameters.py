@@ -7,6 +7,7 @@ from preflight_magic.kernels.arma_parameters import (
     free_parameters,
     from_partial,
     polynomials,
+    polynomials_at,
     split,
     to_partial,
 )
@@ -56,3 +57,13 @@ def test_orders_say_what_they_are() -> None:
     assert str(Order(2, 1)) == "ARMA(2,1)"
     assert str(Order(0, 1, 0, 1, 12)) == "ARMA(0,1)(0,1) at 12"
     assert Order(2, 1, 1, 1, 4).size == 5
+
+
+EVERY = [Order(p, q, P, Q, 4) for p in range(4) for q in range(4) for P in (0, 1) for Q in (0, 1, 2)]
+
+
+@pytest.mark.parametrize("order", EVERY, ids=str)
+def test_polynomials_at_unconstrained_numbers(order):
+    free = np.random.default_rng(order.size).normal(0.0, 0.8, order.size)
+    for found, wanted in zip(polynomials_at(order, free), polynomials(order, coefficients(order, free)), strict=True):
+        assert found == pytest.approx(wanted, abs=1e-14)

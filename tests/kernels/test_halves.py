@@ -9,8 +9,8 @@ def ar1(phi: float, n: int, rng: np.random.Generator) -> np.ndarray:
     return np.asarray(lfilter([1.0], [1.0, -phi], rng.normal(size=n + 100))[100:])
 
 
-def z_of(values: np.ndarray) -> dict[str, float]:
-    found = compare_halves(values, (1,))
+def z_of(values: np.ndarray, lags: tuple[int, ...] = (1,), fitted: int = 0) -> dict[str, float]:
+    found = compare_halves(values, lags, fitted)
     assert found is not None
     return {one.name: one.z for one in found}
 
@@ -64,3 +64,24 @@ def test_degenerate_series_are_not_compared() -> None:
     spike[3] = 1.0
     found = compare_halves(spike)
     assert found is not None
+
+
+@pytest.mark.parametrize("phi", [0.0, 0.5, 0.8, -0.5])
+@pytest.mark.parametrize("n", [48, 96])
+def test_in_short_series_all_moments_together_err_as_rarely_as_they_say(phi: float, n: int) -> None:
+    rng = np.random.default_rng([n, 9])
+    # Four moments at 5 % together: 2.50 each.
+    largest = [max(abs(z) for z in z_of(ar1(phi, n, rng), (1, 2)).values()) for _ in range(200)]
+    assert np.mean(np.array(largest) > 2.50) < 0.09
+
+
+def test_a_pattern_taken_out_before_is_counted() -> None:
+    rng = np.random.default_rng(10)
+    wide, counted = [], []
+    for _ in range(300):
+        values = rng.normal(size=(4, 12))
+        left = (values - values.mean(axis=0)).ravel()
+        wide.append(z_of(left)["mean"])
+        counted.append(z_of(left, fitted=11)["mean"])
+    assert np.mean(np.abs(counted) > 1.96) < 0.09
+    assert np.std(wide) > 1.1 * np.std(counted)

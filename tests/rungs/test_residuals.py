@@ -7,7 +7,7 @@ from statsmodels.stats.diagnostic import acorr_ljungbox
 from preflight_magic.model import Calendar, Difference, Evidence, HypothesisTest, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context
-from preflight_magic.rungs.residuals import RUNG
+from preflight_magic.rungs.residuals import EXACT, RUNG
 from tests.sentences import assert_reads_well
 
 
@@ -27,7 +27,12 @@ CASES = [
     (evidence(one_test(LB, 0.001), *FINE[1:]), "inconclusive", "correlation left"),
     # three lags are one question asked three times
     (evidence(one_test(LB, 0.02), one_test(LB, 0.5, 12), one_test(LB, 0.5, 24)), "clear", "nothing left to explain"),
-    (evidence(*FINE[:2], one_test(ARCH, 0.01, 4)), "clear", "the spread of the innovations changes"),
+    (evidence(*FINE[:2], one_test(ARCH, 0.01, 4)), "inconclusive", "the spread of the innovations changes"),
+    # two lags and the ARCH test are three questions
+    (evidence(*FINE[:2], one_test(ARCH, 0.02, 4)), "clear", "nothing left to explain"),
+    # where columns were taken out, the test that allows for them decides
+    (evidence(one_test(LB, 1e-9), one_test(EXACT, 0.4), *FINE[2:]), "clear", "nothing left to explain"),
+    (evidence(one_test(LB, 0.9), one_test(EXACT, 0.001), *FINE[2:]), "inconclusive", "correlation left"),
     (evidence(*FINE[:3], one_test(JB, 1e-9, None)), "clear", "not normal"),
     (evidence(*FINE, outliers=("2014-03",), largest=5.2), "clear", "1 outlier left"),
     (

@@ -60,7 +60,10 @@ def seasonal(part: str, coefficient: float, error: float = 0.1) -> Root:
     return Root(part, modulus, 12.0, error * modulus / (12 * coefficient), True)  # type: ignore[arg-type]
 
 
-ONE_MORE, TOO_MANY = "one more difference may be needed", "one difference too many"
+ONE_MORE = "near-unit root: one more difference may be needed"
+TOO_MANY = "over-differenced: one difference too many"
+ALREADY = "over-differenced: it may already have been differenced"
+PATTERN = "a fixed pattern was differenced"
 CASES = [
     (evidence(), "clear", "white noise"),
     (evidence(ar(0.7)), "clear", "stationary, largest AR root 0.70"),
@@ -78,11 +81,32 @@ CASES = [
     (evidence(ma(0.97), ma_at_one=0.1, differences=1), "inconclusive", TOO_MANY),
     (evidence(ma(0.999, NAN), ma_at_one=0.0, seasonal_difference=12), "inconclusive", TOO_MANY),
     (evidence(ma(0.97), ma_at_one=0.6, differences=1), "clear", "stationary, no AR root"),
-    (evidence(ma(0.97), ma_at_one=0.1), "inconclusive", "it may already have been differenced"),
+    (evidence(ma(0.97), ma_at_one=0.1), "inconclusive", ALREADY),
+    # the comparison of plans contradicts a root, or speaks for it
+    (evidence(ar(0.96), share_more=0.04), "clear", "stationary, largest AR root 0.96"),
+    (evidence(ar(0.96), share_more=0.06), "inconclusive", ONE_MORE),
+    (evidence(ma(0.97), ma_at_one=0.1, differences=1, share_less=0.04), "clear", "stationary, no AR root"),
+    (evidence(ma(0.97), ma_at_one=0.1, differences=1, share_less=0.06), "inconclusive", TOO_MANY),
+    (evidence(ma(0.97), ma_at_one=0.6, differences=1, share_less=0.69), "clear", "stationary, no AR root"),
+    (evidence(ma(0.97), ma_at_one=2.1, differences=1, share_less=0.71), "inconclusive", TOO_MANY),
+    (evidence(ma(0.97), ma_at_one=2.3, differences=1, share_less=0.99), "clear", "stationary, no AR root"),
+    (evidence(ma(0.97), ma_at_one=2.1, share_summed=0.71), "inconclusive", ALREADY),
+    (evidence(ma(0.97), ma_at_one=0.1, share_summed=0.69), "clear", "stationary, no AR root"),
+    (evidence(seasonal("AR", 0.97), share_wandering=0.04), "clear", "stationary, seasonal AR root 0.97"),
+    (
+        evidence(seasonal("MA", 0.97), seasonal_ma_at_one=0.1, seasonal_difference=12, share_fixed=0.01),
+        "clear",
+        "stationary, no AR root",
+    ),
+    (
+        evidence(seasonal("MA", 0.97), seasonal_ma_at_one=0.1, seasonal_difference=12, share_fixed=0.2),
+        "inconclusive",
+        PATTERN,
+    ),
     (
         evidence(seasonal("MA", 0.97), seasonal_ma_at_one=0.1, seasonal_difference=12, differences=1),
         "inconclusive",
-        "a fixed pattern was differenced",
+        PATTERN,
     ),
     (evidence(seasonal("MA", 0.97), seasonal_ma_at_one=0.1), "clear", "stationary, no AR root"),
     (evidence(seasonal("AR", 0.97)), "inconclusive", "the season may wander"),
@@ -215,7 +239,7 @@ def test_a_differenced_pattern_is_noted() -> None:
         return np.diff(values[12:] - values[:-12])
 
     steps = (Difference(12), Difference(1))
-    assert headlines(patterned, steps, 15).count("a fixed pattern was differenced") >= 10
+    assert headlines(patterned, steps, 15).count(PATTERN) >= 10
 
 
 def test_removed_pattern_line_and_shift_leave_no_trace() -> None:

@@ -8,6 +8,7 @@ import numpy as np
 import pandas as pd
 import pytest
 
+import preflight_magic as pf
 from preflight_magic.model import Difference, Evidence, HypothesisTest, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context
@@ -122,3 +123,17 @@ def test_without_a_comparison():
     found = RUNG.judge(RUNG.examine(TimeSeries("x", pd.Series(np.arange(9.0)), None), Context()), BOUNDS)
     assert (found.verdict, found.steps) == ("inconclusive", ())
     assert_reads_well(found.reason)
+
+
+def test_what_is_done_about_outliers_is_said() -> None:
+    values = pd.Series(
+        np.random.default_rng(12).normal(size=90), index=pd.period_range("2010-01", periods=90, freq="M")
+    )
+    values.iloc[40] += 12.0
+    values.iloc[70] -= 15.0
+    report = pf.check(values.rename("freight"), season=1, cache=False, progress=False)["freight"]
+    finding = report.findings["unit root"]
+    assert finding.measures["outliers_at"] == ("2013-05", "2015-11")
+    said = "2 isolated outliers were left out of the comparison of plans and stay in the data: 2013-05, 2015-11."
+    assert finding.reason.endswith(said)
+    assert report.transformed.loc["2013-05"] == values.loc["2013-05"]

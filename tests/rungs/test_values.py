@@ -43,13 +43,14 @@ GAPS = {"missing": 5, "observed": 139, "missing_share": 5 / 144, "longest_gap": 
             {"outliers": 1, "outliers_at": ("2015-03",)},
             "clear",
             "144 values, none missing, 1 isolated outlier",
-            "Values far from their neighbours at 2015-03.",
+            "Values far from their neighbours at 2015-03: they stay in the data, and those that stand alone under the "
+            "leading plan are left out of the comparison of plans.",
         ),
         (
             {"outliers": 5, "outliers_at": ("a", "b", "c", "d", "e")},
             "clear",
             "144 values, none missing, 5 isolated outliers",
-            "at a, b, c and 2 more.",
+            "at a, b, c and 2 more: they stay in the data",
         ),
         ({"negatives": 2, "zeros": 1}, "clear", "144 values, none missing", "2 values below zero, so no log."),
         ({"zeros": 1}, "clear", "144 values, none missing", "1 value equal to zero, so no plain log."),
@@ -64,6 +65,20 @@ GAPS = {"missing": 5, "observed": 139, "missing_share": 5 / 144, "longest_gap": 
         ),
         ({"demand_interval": 1.32, "demand_variation": 0.49}, "clear", "none missing, lumpy demand", "size is 0.49"),
         ({"demand_interval": float("nan")}, "clear", "144 values, none missing", "All values"),
+        ({"observed": 24}, "clear", "144 values, none missing", "All values"),
+        ({"observed": 23}, "inconclusive", "none missing, too short", "Fewer than 24 values are too short"),
+        (
+            {"incomplete": "2023-12"},
+            "inconclusive",
+            "none missing, the last value may be an incomplete period",
+            "The last value may be an incomplete period: 2023-12 lies far below",
+        ),
+        (
+            {"excluded": ("2020-03 to 2020-08",)},
+            "clear",
+            "144 values, none missing",
+            "Excluded as asked, so treated as missing in every decision: 2020-03 to 2020-08.",
+        ),
         ({"observed": 7}, "infeasible", "too few values", "7 values observed, where 8 are needed."),
         ({"distinct": 1}, "infeasible", "one value only", "nothing to decide"),
     ],
@@ -177,3 +192,48 @@ def test_outliers_are_dated():
     values = np.random.default_rng(6).normal(size=60)
     values[26] += 30
     assert examined(values)["outliers_at"] == ("2014-03",)
+
+
+def cut(kind, seed, share):
+    """A series of totals at some level whose last value is only a part of itself."""
+    rng = np.random.default_rng(seed)
+    y = simulated(kind, rng)
+    y = y + 40.0 if kind != "growing pattern" else y
+    y[-1] *= share
+    return y
+
+
+@pytest.mark.parametrize("kind", ["noise", "fixed pattern", "growing pattern"])
+def test_an_incomplete_last_period_is_noted(kind):
+    found = [examined(np.abs(cut(kind, seed, 0.3)), season=12) for seed in range(40)]
+    assert sum(one["incomplete"] == "2023-12" for one in found) >= 36
+    # It is told once, not as an outlier as well.
+    assert all("2023-12" not in one["outliers_at"] for one in found if one["incomplete"])
+
+
+@pytest.mark.parametrize("kind", ["noise", "random walk", "fixed pattern", "growing pattern"])
+def test_a_whole_last_period_is_not(kind):
+    found = [examined(np.abs(cut(kind, seed, 1.0)), season=12)["incomplete"] for seed in range(150)]
+    assert sum(one is not None for one in found) <= 1
+
+
+def test_only_a_low_last_value_of_a_calendar_may_be_incomplete():
+    y = 100.0 + np.random.default_rng(1).normal(size=60)
+    high, low = y.copy(), y.copy()
+    high[-1], low[-1] = 160.0, 30.0
+    assert (examined(high)["incomplete"], examined(high)["outliers"]) == (None, 1)
+    assert (examined(low)["incomplete"], examined(low)["outliers"]) == ("2016-12", 0)
+    assert examined(low - 110.0)["incomplete"] is None
+    (numbered,) = read(pd.Series(low, name="freight"), season=1)
+    assert RUNG.examine(numbered, Context(Settings())).measures["incomplete"] is None
+    gap = low.copy()
+    gap[-5:-1] = np.nan
+    assert examined(gap)["incomplete"] in (None, "2016-12")
+
+
+def test_excluded_spans_are_named():
+    spans = (("2013-01", "2013-03"), (pd.Period("2014-02", "M"), pd.Period("2014-02", "M")))
+    (series,) = read(ferry_line()[["freight"]], exclude=list(spans))
+    found = RUNG.examine(series, Context(Settings(exclude=spans)))
+    assert found.measures["excluded"] == ("2013-01 to 2013-03", "2014-02 to 2014-02")
+    assert "2013-01 to 2013-03, 2014-02 to 2014-02." in RUNG.judge(found, Thresholds()).reason

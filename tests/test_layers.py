@@ -29,7 +29,7 @@ REPORT = {
     "batch",
 }
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
-SHELL = {"command_line", "completion", "magic"}
+SHELL = {"command_line", "completion", "cell_value", "magic"}
 
 # Part: what it may import from the package, and from outside the standard library. Imports inside functions and those
 # for annotations alone count too. An entry allows the module and everything below it.
@@ -51,6 +51,7 @@ LAYERS: dict[str, tuple[set[str], set[str]]] = {
     "magic": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "command_line": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "completion": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
+    "cell_value": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "__main__": (NOUNS | {"report", "batch", "intake", "policy"}, set()),
     "": (CHECKS | SHELL | {"demo"} | REPORT, set()),
 }

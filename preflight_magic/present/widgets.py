@@ -15,6 +15,12 @@ if TYPE_CHECKING:
     from preflight_magic.present.contract import SeriesView
 
 _NUMBERS = itertools.count(1)
+HINT = (
+    "Turn a step off or on and the series is examined again; More changes has other plans, seasons and spans; "
+    "%seriescode puts the code into a new cell."
+)
+"""Said once in a session, until the first click."""
+_hints = iter([HINT])
 
 
 def in_notebook() -> bool:
@@ -81,6 +87,8 @@ class Controller:
             if self.overview is not None:
                 self.overview.show()
             self.card.show()
+            if self.card.view.problem is None:
+                self.guard.say(next(_hints, ""))
 
     def close(self) -> None:
         """Close every widget; what is shown stays as it is."""

@@ -218,7 +218,7 @@ def test_saved_notebook_reads_without_a_kernel_and_without_trust(
 ) -> None:
     box = opened.output(1).locator(".pfm-switch input").nth(1)
     box.click()
-    opened.page.wait_for_function("() => document.querySelector('.pfm-plan').textContent.includes('(left out)')")
+    opened.page.wait_for_function("() => !document.querySelector('pre.pfm-code').textContent.includes('diff(12)')")
     opened.command("docmanager:save")
     opened.page.wait_for_timeout(1000)
     content = lab.read(opened.name)

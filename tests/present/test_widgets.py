@@ -353,6 +353,19 @@ def test_filter_and_order(displayed: list[Handle]) -> None:
     assert [at for _, at in overview.choice.options] == list(range(10))
 
 
+def test_a_hint_is_given_once_and_goes_with_the_first_click(
+    displayed: list[Handle], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(widgets, "_hints", iter([widgets.HINT]))
+    first, second = Controller(FakeSeries()), Controller(FakeSeries())
+    first.show()
+    second.show()
+    assert "%seriescode" in message(first)
+    assert message(second) == ""
+    boxes(first)[0].value = False
+    assert message(first) == ""
+
+
 def test_every_control_has_words(displayed: list[Handle]) -> None:
     controller = Controller(FakeReport(FakeSeries(), FakeSeries(name="freight")))
     overview, controls = controller.overview, controller.card.controls

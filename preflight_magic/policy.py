@@ -52,10 +52,9 @@ class Thresholds:
     log_margin: float = 7.0
 
     # -- season
-    # p-value below which a season is there: stricter than usual, since a false season costs a pattern or a difference.
-    # Chosen between 0.001 and 0.01 by simulation and by forecasts on a third of the M1 competition (Makridakis and
-    # others 1982).
-    season_p: float = 0.01
+    # p-value, standardised to 100 values (Good 1992), below which a season is there: stricter than usual, since a false
+    # season costs a pattern or a difference. Chosen between 0.001 and 0.01 by simulation.
+    season_p: float = 0.005
 
     # -- prior odds of the comparison of plans: what speaks for a plan before the data, in natural logarithms. A
     # simpler plan is preferred a little. The amounts were set on simulated series of known truth, with a look at

@@ -40,7 +40,7 @@ class PlanPrior:
     log_margin : float
         Fall of -2 log likelihood from which a log is taken.
     season_p : float
-        p-value below which a season is there.
+        Standardised p-value below which a season is there.
     trend, shift : float
         Log odds against a trend, and against a shift besides the number of its dates.
     difference, second, wandering, both : float

@@ -124,7 +124,7 @@ class _Found:
 def _best_plans(x: Array, period: int, prior: PlanPrior) -> _Found | None:
     n = len(x)
     presence = season_presence(x, period) if period > 1 and _cycles(x, period) else None
-    pattern = presence is not None and presence.p_value < prior.season_p
+    pattern = presence is not None and presence.standardised < prior.season_p
     seen = np.isfinite(x)
     filled = np.where(seen, x, np.interp(np.arange(n), np.flatnonzero(seen), x[seen]))
     levels = Levels(filled, period if pattern else 1, True, pattern, missing_columns(x))

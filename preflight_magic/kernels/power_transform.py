@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from preflight_magic.kernels.restricted_likelihood import Array, line_column, pattern_columns
 
@@ -72,7 +73,8 @@ def log_gain(values: Array, period: int) -> float:
     Box and Cox (1964), An analysis of transformations, Journal of the Royal Statistical Society B 26, 211-252, in a
     regression on constant, line, pattern, three lags and, in longer series, two seasonal lags. Errors have
     Student's t distribution (Lange, Little and Taylor 1989, Robust statistical modeling using the t distribution,
-    Journal of the American Statistical Association 84, 881-896), so that a few outliers do not decide.
+    Journal of the American Statistical Association 84, 881-896), so that a few outliers do not decide; values far off
+    in both descriptions are left out and both are made once more.
     """
     seen = values[np.isfinite(values)]
     if not (seen > 0).all():
@@ -80,10 +82,27 @@ def log_gain(values: Array, period: int) -> float:
     level = float(np.exp(np.log(seen).mean()))
     plain = values / level
     lags = (1, 2, 3, period, period + 1) if period > 3 and len(values) >= _CYCLES_FOR_LAGS * period else (1, 2, 3)
-    raw, logged = lagged_design(plain, period, lags), lagged_design(np.log(plain), period, lags)
+    gain, apart = _gain(plain, period, lags)
+    if apart.any() and apart.sum() <= max(2, _MOST_APART * len(values)):
+        gain, _ = _gain(np.where(apart, np.nan, plain), period, lags)
+    return gain
+
+
+def _gain(values: Array, period: int, lags: tuple[int, ...]) -> tuple[float, NDArray[np.bool_]]:
+    """The gain, and which values lie far off both with and without the logarithm."""
+    apart = np.zeros(len(values), dtype=bool)
+    rows = np.isfinite(values)
+    rows[: max(lags)] = False
+    raw, logged = lagged_design(values, period, lags), lagged_design(np.log(values), period, lags)
     if raw[2] < 0 or logged[2] < 0:
-        return float("nan")
-    return deviance(*raw[:2]) - deviance(*logged[:2]) - 2.0 * float(logged[1].sum())
+        return float("nan"), apart
+    total, far = 0.0, np.ones(len(raw[1]), dtype=bool)
+    for sign, (design, response, _) in ((1.0, raw), (-1.0, logged)):
+        left, scale = _fitted(design, response)
+        total += sign * _deviance(left, scale)
+        far &= left**2 > _APART**2 * scale
+    apart[rows] = far
+    return total - 2.0 * float(logged[1].sum()), apart
 
 
 _DEGREES = 5.0
@@ -98,8 +117,20 @@ _FARTHEST = 8.0
 """Standard deviations beyond which an error counts no further, so that one wild value does not decide."""
 
 
+_APART = 4.5
+"""Standard deviations from which a value that is as far off with the logarithm as without says nothing of either: it is
+left out, so that its traces in the lags do not decide. Common practice."""
+_MOST_APART = 0.05
+"""Share of such values above which they are the way of the series. Common practice."""
+
+
 def deviance(design: Array, response: Array) -> float:
     """-2 log likelihood of a regression with t errors, without its constant."""
+    return _deviance(*_fitted(design, response))
+
+
+def _fitted(design: Array, response: Array) -> tuple[Array, float]:
+    """Errors of a regression with t errors, and their squared scale."""
     basis = np.linalg.qr(design)[0]
     left = response - basis @ (basis.T @ response)
     scale = (1.4826 * float(np.median(np.abs(left)))) ** 2
@@ -112,6 +143,9 @@ def deviance(design: Array, response: Array) -> float:
         last, scale = scale, float(np.mean(weights * left**2))
         if abs(scale - last) < 1e-4 * last:
             break
-    scale = max(scale, _EXACT)
+    return left, max(scale, _EXACT)
+
+
+def _deviance(left: Array, scale: float) -> float:
     total = np.log1p(np.minimum(left**2 / scale, _FARTHEST**2) / _DEGREES).sum()
     return float(len(left) * np.log(scale) + (_DEGREES + 1.0) * total)

@@ -20,6 +20,20 @@ class Presence:
     numerator: int
     denominator: int
 
+    @property
+    def nobs(self) -> int:
+        """Rows of the regression: it has a constant, a line and three lags besides the pattern."""
+        return self.numerator + self.denominator + 5
+
+    @property
+    def standardised(self) -> float:
+        """p-value standardised to 100 values, ``p sqrt(n / 100)``, at most a half.
+
+        A p-value speaks the less for a season the longer the series is. Good (1992), The Bayes/non-Bayes compromise: a
+        brief review, Journal of the American Statistical Association 87, 597-606.
+        """
+        return float(np.minimum(self.p_value * (self.nobs / 100.0) ** 0.5, 0.5))
+
 
 def season_presence(values: Array, period: int) -> Presence:
     """F test of the seasonal contrasts in a regression on constant, line and three lags.

@@ -20,6 +20,7 @@ LABELS: Mapping[str, str] = {
     "season_asked": "season given by the person",
     "asked": "season asked about",
     "presence_p": "p-value of a season",
+    "presence_standardised": "the same, standardised to 100 values",
     "shift_f": "largest F of a level shift",
     "shift_t": "t of the level shift",
     "trend_t": "t of the trend",

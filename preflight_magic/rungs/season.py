@@ -18,7 +18,8 @@ from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.rungs.shares import capital, does, p_text, shares, told
 
 METHOD = (
-    "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level. "
+    "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level "
+    "that grows stricter with the length of the series. "
     "Then whether the pattern is fixed: a seasonal difference of a fixed pattern leaves a seasonal moving average with "
     "a root at one, so both plans are models of the same data and their likelihoods are compared. HEGY (null: a unit "
     "root at every seasonal frequency) and Canova-Hansen (null: a fixed pattern) are shown beside it; HEGY is weak in "
@@ -44,7 +45,8 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Returns
     -------
     Evidence
-        Measures `period`, `asked` (the period considered), `presence_p`, `season_shares`; where they can be computed
+        Measures `period`, `asked` (the period considered), `presence_p`, `presence_standardised` (to 100
+        values), `season_shares`; where they can be computed
         `seasonal_strength` (by moving averages), `hegy_by_cycle` and `canova_hansen_by_cycle` (p-values by the length
         of the cycle in steps). The F test of the pattern, HEGY and Canova-Hansen, where there is a period.
     """
@@ -56,7 +58,8 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     tests: tuple[HypothesisTest, ...] = ()
     presence = comparison.presence
     if presence is not None and math.isfinite(presence.p_value):
-        measures |= {"presence_p": presence.p_value, "season_shares": shares(comparison, _kind)}
+        measures |= {"presence_p": presence.p_value, "presence_standardised": presence.standardised}
+        measures |= {"season_shares": shares(comparison, _kind)}
     # An exact pattern leaves nothing to divide by: there is a season, and no test to show.
     if presence is not None and math.isfinite(presence.p_value) and math.isfinite(presence.statistic):
         tests = (
@@ -66,7 +69,7 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
                 statistic=presence.statistic,
                 p_value=presence.p_value,
                 p_bound="exact",
-                nobs=presence.numerator + presence.denominator + 5,
+                nobs=presence.nobs,
                 lags=3,
                 terms="ct",
                 options={
@@ -110,8 +113,12 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         reason = f"There are too few complete cycles of {asked} to tell a season."
         return Judgement("clear", "no season can be shown", reason)
     p_text = "p < 0.001" if p < 0.001 else f"p = {p:.3f}"
-    if not p < thresholds.season_p:
-        reason = f"The F test of a pattern of {period} does not reject at {thresholds.season_p:g} ({p_text})."
+    standardised = cast(float, found["presence_standardised"])
+    if not standardised < thresholds.season_p:
+        reason = (
+            f"The F test of a pattern of {period} says too little for a season: {p_text}, standardised to 100 values "
+            f"{standardised:.{4 if standardised < 0.01 else 3}f}; below {thresholds.season_p:g} is wanted."
+        )
         return Judgement("clear", "no season", reason)
     split = cast("Mapping[Hashable, float]", found["season_shares"])
     kind = next(iter(split))
@@ -154,6 +161,8 @@ RUNG = Rung(
     after=("shift and trend",),
     method=METHOD,
     sources=(
+        "Good (1992), The Bayes/non-Bayes compromise: a brief review, "
+        "Journal of the American Statistical Association 87, 597-606",
         "Harville (1974), Bayesian inference for variance components using only error contrasts, "
         "Biometrika 61, 383-385",
         "Kass and Raftery (1995), Bayes factors, Journal of the American Statistical Association 90, 773-795",

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from scipy.signal import lfilter
 
 from preflight_magic.kernels.power_transform import log_gain
 
@@ -75,3 +76,18 @@ def test_too_short(n, period):
 def test_exact_series_give_no_false_figure(values):
     gain = log_gain(values, 1)
     assert np.isnan(gain) or np.isfinite(gain)
+
+
+@pytest.mark.parametrize("seed", range(8))
+def test_spikes_on_a_series_of_constant_spread_call_no_log(seed):
+    rng = np.random.default_rng(seed)
+    values = 200.0 + 5.0 * lfilter([1.0], [1.0, -0.5], rng.standard_normal(480))
+    values[rng.choice(480, 10, replace=False)] += 60.0
+    assert log_gain(values, 1) < 7
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_spikes_do_not_hide_that_the_spread_grows(seed):
+    values = growing(240, seed=seed)
+    values[[50, 120, 200]] *= 3.0
+    assert log_gain(values, 12) > 7

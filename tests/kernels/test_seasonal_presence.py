@@ -7,7 +7,7 @@ import pytest
 from scipy.signal import lfilter
 from statsmodels.regression.linear_model import OLS
 
-from preflight_magic.kernels.seasonal_presence import season_presence
+from preflight_magic.kernels.seasonal_presence import Presence, season_presence
 
 
 def noise(n, ar=(), seed=0):
@@ -80,3 +80,11 @@ def test_too_short():
     found = season_presence(noise(18), 12)
     assert np.isnan(found.p_value)
     assert np.isnan(found.statistic)
+
+
+def test_p_value_is_standardised_to_a_hundred_values():
+    # Good (1992): p sqrt(n / 100), at most a half.
+    found = Presence(2.0, 0.02, 11, 209)
+    assert found.nobs == 225
+    assert found.standardised == pytest.approx(0.03)
+    assert Presence(0.5, 0.9, 11, 209).standardised == 0.5

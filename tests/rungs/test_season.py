@@ -19,7 +19,7 @@ FIXED, WANDERING = {"fixed": 0.82, "difference": 0.18}, {"difference": 0.9, "fix
 
 
 def evidence(asked, period, p, split=None):
-    measures = {"asked": asked, "period": period, "presence_p": p}
+    measures = {"asked": asked, "period": period, "presence_p": p, "presence_standardised": p * 1.2}
     return Evidence(measures | ({} if split is None else {"season_shares": split}))
 
 
@@ -29,8 +29,16 @@ def evidence(asked, period, p, split=None):
         (1, 1, math.nan, None, "clear", (), "without a seasonal period"),
         (12, 1, math.nan, None, "clear", (), "too few complete cycles of 12"),
         (12, 12, math.nan, None, "clear", (), "too few complete cycles of 12"),
-        (12, 12, 0.15, {"none": 1.0}, "clear", (), "does not reject at 0.001 (p = 0.150)"),
-        (12, 12, 0.001, {"none": 1.0}, "clear", (), "does not reject"),
+        (
+            12,
+            12,
+            0.15,
+            {"none": 1.0},
+            "clear",
+            (),
+            "p = 0.150, standardised to 100 values 0.180; below 0.001 is wanted",
+        ),
+        (12, 12, 0.00098, {"none": 1.0}, "clear", (), "p < 0.001, standardised to 100 values 0.0012"),
         (12, 12, 1e-20, FIXED, "transform", (RemovePattern(12),), "82 % of the evidence is for a fixed pattern, 18 %"),
         (4, 4, 1e-20, WANDERING, "transform", (Difference(4),), "for a wandering one, 10 % for a fixed pattern."),
         (12, 12, 1e-5, {"fixed": 0.69, "difference": 0.31}, "inconclusive", (RemovePattern(12),), "too even to call"),

@@ -12,7 +12,7 @@ import pandas as pd
 from preflight_magic.present import words
 
 if TYPE_CHECKING:
-    from preflight_magic.present.cards import HalvesPicture, OverviewRow, Picture, PlanRow, RootsPicture
+    from preflight_magic.present.cards import HalvesPicture, OverviewRow, Picture, PlanRow, ProofCard, RootsPicture
 
 
 def before_after_alt(picture: Picture) -> str:
@@ -83,6 +83,16 @@ def halves_alt(picture: HalvesPicture) -> str:
     ]
     since = words.stamp(picture.second_from, picture.noun)
     return f"First half and second half (from {since}) of the transformed series: {'; '.join(told)}."
+
+
+def proof_alt(proof: ProofCard) -> str:
+    """Error of each forecast, and its range over the origins."""
+    told = []
+    for row in proof.rows[:6]:
+        seen = [one for one in row.at_origins if math.isfinite(one)]
+        spread = f" ({words.number(min(seen))} to {words.number(max(seen))})" if seen else ""
+        told.append(f"{row.forecast} {words.number(row.error)}{spread}")
+    return f"Mean absolute scaled errors, {proof.origins}: {'; '.join(told)}."
 
 
 def spark_alts(row: OverviewRow) -> tuple[str, str]:

@@ -37,6 +37,9 @@ class Asks(Protocol):
     def span(self, text: str) -> None:
         """One more span left out."""
 
+    def prove(self) -> None:
+        """Forecasts from the past."""
+
     def back(self) -> None:
         """The recommendation again."""
 
@@ -60,6 +63,8 @@ class CardControls:
         self.boxes: list[Any] = []
         self._back = button("Back to the recommendation", "Steps, season and spans as recommended", "pfm-back",
                             lambda: self._run(asks.back))  # fmt: skip
+        self._prove = button("Forecast the past", "From past origins, with this plan and others; takes seconds",
+                             "pfm-prove", lambda: self._run(asks.prove))  # fmt: skip
         self._more = ipywidgets.ToggleButton(
             description="More changes", tooltip="Other steps, other plans, another season, a span left out"
         )
@@ -78,7 +83,7 @@ class CardControls:
     def set_switches(self, offered: Sequence[Switch], usable: bool) -> None:
         """Show these switches in place of the last ones; nothing where the series cannot be checked."""
         old, self.boxes = self.boxes, [self._box(i, one) for i, one in enumerate(offered)]
-        self._steps.children = [*self.boxes, self._back, self._more] if usable else []
+        self._steps.children = [*self.boxes, self._back, self._more, self._prove] if usable else []
         for box in old:
             close(box)
 
@@ -88,9 +93,10 @@ class CardControls:
             if box.value != value:
                 box.value = value
 
-    def set_back(self, possible: bool) -> None:
-        """Say whether there is a way back."""
+    def set_back(self, possible: bool, proved: bool) -> None:
+        """Say whether there is a way back, and whether a proof is there already."""
         self._back.disabled = not possible
+        self._prove.disabled = proved
 
     def _box(self, position: int, switch: Switch) -> Any:
         import ipywidgets
@@ -181,7 +187,7 @@ class CardControls:
 
     def close(self) -> None:
         """Close every widget, also those that are not shown now."""
-        for widget in (self.box, self._back, self._more, *self.boxes, *self._fields.values()):
+        for widget in (self.box, self._back, self._more, self._prove, *self.boxes, *self._fields.values()):
             close(widget)
 
 

@@ -113,6 +113,28 @@ class HalvesPicture:
     noun: str
 
 
+@dataclass(frozen=True)
+class ProofLine:
+    """One way to forecast; `error` and `at_origins` are mean absolute scaled errors, NaN where there is none."""
+
+    forecast: str
+    error: float
+    ratio: str
+    coverage: str
+    p: str
+    at_origins: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class ProofCard:
+    """Forecasts from the past, the plan first; `origins` tells in words where they start and how far they reach."""
+
+    rows: tuple[ProofLine, ...]
+    sentences: tuple[str, ...]
+    origins: str
+    problem: str | None
+
+
 @dataclass(frozen=True, eq=False)
 class Card:
     """Everything that is shown of one series; `yours` tells season and spans that a person chose."""
@@ -129,6 +151,7 @@ class Card:
     picture: Picture | None = None
     roots: RootsPicture | None = None
     halves: HalvesPicture | None = None
+    proof: ProofCard | None = None
     rungs: tuple[RungCard, ...] = ()
     plans: tuple[PlanRow, ...] = ()
     codes: tuple[CodeForm, ...] = ()

@@ -24,6 +24,58 @@ class PlanView(Protocol):
         """Transforms that can be undone."""
 
 
+class ProofRowView(Protocol):
+    """Errors of one way to forecast from past origins."""
+
+    @property
+    def forecast(self) -> str:
+        """Its name; the plan comes first."""
+
+    @property
+    def mase(self) -> float:
+        """Mean absolute scaled error, over origins and steps."""
+
+    @property
+    def coverage(self) -> float:
+        """Share of the values inside the 90 % interval."""
+
+    @property
+    def ratio(self) -> float:
+        """Error over that of the plan."""
+
+    @property
+    def p_value(self) -> float:
+        """Of a test against the plan; NaN where there is none."""
+
+
+class ProofView(Protocol):
+    """Forecasts of a series from past origins."""
+
+    @property
+    def horizon(self) -> int:
+        """Steps ahead."""
+
+    @property
+    def origins(self) -> Sequence[object]:
+        """Last stamp of each training part."""
+
+    @property
+    def rows(self) -> Sequence[ProofRowView]:
+        """The plan first."""
+
+    @property
+    def by_origin(self) -> Mapping[str, Sequence[float]]:
+        """Forecast -> error at each origin."""
+
+    @property
+    def sentences(self) -> Sequence[str]:
+        """What follows."""
+
+    @property
+    def problem(self) -> str | None:
+        """Why nothing could be computed, or None."""
+
+
 class SeriesView(Protocol):
     """One checked series."""
 
@@ -78,6 +130,10 @@ class SeriesView(Protocol):
     @property
     def problem(self) -> str | None:
         """Why the series cannot be checked, or None."""
+
+    @property
+    def proof(self) -> ProofView:
+        """Forecasts from the past, computed when first asked for: this takes seconds."""
 
     def correlograms(self, nlags: int) -> tuple[np.ndarray, np.ndarray, float]:
         """Autocorrelations as given and transformed at lags 1 ... nlags, and half the width of the 95 % band."""

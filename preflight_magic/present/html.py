@@ -12,6 +12,7 @@ from preflight_magic.present.alt import before_after_alt
 from preflight_magic.present.markup import Markup, el, join, picture
 from preflight_magic.present.more_html import more_pictures
 from preflight_magic.present.overview_html import overview, verdict
+from preflight_magic.present.proof_html import proof_html
 from preflight_magic.present.rung_html import ladder
 
 if TYPE_CHECKING:
@@ -99,13 +100,15 @@ def body(card: Card, key: str = "card") -> Markup:
 
 
 def first(card: Card) -> Markup:
-    """The first picture, and what a person's choice changed."""
+    """The first picture, what a person's choice changed, and the proof where it was asked for."""
     from preflight_magic.present.figures import before_after
 
     image = None
     if card.picture is not None:
         image = picture(before_after(card.picture), before_after_alt(card.picture), PICTURE_WIDTH)
-    return el("div", el("p", image, class_="pfm-figure") if image else None, _changes(card), class_="pfm pfm-body")
+    figure = el("p", image, class_="pfm-figure") if image else None
+    proof = None if card.proof is None else proof_html(card.proof)
+    return el("div", figure, _changes(card), proof, class_="pfm pfm-body")
 
 
 def _changes(card: Card) -> Markup | None:

@@ -13,6 +13,7 @@ from preflight_magic.present import html, make_cards, text, words
 from preflight_magic.present.card_controls import CardControls
 from preflight_magic.present.cards import Card
 from preflight_magic.present.live import Bundle, Guard, show_bundle, show_controls
+from preflight_magic.present.make_proof import hold_out, proof_card
 from preflight_magic.present.markup import join
 from preflight_magic.present.switches import Switch, states, switches
 from preflight_magic.present.wishes import (
@@ -39,9 +40,15 @@ class _Drawn:
 
     view: SeriesView
     card: Card
-    top: Bundle
-    first: Bundle
+    top: Bundle = field(default_factory=dict)
+    first: Bundle = field(default_factory=dict)
     rest: Bundle = field(default_factory=dict)
+
+    def show(self, card: Card, key: str) -> None:
+        """Make the upper part of a card."""
+        self.card = card
+        self.top = {"text/html": join([html.style(), html.head(card, key)]), "text/plain": text.card_text(card)}
+        self.first = {"text/html": html.first(card), "text/plain": ""}
 
 
 class LiveCard:
@@ -120,6 +127,20 @@ class LiveCard:
         wanted = read_span(text, self._base.series.index)
         self._go(Wish(self._wish.season, (*self._wish.spans, wanted)))
 
+    def prove(self) -> None:
+        """Forecast from past origins, and compare with the recommendation where that is another plan."""
+        self._guard.say("Forecasting from past origins \u2026")
+        drawn = self._drawn(self._wish)
+        proof, changes = proof_card(drawn.view), drawn.card.changes
+        if self._wish != self._recommended:
+            changes = (*changes, *hold_out(proof_card(self._drawn(self._recommended).view), proof))
+        drawn.show(replace(drawn.card, proof=proof, changes=changes), self._key)
+        self._guard.quietly(lambda: self._set_controls(boxes=False))
+        if self._handles is not None:
+            self._handles[0].update(drawn.top, raw=True)
+            self._handles[1].update(drawn.first, raw=True)
+        self._guard.say("")
+
     def back(self) -> None:
         """Go back to what was recommended."""
         self._asked_for = ()
@@ -154,7 +175,7 @@ class LiveCard:
             self.controls.set_switches(offered, usable)
         if boxes:
             self.controls.set_boxes(states(steps, offered))
-        self.controls.set_back(self._wish != self._recommended)
+        self.controls.set_back(self._wish != self._recommended, self._drawn(self._wish).card.proof is not None)
         self.controls.set_others(
             [(step, words.meaning(step, base.noun)) for step in offers],
             sorted(base.alternatives, key=lambda one: one[1]),
@@ -178,9 +199,8 @@ class LiveCard:
             view = examine(self._read(wish), wish)
             known = None if wish == self._recommended else self._drawn(self._recommended).view
             card = make_cards.card(view, known, _told(wish, self._origin))
-            told = {"text/html": join([html.style(), html.head(card, self._key)]), "text/plain": text.card_text(card)}
-            first = {"text/html": html.first(card), "text/plain": ""}
-            self._made[place] = _Drawn(view, card, told, first)
+            self._made[place] = _Drawn(view, card)
+            self._made[place].show(card, self._key)
             while len(self._made) > KEPT:
                 self._made.popitem(last=False)
         self._made.move_to_end(place)

@@ -83,6 +83,9 @@ def card_text(card: Card, width: int | None = None) -> str:
         lines.append("What changed, recommended \u2192 yours:")
     for change in card.changes:
         lines += wrap(f"{change.what}: {change.before}{ARROW}{change.after}", width, "  ", "    ")
+    if card.proof is not None:
+        told = [card.proof.problem] if card.proof.problem else [*card.proof.sentences, f"{card.proof.origins}."]
+        lines += ["", *wrap(f"Forecasts from the past: {' '.join(told)}", width)]
     for rung in card.rungs:
         lines += _rung(rung, width)
     if card.plans:

@@ -99,6 +99,32 @@ def findings(steps: tuple[Step, ...]) -> dict[str, Finding]:
     return made
 
 
+@dataclass(frozen=True)
+class FakeProofRow:
+    """Errors of one way to forecast."""
+
+    forecast: str
+    mase: float
+    ratio: float
+    coverage: float = 0.91
+    p_value: float = np.nan
+
+
+@dataclass(frozen=True)
+class FakeProof:
+    """Forecasts from four origins."""
+
+    rows: tuple[FakeProofRow, ...]
+    sentences: tuple[str, ...] = ("Without the log the error is 12 % larger.",)
+    horizon: int = 12
+    origins: tuple[pd.Period, ...] = tuple(pd.period_range("2021-04", periods=4, freq="6M"))
+    problem: str | None = None
+
+    @property
+    def by_origin(self) -> dict[str, tuple[float, ...]]:
+        return {row.forecast: (row.mase - 0.1, row.mase, np.nan, row.mase + 0.2) for row in self.rows}
+
+
 @dataclass
 class FakeSeries:
     """Answers the protocol of a checked series; records which steps were switched."""
@@ -137,6 +163,13 @@ class FakeSeries:
     def methods(self) -> Mapping[str, tuple[str, tuple[str, ...]]]:
         told = ("Plans are compared by their restricted likelihood.", ("Harville (1974)", "MacKinnon (1994)"))
         return dict.fromkeys(QUESTIONS, told)
+
+    @property
+    def proof(self) -> FakeProof:
+        self._called("proof", self.plan.steps)
+        error = 0.8 if Difference(12) in self.plan.steps else 1.3
+        rows = (FakeProofRow("the plan", error, 1.0), FakeProofRow("seasonal naive", 1.1, 1.1 / error, 0.86, 0.0004))
+        return FakeProof(rows)
 
     @property
     def repairs(self) -> tuple[Repair, ...]:

@@ -16,11 +16,14 @@ import pytest
 from preflight_magic.model import Difference, Log, RemoveShift, Root
 from preflight_magic.plan.plan import Plan
 from preflight_magic.present import make_cards, make_overview
-from preflight_magic.present.alt import before_after_alt, halves_alt, plans_alt, roots_alt, spark_alts
+from preflight_magic.present.alt import before_after_alt, halves_alt, plans_alt, proof_alt, roots_alt, spark_alts
 from preflight_magic.present.cards import Picture, RootsPicture
 from preflight_magic.present.figures import before_after
 from preflight_magic.present.halves_figure import halves_picture
+from preflight_magic.present.make_proof import hold_out, proof_card
 from preflight_magic.present.plans_figure import plans_strip
+from preflight_magic.present.proof_figure import errors_strip
+from preflight_magic.present.proof_html import proof_html
 from preflight_magic.present.roots_figure import roots_strip
 from preflight_magic.present.sparks import spark
 from tests.present.fakes import FakeReport, FakeSeries, roots, values
@@ -161,6 +164,25 @@ def test_plans_are_drawn_by_their_odds() -> None:
         "Odds of the best plan against each of 3 plans: log, difference 12, difference 1, best (shown); "
         "log, difference 12, 4.1 to 1; log, remove pattern 12, difference 1, over 1,000 to 1."
     )
+
+
+def test_errors_from_the_past_are_drawn_and_told() -> None:
+    proof = proof_card(FakeSeries())
+    assert proof.origins == "4 origins from 2021-04 to 2022-10, 12 months ahead"
+    assert [(row.ratio, row.coverage, row.p) for row in proof.rows] == [
+        ("1", "91\u00a0%", "–"),
+        ("1.38", "86\u00a0%", "< 0.001"),
+    ]
+    assert size(errors_strip(proof))[0] == 1065
+    unknown = replace(proof.rows[0], error=np.nan, at_origins=())
+    assert size(errors_strip(replace(proof, rows=(unknown,))))[0] == 1065
+    assert proof_alt(proof) == (
+        "Mean absolute scaled errors, 4 origins from 2021-04 to 2022-10, 12 months ahead: "
+        "the plan 0.8 (0.7 to 1); seasonal naive 1.1 (1 to 1.3)."
+    )
+    failed = replace(proof, rows=(), problem="Too short.")
+    assert "Too short." in proof_html(failed)
+    assert hold_out(proof, failed) == ()
 
 
 def test_halves_are_drawn_and_told() -> None:

@@ -218,6 +218,27 @@ def test_a_span_left_out(displayed: list[Handle]) -> None:
     assert controller.view is view
 
 
+def test_a_proof_when_asked_for(displayed: list[Handle]) -> None:
+    view = FakeSeries()
+    controller = Controller(view)
+    controller.show()
+    prove = controller.card.controls._prove
+    assert view.calls == [], "nothing is computed unasked"
+    prove.click()
+    assert view.calls == [("proof", view.plan.steps)]
+    assert "Forecasts from the past" in displayed[2].drawn[-1]["text/html"]
+    assert "Without the log the error is 12" in displayed[0].drawn[-1]["text/plain"]
+    assert prove.disabled
+    boxes(controller)[1].value = False
+    assert not prove.disabled
+    assert "hold-out error" not in displayed[2].drawn[-1]["text/html"]
+    prove.click()
+    assert "hold-out error, mean absolute scaled: 0.8 → 1.3" in displayed[0].drawn[-1]["text/plain"]
+    boxes(controller)[1].value = True
+    assert "Forecasts from the past" in displayed[2].drawn[-1]["text/html"], "a proof that was made is kept"
+    assert prove.disabled
+
+
 def test_other_changes_are_open_where_a_person_decides(displayed: list[Handle]) -> None:
     assert Controller(FakeSeries(verdict="inconclusive")).card.controls._others.children
     assert not Controller(FakeSeries()).card.controls._others.children
@@ -232,7 +253,7 @@ def test_a_series_that_cannot_be_checked_has_no_controls(displayed: list[Handle]
     assert steps.children == ()
     assert controller.overview is not None
     controller.overview.choice.value = 1
-    assert len(steps.children) == 3 + 2
+    assert len(steps.children) == 3 + 3
 
 
 @pytest.mark.parametrize("error", [ValueError("A plan <cannot> do this."), RuntimeError("broken"), KeyboardInterrupt()])

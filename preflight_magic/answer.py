@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from preflight_magic.ladder import DECIDING
+from preflight_magic.ladder import DECIDING, needs_another_road
 from preflight_magic.model import Difference, Finding, Verdict
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Thresholds
@@ -34,6 +34,8 @@ def answer_of(
     if plan != recommended:
         return f"Your plan is {_quoted(plan)}; the recommendation is {_quoted(recommended)}."
     text = f"Before a model is fitted: {plan}." if plan else "Use the series as given: no transform is called for."
+    if not plan and needs_another_road(findings, Thresholds()):
+        text = "Demand comes now and then: use a method of its own or sums over longer periods, not an ARMA plan."
     if verdict != "inconclusive":
         return text
     doubts = [name for name in DECIDING if name in findings and findings[name].verdict == "inconclusive"]

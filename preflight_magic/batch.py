@@ -21,6 +21,7 @@ from preflight_magic.policy import Settings, Thresholds
 from preflight_magic.progress import Progress, follow
 from preflight_magic.report import Report
 from preflight_magic.series_report import SeriesReport
+from preflight_magic.together import check_target
 
 CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
@@ -38,6 +39,7 @@ def check(
     value: Hashable | None = None,
     significance: float = 0.05,
     only: Hashable | Iterable[Hashable] | None = None,
+    target: Hashable | None = None,
     exclude: Iterable[tuple[Any, Any]] | None = None,
     repair: bool | str | Iterable[str] = True,
     cache: bool = True,
@@ -60,6 +62,8 @@ def check(
         Size of the tests shown; it changes what their sentences say, never the plan.
     only : name or iterable of names, optional
         Series to check.
+    target : name, optional
+        The series that the others are meant to explain: `Report.together` says whether they may.
     exclude : iterable of (start, end), optional
         Spans known to be special: left out of every decision as if missing.
     repair : bool, str or iterable of str
@@ -82,8 +86,10 @@ def check(
     """
     spans = spans_of(exclude)
     every = _read(frame, season, time, series, value, only, spans, repair)
+    if target is not None:
+        check_target([one.name for one in every], target)
     settings = _settings(season, horizon, significance, spans)
-    return Report(follow(_stream(every, settings, cache, pool), len(every), progress))
+    return Report(follow(_stream(every, settings, cache, pool), len(every), progress), target)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
@@ -102,12 +108,15 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     """
     given: dict[str, Any] = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
     given |= {"exclude": None, "repair": True, "cache": True, "pool": None, "progress": None, "significance": 0.05}
+    given |= {"target": None}
     unknown = sorted(options.keys() - given.keys())
     if unknown:
         raise TypeError(f"stream() has no option {', '.join(unknown)}")
     o = given | options
     o["exclude"] = spans_of(o["exclude"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
+    if o["target"] is not None:
+        check_target([one.name for one in every], o["target"])
     settings = _settings(o["season"], o["horizon"], o["significance"], o["exclude"])
     return follow(_stream(every, settings, o["cache"], o["pool"]), len(every), o["progress"])
 

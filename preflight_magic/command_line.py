@@ -166,6 +166,7 @@ OPTIONS: tuple[Option, ...] = (
     Option("--value", "COLUMN", "column with the values, in a long table", wanted="column"),
     Option("--significance", "SHARE", "size of the tests shown", _share),
     Option("--only", "NAME[,NAME]", "series to check; may be repeated", listed, "column", True),
+    Option("--target", "NAME", "series that the others are meant to explain", wanted="column"),
     Option("--exclude", "START..END", "special span, both ends included, treated as missing; may be repeated", _span,
            repeated=True),
     Option("--pool", "NAME", "variable that holds a concurrent.futures executor", _identifier, "executor"),

@@ -3,13 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, cast
 
 from preflight_magic.model import CheckError
 from preflight_magic.plan.emit import emit
+from preflight_magic.plan.emit_features import emit_features
+from preflight_magic.plan.emit_model import Orders, emit_model
+from preflight_magic.plan.plan import Plan
+from preflight_magic.plan.points import point_steps
 from preflight_magic.plan.prove import prove
 
 if TYPE_CHECKING:
+    from preflight_magic.kernels.arma import ArmaFit
     from preflight_magic.series_report import SeriesReport
 
 
@@ -38,6 +43,94 @@ def proved_code(reports: Sequence[SeriesReport]) -> str:
     source = emit(plans, {one.name: one.series.index for one in reports})
     for one in reports:
         prove(one.plan, source, one.series, one.horizon)
+    return source
+
+
+def code_of(report: SeriesReport, form: str) -> str:
+    """Source of one plan in one of three forms.
+
+    Parameters
+    ----------
+    report : SeriesReport
+    form : str
+        ``pandas``, ``model`` or ``features``.
+
+    Returns
+    -------
+    str
+
+    Raises
+    ------
+    CheckError
+        For another form, or a series that has none.
+    """
+    match form:
+        case "pandas":
+            return proved_code([report])
+        case "model":
+            return model_code(report)
+        case "features":
+            return features_code(report)
+        case _:
+            raise CheckError(f"There is no code of the form {form!r}; use 'pandas', 'model' or 'features'.")
+
+
+def model_code(report: SeriesReport) -> str:
+    """Source that hands the plan of one series to statsmodels.
+
+    Parameters
+    ----------
+    report : SeriesReport
+
+    Returns
+    -------
+    str
+
+    Raises
+    ------
+    CheckError
+        When the series could not be checked, or one model cannot hold its plan.
+    EmitError
+        When what is done outside the model is not what the plan does: a fault of this package.
+    """
+    if report.problem is not None:
+        raise CheckError(report.problem)
+    fit = cast("ArmaFit | None", report.findings["roots"].measures.get("fit"))
+    if fit is None:
+        raise CheckError(
+            f"column {report.name!r}: what the plan '{report.plan}' leaves has no ARMA model; use form='pandas', or "
+            "give a longer series."
+        )
+    order = fit.order
+    orders = Orders(order.p, order.q, order.P, order.Q, order.period)
+    source = emit_model(report.name, report.plan, _reasons(report), report.series.index, orders)
+    prove(Plan((), point_steps(report.plan.steps)), source, report.series, report.horizon)
+    return source
+
+
+def features_code(report: SeriesReport) -> str:
+    """Source that makes columns for a learner from one series, as its plan says.
+
+    Parameters
+    ----------
+    report : SeriesReport
+
+    Returns
+    -------
+    str
+
+    Raises
+    ------
+    CheckError
+        When the series could not be checked.
+    EmitError
+        When the way to the scale of the learner and back is not that of the plan: a fault of this package.
+    """
+    if report.problem is not None:
+        raise CheckError(report.problem)
+    plan, series = report.plan, report.series
+    source = emit_features(report.name, plan, _reasons(report), series.index, report.season[0], report.horizon)
+    prove(Plan((), point_steps(plan.steps)), source, series, report.horizon)
     return source
 
 

@@ -136,7 +136,7 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
         else:
             finding = _finding(rung, subject, context, settings.thresholds)
         findings[rung.name] = finding
-        if not late and finding.steps:
+        if not late and finding.steps and not needs_another_road(findings, settings.thresholds):
             recommended = Plan(recommended.repairs, (*recommended.steps, *finding.steps))
             context = replace(context, steps=recommended.steps)
         if rung.name == "roots":
@@ -144,6 +144,12 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
     if transformed is None and series.problem is None:
         transformed = (plan if plan is not None else recommended).apply(series.values).dropna()
     return Climb(findings, context.comparison, recommended, recommended if plan is None else plan, transformed)
+
+
+def needs_another_road(findings: Mapping[str, Finding], thresholds: Thresholds) -> bool:
+    """Whether demand is intermittent, so that no ARMA plan is made."""
+    interval = findings["values"].measures.get("demand_interval") if "values" in findings else None
+    return isinstance(interval, float) and interval >= thresholds.intermittent_interval
 
 
 def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:

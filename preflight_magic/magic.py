@@ -186,10 +186,13 @@ def _options(given: Line, frame: Any) -> dict[str, Any]:
     for key in ("time", "series", "value"):
         if key in options:
             options[key] = label_of(options[key], columns)
-    if "only" in options:
-        long = options.get("series") in columns
+    long = options.get("series") in columns
+    if "only" in options or "target" in options:
         names = tuple(frame[options["series"]].unique()) if long else columns
-        options["only"] = [label_of(name, names) for name in options["only"]]
+        if "only" in options:
+            options["only"] = [label_of(name, names) for name in options["only"]]
+        if "target" in options:
+            options["target"] = label_of(options["target"], names)
     if "exclude" in options:
         stamps = frame[options["time"]] if options.get("time") in columns else getattr(frame, "index", None)
         options["exclude"] = [_span(span, stamps) for span in options["exclude"]]

@@ -10,6 +10,7 @@ from typing import Any
 import pandas as pd
 
 from preflight_magic.generated import proved_code
+from preflight_magic.model import Finding
 from preflight_magic.overview import row_of
 from preflight_magic.saving import save
 from preflight_magic.series_report import SeriesReport
@@ -21,9 +22,12 @@ class Report:
     Parameters
     ----------
     reports : iterable of SeriesReport
+    target : Hashable, optional
+        The series that the others are meant to explain.
     """
 
-    def __init__(self, reports: Iterable[SeriesReport]) -> None:
+    def __init__(self, reports: Iterable[SeriesReport], target: Hashable | None = None) -> None:
+        self._target = target
         self._reports = {one.name: one for one in reports}
 
     @property
@@ -53,6 +57,16 @@ class Report:
         kinds |= dict.fromkeys(("verdict", "plan", "season", "note"), "string")
         kinds |= dict.fromkeys(("D", "d", "period", "n", "missing"), "Int64") | {"power": "Float64"}
         return frame.astype(kinds)
+
+    @cached_property
+    def together(self) -> Finding | None:
+        """Whether the other series may explain the target, and which of their lags are known; None without one."""
+        if self._target is None:
+            return None
+        from preflight_magic.together import examine_together
+
+        every = list(self)
+        return examine_together(every, self._target, every[0].significance)
 
     def code(self, names: Any = None) -> str:
         """Source that applies and undoes the plans of some series, or of all that could be checked.

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Iterable, Mapping, Sequence
 from dataclasses import replace
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -11,7 +12,7 @@ import pandas as pd
 
 from preflight_magic.answer import answer_of
 from preflight_magic.changes import with_season, without_span
-from preflight_magic.generated import proved_code
+from preflight_magic.generated import code_of
 from preflight_magic.kernels.correlation import autocorrelation
 from preflight_magic.ladder import Climb, climb, ladder
 from preflight_magic.model import (
@@ -29,6 +30,7 @@ from preflight_magic.model import (
 )
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
+from preflight_magic.proof_result import Proof
 from preflight_magic.reference import reference_forecast
 
 if TYPE_CHECKING:
@@ -87,6 +89,11 @@ class SeriesReport:
     def noun(self) -> str:
         """A step of the calendar: ``month``."""
         return self._source.calendar.noun if self._source.calendar else "step"
+
+    @property
+    def significance(self) -> float:
+        """Size of the tests shown."""
+        return self._settings.thresholds.significance
 
     @property
     def season(self) -> tuple[int, ...]:
@@ -161,7 +168,9 @@ class SeriesReport:
 
         Parameters
         ----------
-        form : {"pandas"}
+        form : {"pandas", "model", "features"}
+            ``pandas``: `prepare` and `restore`. ``model``: a statsmodels SARIMAX model that holds what a model can of
+            the plan, and its forecast in the original units. ``features``: columns for a learner.
 
         Returns
         -------
@@ -174,12 +183,12 @@ class SeriesReport:
         EmitError
             When the code does not do what the plan does: a fault of this package.
         """
-        if form != "pandas":
-            raise CheckError(f"There is no code of the form {form!r}; use 'pandas'.")
-        return proved_code([self])
+        return code_of(self, form)
 
-    def reference_forecast(self, horizon: int | None = None, coverage: float = 0.9) -> pd.DataFrame:
-        """Forecast with the ARMA model of the roots rung: a yardstick for the real model.
+    def reference_forecast(
+        self, horizon: int | None = None, coverage: float = 0.9, *, average: bool = True
+    ) -> pd.DataFrame:
+        """Forecast with ARMA models through their plans: a yardstick for the real model.
 
         Parameters
         ----------
@@ -187,6 +196,11 @@ class SeriesReport:
             Steps ahead; by default `horizon`.
         coverage : float
             Probability of the interval.
+        average : bool
+            False: the plan alone, with the ARMA model of the roots rung. True: so too where no other plan is left
+            within odds of 20 to 1, or you have chosen the plan; else the interval is that of all plans left, weighted
+            by their share of the evidence, each with its own ARMA model. Median and mean are theirs as well where
+            their median lies farther than a quarter of a standard error from the plan's own.
 
         Returns
         -------
@@ -198,7 +212,18 @@ class SeriesReport:
         CheckError
             For a series that could not be checked, or options out of range.
         """
-        return reference_forecast(self, self.horizon if horizon is None else horizon, coverage)
+        return reference_forecast(self, self.horizon if horizon is None else horizon, coverage, average)
+
+    @cached_property
+    def proof(self) -> Proof:
+        """Forecasts from past origins with the plan, without each step, and with naive ones, over `horizon` steps.
+
+        Computed when first asked for, within seconds; it decides nothing. A series that is too short gives a result
+        whose `problem` says so.
+        """
+        from preflight_magic.proof import prove_plan
+
+        return prove_plan(self)
 
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""

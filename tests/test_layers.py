@@ -16,18 +16,9 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
-REPORT = {
-    "answer",
-    "changes",
-    "overview",
-    "generated",
-    "saving",
-    "series_report",
-    "reference",
-    "report",
-    "progress",
-    "batch",
-}
+REPORT = {"answer", "changes", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
+REPORT |= {"reference", "reference_mixture", "reference_parts", "together", "together_words"}
+REPORT |= {"proof", "proof_result", "proof_words"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "cell_value", "magic"}
 
@@ -41,7 +32,7 @@ LAYERS: dict[str, tuple[set[str], set[str]]] = {
     "intake": (NOUNS | {"intake"}, {"numpy", "pandas"}),
     "plan": (NOUNS | {"plan"}, {"numpy", "pandas"}),
     # Rungs know their common contract and how shares of the evidence are told, never each other.
-    "rungs": (NOUNS | {"kernels", "policy", "rungs.contract", "rungs.shares"}, {"numpy", "pandas"}),
+    "rungs": (NOUNS | {"kernels", "policy", "rungs.contract", "rungs.shares", "rungs.kinds"}, {"numpy", "pandas"}),
     "ladder": (NOUNS | {"policy", *SHARED, "rungs", "plan"}, {"numpy", "pandas"}),
     # Pillow comes with matplotlib, which draws through it.
     "present": (NOUNS | {"plan", "present"}, {"ipywidgets", "matplotlib", "numpy", "pandas", "IPython", "PIL"}),

@@ -64,11 +64,12 @@ def _groups(
     groups: dict[tuple[Plan, bool], list[Hashable]] = {}
     for name, (plan, _) in plans.items():
         counts = any(isinstance(step, PerDay) for step in plan.steps)
-        groups.setdefault((plan, counts and _monthly(indexes.get(name))), []).append(name)
+        groups.setdefault((plan, counts and is_monthly(indexes.get(name))), []).append(name)
     return groups
 
 
-def _monthly(index: pd.Index | None) -> bool:
+def is_monthly(index: pd.Index | None) -> bool:
+    """Whether an index steps from month to month."""
     if not isinstance(index, pd.PeriodIndex | pd.DatetimeIndex) or len(index) < 2:
         return False
     months = (index.year * 12 + index.month).to_numpy()

@@ -178,8 +178,13 @@ class OverviewRow:
 
 @dataclass(frozen=True, eq=False)
 class OverviewCard:
-    """Some or all series of a report; `counts` counts the verdicts of all, `part` says which are shown and how."""
+    """Some or all series of a report.
+
+    `counts` counts the verdicts of all, `part` says which are shown and how; `together` says whether the others may
+    explain a target, and is empty without one.
+    """
 
     counts: tuple[tuple[Verdict, int], ...]
     rows: tuple[OverviewRow, ...]
     part: str
+    together: str = ""

@@ -55,7 +55,15 @@ def page_of(
     part = f"Order: {order}."
     if len(rows) < len(positions):
         part = f"{start + 1:,} to {start + len(rows):,} of {len(positions):,}, {order}."
-    return OverviewCard(counts(lines), rows, part)
+    return OverviewCard(counts(lines), rows, part, _together(report))
+
+
+def _together(report: ReportView) -> str:
+    """Finding about several series, as verdict, headline and reason; empty where there is none."""
+    finding = getattr(report, "together", None)
+    if finding is None:
+        return ""
+    return words.plain(f"{finding.question} {finding.verdict}: {finding.headline}. {finding.reason}")
 
 
 def _row(report: ReportView, line: Line) -> OverviewRow:

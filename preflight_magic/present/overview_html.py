@@ -48,6 +48,7 @@ def overview(card: OverviewCard, linked: bool = False, key: str | None = None) -
         el("p", _summary(card), class_="pfm-summary"),
         table if rows else el("p", "No series is like that; ask for another name or verdict."),
         el("p", card.part, class_="pfm-faint") if rows else None,
+        el("p", card.together, class_="pfm-together") if card.together else None,
         class_="pfm pfm-many",
     )
 

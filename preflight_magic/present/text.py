@@ -156,4 +156,6 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     summary = f"{sum(count for _, count in card.counts):,} series: {counts}"
     lines = [*wrap(summary, width), *columns(rows, [name, 14, rest])]
     lines += wrap(card.part, width)
+    if card.together:
+        lines += ["", *wrap(card.together, width)]
     return "\n".join(lines)

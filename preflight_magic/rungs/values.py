@@ -11,6 +11,7 @@ import pandas as pd
 from preflight_magic.model import CalendarKind, Evidence, Judgement, TimeSeries, Verdict
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
+from preflight_magic.rungs.kinds import demand_road, other_kinds
 from preflight_magic.stamps import counted, stamp_text
 
 Floats = npt.NDArray[np.float64]
@@ -30,6 +31,10 @@ METHOD = (
 SOURCES = (
     "Syntetos, A. A., Boylan, J. E. and Croston, J. D. (2005). On the categorization of demand patterns. "
     "Journal of the Operational Research Society 56, 495-503.",
+    "Croston, J. D. (1972). Forecasting and stock control for intermittent demands. Operational Research Quarterly 23, "
+    "289-303.",
+    "Syntetos, A. A. and Boylan, J. E. (2005). The accuracy of intermittent demand estimates. International Journal of "
+    "Forecasting 21, 303-314.",
 )
 
 
@@ -47,9 +52,9 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     -------
     Evidence
         Measures `n`, `observed`, `missing`, `missing_share`, `longest_gap` (steps), `longest_gap_at`, `zeros`,
-        `negatives`, `distinct`, `commonest_share`, `minimum`, `maximum`, `whole_numbers`, `unit_interval` (all values
-        from 0 to 1), `demand_interval` (steps), `demand_variation`, `outliers` and `outliers_at` (text), `incomplete`
-        (stamp of the last value where its period may not be over, else None) and `excluded` (spans, text).
+        `negatives`, `distinct`, `commonest_share`, `minimum`, `maximum`, `mean`, `whole_numbers`, `unit_interval` (all
+        values from 0 to 1), `demand_interval` (steps), `demand_variation`, `outliers` and `outliers_at` (text),
+        `incomplete` (stamp of the last value where its period may not be over, else None) and `excluded` (spans, text).
     """
     if series.problem is not None:
         return Evidence(problem=series.problem)
@@ -78,6 +83,7 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         "commonest_share": float(counts.max() / len(seen)),
         "minimum": float(seen.min()),
         "maximum": float(seen.max()),
+        "mean": float(seen.mean()),
         "whole_numbers": bool((seen == np.rint(seen)).all()),
         "unit_interval": bool(seen.min() >= 0.0 and seen.max() <= 1.0),
         "demand_interval": interval,
@@ -210,14 +216,21 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         )
     missing = f"{found['missing']} missing ({found['missing_share']:.1%})" if found["missing"] else "none missing"
     demand = _demand(found, thresholds)
-    extra = demand or _alone(found)
-    headline = f"{found['n']} values, {missing}" + (f", {extra}" if extra else "")
+    kinds, roads = other_kinds(found)
     notes, sentences = [], [_reason(found, demand)]
+    if demand:
+        notes.append(demand)
+        sentences.append(demand_road(found, demand, thresholds.intermittent_interval))
+    else:
+        sentences += roads
+    beside = [] if demand else [part for part in (_alone(found), *kinds) if part]
+    headline = ", ".join([f"{found['n']} values, {missing}", *beside])
     if found["observed"] < thresholds.few_observations:
         notes.append("too short")
         sentences.append(
             f"Fewer than {thresholds.few_observations} values are too short a series to tell a season, a shift or a "
-            "slow return to the mean: the plan leans on what is usual."
+            "slow return to the mean: the plan leans on what is usual. Set its forecast beside the last value, and "
+            "that of a season ago, repeated; a longer series of the same kind may lend its plan."
         )
     if found.get("incomplete"):
         notes.append("the last value may be an incomplete period")
@@ -249,7 +262,7 @@ def _reason(found: dict[str, Any], demand: str) -> str:
     if demand:
         parts.append(
             f"a demand comes every {found['demand_interval']:.2f} steps, and the squared coefficient of variation of "
-            f"its size is {found['demand_variation']:.2f}, so a method for {demand} may serve better than a transform"
+            f"its size is {found['demand_variation']:.2f}"
         )
     elif found["outliers"]:
         stamps = found["outliers_at"]

@@ -4,6 +4,7 @@ import numpy as np
 import pandas as pd
 import pytest
 
+import preflight_magic as pf
 from preflight_magic.demo import ferry_line
 from preflight_magic.intake import read
 from preflight_magic.model import Evidence
@@ -59,11 +60,35 @@ GAPS = {"missing": 5, "observed": 139, "missing_share": 5 / 144, "longest_gap": 
         ({"demand_interval": 1.31, "demand_variation": 0.9}, "clear", "144 values, none missing", "All values"),
         (
             {"demand_interval": 1.32, "demand_variation": 0.48},
-            "clear",
+            "inconclusive",
             "none missing, intermittent demand",
             "every 1.32 ",
         ),
-        ({"demand_interval": 1.32, "demand_variation": 0.49}, "clear", "none missing, lumpy demand", "size is 0.49"),
+        (
+            {"demand_interval": 1.32, "demand_variation": 0.49},
+            "inconclusive",
+            "none missing, lumpy demand",
+            "No ARMA plan is made for lumpy demand, and steps that other rungs propose are left out",
+        ),
+        (
+            {"whole_numbers": True, "minimum": 0.0, "mean": 3.4},
+            "clear",
+            "none missing, small counts",
+            "Counts with a mean of 3.4 are far from normal: a regression for counts",
+        ),
+        ({"whole_numbers": True, "minimum": 0.0, "mean": 12.0}, "clear", "144 values, none missing", "All values"),
+        (
+            {"unit_interval": True, "minimum": 0.1, "maximum": 0.9},
+            "clear",
+            "none missing, values between 0 and 1",
+            "put_in(Logit(0, 1)) keeps forecasts and intervals between the bounds",
+        ),
+        (
+            {"unit_interval": True, "minimum": 0.0, "maximum": 0.9},
+            "clear",
+            "none missing, values between 0 and 1",
+            "put_in(Logit(-0.01, 1.01))",
+        ),
         ({"demand_interval": float("nan")}, "clear", "144 values, none missing", "All values"),
         ({"observed": 24}, "clear", "144 values, none missing", "All values"),
         ({"observed": 23}, "inconclusive", "none missing, too short", "Fewer than 24 values are too short"),
@@ -237,3 +262,34 @@ def test_excluded_spans_are_named():
     found = RUNG.examine(series, Context(Settings(exclude=spans)))
     assert found.measures["excluded"] == ("2013-01 to 2013-03", "2014-02 to 2014-02")
     assert "2013-01 to 2013-03, 2014-02 to 2014-02." in RUNG.judge(found, Thresholds()).reason
+
+
+@pytest.mark.parametrize(("share", "k"), [(0.7, 2), (0.5, 3), (0.2, 7), (0.05, 28)])
+def test_sums_over_enough_steps_are_intermittent_no_longer(share, k):
+    found = {**PLAIN, "demand_interval": 1 / share, "demand_variation": 0.2}
+    assert f"// {k}).sum()" in RUNG.judge(Evidence(found), Thresholds()).reason
+    # Independent demands: a sum of k steps is empty with probability (1 - share)^k. Bound by Syntetos, Boylan and
+    # Croston (2005).
+    assert 1 / (1 - (1 - share) ** k) < 1.32
+    assert k == 2 or 1 / (1 - (1 - share) ** (k - 1)) >= 1.32
+
+
+def test_intermittent_demand_gets_no_forced_plan_and_its_sums_run():
+    rng = np.random.default_rng(11)
+    y = pd.Series(
+        np.where(rng.random(120) < 0.35, rng.integers(1, 9, 120) + np.arange(120) // 20, 0),
+        index=pd.period_range("2014-01", periods=120, freq="M"),
+        name="spare anchors",
+    )
+    report = pf.check(y, progress=False)
+    one = report["spare anchors"]
+    assert one.plan.steps == ()
+    assert "not an ARMA plan" in one.answer
+    assert "demand" in report.overview.loc["spare anchors", "note"]
+    reason = one.findings["values"].reason
+    code = reason[reason.index("y.groupby(") : reason.index(".sum()") + len(".sum()")]
+    sums = eval(code, {"np": np, "y": y})
+    assert sums.sum() == y.sum()
+    assert (sums > 0).mean() > (y > 0).mean()
+    # The last sum is over as many steps as the others.
+    assert sums.iloc[-1] == y.iloc[-int(code.split("// ")[1].split(")")[0]) :].sum()

@@ -72,10 +72,11 @@ class Change:
 
 @dataclass(frozen=True)
 class CodeForm:
-    """Code in one form: pandas, or arguments of a model."""
+    """Code in one form: pandas, or arguments of a model; without source `problem` says why."""
 
     title: str
     source: str
+    problem: str | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -155,7 +156,6 @@ class Card:
     rungs: tuple[RungCard, ...] = ()
     plans: tuple[PlanRow, ...] = ()
     codes: tuple[CodeForm, ...] = ()
-    code_problem: str | None = None
 
 
 @dataclass(frozen=True, eq=False)

@@ -125,26 +125,22 @@ def rest(card: Card, key: str = "card") -> Markup:
         "div",
         more_pictures(card, key),
         ladder(card, key),
-        _code(card),
+        [_code(form) for form in card.codes],
         el("p", words.CAUTION, class_="pfm-caution"),
         el("img", src=_DOT, alt="", width=1, height=1, onload=_REVIVE),
         class_="pfm pfm-body",
     )
 
 
-def _code(card: Card) -> Markup | None:
-    blocks = [_code_block(form) for form in card.codes]
-    if card.code_problem:
-        blocks.append(join([el("h4", "Code"), el("p", card.code_problem, class_="pfm-problem")]))
-    return join(blocks)
-
-
-def _code_block(form: CodeForm) -> Markup:
+def _code(form: CodeForm) -> Markup:
+    title = el("h4", form.title)
+    if form.problem is not None:
+        return join([title, el("p", form.problem, class_="pfm-problem")])
     copy = el("button", "Copy", type="button", class_="pfm-copy", onclick=_COPY, hidden=True,
               aria_label=f"Copy: {form.title}")  # fmt: skip
     hint = el("span", " One click in the code selects all of it.", class_="pfm-faint")
     block = el("pre", form.source, class_="pfm-code", style="user-select: all", tabindex="0", aria_label=form.title)
-    return el("div", el("h4", form.title), copy, hint, block, class_="pfm-codebox")
+    return el("div", title, copy, hint, block, class_="pfm-codebox")
 
 
 def overview_html(card: OverviewCard) -> Markup:
@@ -164,7 +160,7 @@ def page(report: ReportView, title: str = "Series checked before forecasting") -
     views = [report[name] for name in report.names]
     sections = [
         el("section", head(one), body(one, str(i)), id=f"pfm-series-{i}")
-        for i, one in enumerate(make_cards.card(view) for view in views)
+        for i, one in enumerate(make_cards.with_code(make_cards.card(view), view) for view in views)
     ]
     everything = el(
         "main",

@@ -210,7 +210,8 @@ class LiveCard:
         drawn = self._drawn(wish)
         if not drawn.rest:
             key = f"{self._key}-{words.name_text(self._origin.name, 20)}".replace(" ", "-")
-            drawn.rest = {"text/html": html.rest(drawn.card, key), "text/plain": ""}
+            whole = make_cards.with_code(drawn.card, drawn.view)
+            drawn.rest = {"text/html": html.rest(whole, key), "text/plain": ""}
         return drawn.rest
 
     def _draw(self) -> None:

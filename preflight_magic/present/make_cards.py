@@ -5,12 +5,22 @@ from __future__ import annotations
 import math
 from collections import Counter
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Literal, cast
 
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import Difference, Finding, HypothesisTest, RemovePattern, RemoveShift, Root, Step
+from preflight_magic.model import (
+    CheckError,
+    Difference,
+    Finding,
+    HypothesisTest,
+    RemovePattern,
+    RemoveShift,
+    Root,
+    Step,
+)
 from preflight_magic.plan.words import describe
 from preflight_magic.present import words
 from preflight_magic.present.cards import (
@@ -30,13 +40,13 @@ from preflight_magic.present.measures import measure_rows
 if TYPE_CHECKING:
     from preflight_magic.present.contract import SeriesView
 
-FORMS = {"pandas": "Code for pandas"}
+FORMS = {"pandas": "Code for pandas", "model": "Code for a model, which gets the plan as its arguments"}
 """Forms of the code that are shown, and the words above each."""
 
 
 # ------------------------------------------------------------------------------------------------ one series
 def card(view: SeriesView, recommended: SeriesView | None = None, asked: str = "") -> Card:
-    """Card of one series.
+    """Card of one series, without its code: that is not needed for the first picture.
 
     Parameters
     ----------
@@ -47,7 +57,6 @@ def card(view: SeriesView, recommended: SeriesView | None = None, asked: str = "
     asked : str
         Season and spans that a person chose, as whole sentences.
     """
-    codes, code_problem = _codes(view)
     return Card(
         name=view.name,
         verdict=view.verdict,
@@ -63,8 +72,6 @@ def card(view: SeriesView, recommended: SeriesView | None = None, asked: str = "
         halves=_halves(view),
         rungs=_rungs(view, recommended),
         plans=_plans(view),
-        codes=codes,
-        code_problem=code_problem,
     )
 
 
@@ -99,15 +106,20 @@ def _mark(view: SeriesView, step: Step, state: Literal["kept", "left out", "put 
     return StepMark(describe(step), words.meaning(step, view.noun), state)
 
 
-def _codes(view: SeriesView) -> tuple[tuple[CodeForm, ...], str | None]:
-    if view.problem is not None:
-        return (), None
-    made = []
+def with_code(made: Card, view: SeriesView) -> Card:
+    """The card with the code of its plan in every form."""
+    forms = () if view.problem is not None else tuple(_code(view, form, title) for form, title in FORMS.items())
+    return replace(made, codes=forms)
+
+
+def _code(view: SeriesView, form: str, title: str) -> CodeForm:
     try:
-        made += [CodeForm(title, view.code(form)) for form, title in FORMS.items()]
+        return CodeForm(title, view.code(form))
+    except CheckError as error:  # a plan that this form cannot hold
+        return CodeForm(title, "", words.sentence(str(error)))
     except Exception as error:  # a fault of the generated code must be seen in the card, not hide the card
-        return tuple(made), words.plain(f"The code could not be proved, which is a fault of this program: {error}")
-    return tuple(made), None
+        told = f"The code could not be proved, which is a fault of this program: {error}"
+        return CodeForm(title, "", words.plain(told))
 
 
 def _picture(view: SeriesView) -> Picture | None:

@@ -92,10 +92,9 @@ def card_text(card: Card, width: int | None = None) -> str:
         rows = [(row.text + (" (shown)" if row.shown else ""), row.odds) for row in card.plans]
         lines += ["", *wrap("Plans that were compared, and the odds of the best against each:", width)]
         lines += columns(rows, [width - 30, 26], "  ")
-    if card.code_problem:
-        lines += ["", *wrap(card.code_problem, width)]
-    elif card.codes:
-        lines += ["", *wrap("The pandas code: .code() of this series.", width)]
+    if not card.problem:
+        told = [form.problem for form in card.codes if form.problem]
+        lines += ["", *wrap(" ".join([*told, "The pandas code: .code() of this series."]), width)]
     return "\n".join([*lines, *wrap(words.CAUTION, width)])
 
 

@@ -54,7 +54,7 @@ def show(view: ReportView | SeriesView) -> Controller | None:
 def bundle(view: ReportView | SeriesView) -> Bundle:
     """HTML and text of a report or one series, without controls."""
     if not isinstance(view, ReportView):
-        card = make_cards.card(view)
+        card = make_cards.with_code(make_cards.card(view), view)
         return {"text/html": html.card_html(card), "text/plain": text.card_text(card)}
     if len(view) == 1:
         return bundle(view[view.names[0]])

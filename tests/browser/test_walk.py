@@ -45,7 +45,7 @@ def choose(field: Locator, words: str) -> None:
 
 @pytest.fixture
 def opened(lab: Lab, browser: Browser) -> Iterator[Notebook]:
-    with lab.notebook(browser, [LOAD, CHECK, "", COMPARE]) as notebook:
+    with lab.notebook(browser, [LOAD, CHECK, "", COMPARE, ""]) as notebook:
         faults: list[str] = []
         notebook.page.on("pageerror", lambda error: faults.append(str(error)))
         notebook.run(0)
@@ -93,6 +93,29 @@ def test_from_check_to_code_that_gives_the_numbers_of_the_plan(opened: Notebook)
     opened.run(3)
     told = opened.output(3).inner_text()
     assert told.split() == ["forward", "True", "back", "True", "log,", "difference", "1"]
+
+    output.locator("button.pfm-copy").nth(1).click()
+    model = opened.cell(4).locator(".cm-content")
+    model.click()
+    page.keyboard.press("Control+V")
+    assert "SARIMAX" in model.inner_text()
+    page.keyboard.press("Control+End")
+    page.keyboard.insert_text("\n\nprint(len(forecast(monthly['passengers'].astype(float), steps=12)))")
+    opened.run(4)
+    assert opened.output(4).inner_text().strip() == "12"
+
+
+def test_forecasts_from_the_past_on_request(opened: Notebook, pictures: Path) -> None:
+    page, output = opened.page, opened.output(1)
+    output.locator(".pfm-prove").click()
+    output.locator("table.pfm-errors").wait_for()
+    assert output.locator("table.pfm-errors tbody th").first.inner_text() == "the plan"
+    assert "origins from" in (output.locator("img.pfm-proof").get_attribute("alt") or "")
+    output.locator(".pfm-switch input").first.click()
+    page.wait_for_function("() => !document.querySelector('table.pfm-errors')")
+    output.locator(".pfm-prove").click()
+    output.locator(".pfm-changes", has_text="hold-out error").wait_for()
+    opened.picture_of(pictures / "proof.png")
 
 
 def test_back_to_the_recommendation_and_fast_clicks(opened: Notebook) -> None:

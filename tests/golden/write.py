@@ -27,10 +27,11 @@ def made() -> Mapping[str, str]:
         recommended=Plan(),
     )  # fmt: skip
     doubtful = FakeSeries(name="fuel", verdict="inconclusive")
+    whole = make_cards.with_code(make_cards.card(view), view)
     many = make_overview.overview(FakeReport(view, closed, doubtful))
     return {
         "card.txt": text.card_text(make_cards.card(view), 80) + "\n",
-        "card.html": readable(html.head(make_cards.card(view)) + html.body(make_cards.card(view))),
+        "card.html": readable(html.head(whole) + html.body(whole)),
         "switched.txt": text.card_text(switched, 80) + "\n",
         "switched.html": readable(html.head(switched) + html.first(switched)),
         "infeasible.txt": text.card_text(make_cards.card(closed), 80) + "\n",

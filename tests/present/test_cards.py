@@ -4,7 +4,7 @@ from dataclasses import replace
 
 import pandas as pd
 
-from preflight_magic.model import Difference, FillGaps, Log, RemoveTrend
+from preflight_magic.model import CheckError, Difference, FillGaps, Log, RemoveTrend
 from preflight_magic.plan.plan import Plan
 from preflight_magic.present import make_cards
 from tests.present.fakes import FakeSeries
@@ -26,8 +26,11 @@ def test_card_of_a_series() -> None:
     assert ("half-life", "1.45 months") in card.roots.notes
     assert [row.odds for row in card.plans] == ["best", "4.1 to 1", "over 1,000 to 1"]
     assert [row.shown for row in card.plans] == [True, False, False]
-    assert [form.title for form in card.codes] == ["Code for pandas"]
-    assert card.codes[0].source.startswith("import numpy")
+    assert card.codes == (), "code is made when it is shown"
+    pandas, model = make_cards.with_code(card, FakeSeries()).codes
+    assert pandas.source.startswith("import numpy")
+    assert "model" in model.title
+    assert model.problem is None
     assert card.halves is not None
     assert card.halves.moments[1] == ("variance", 0.0021, 0.0052, 3.4)
 
@@ -101,7 +104,7 @@ def test_infeasible_series_has_a_reason_and_no_code() -> None:
     view = FakeSeries(problem="Column 'passengers' is constant.", verdict="infeasible", plan=Plan(), recommended=Plan())
     card = make_cards.card(view)
     assert card.problem == "Column 'passengers' is constant."
-    assert card.codes == ()
+    assert make_cards.with_code(card, view).codes == ()
     assert card.rungs == ()
     assert card.picture is not None
     assert card.picture.correlogram_after is None
@@ -111,6 +114,13 @@ def test_infeasible_series_has_a_reason_and_no_code() -> None:
 
 
 def test_code_that_cannot_be_proved_is_shown_as_a_fault() -> None:
-    card = make_cards.card(FakeSeries(failing={"code": RuntimeError("differs at 2020-03")}))
-    assert card.codes == ()
-    assert card.code_problem == ("The code could not be proved, which is a fault of this program: differs at 2020-03")
+    view = FakeSeries(failing={"code": RuntimeError("differs at 2020-03")})
+    form = make_cards.with_code(make_cards.card(view), view).codes[0]
+    assert form.source == ""
+    assert form.problem == "The code could not be proved, which is a fault of this program: differs at 2020-03"
+
+
+def test_a_plan_that_a_form_cannot_hold_says_so() -> None:
+    view = FakeSeries(failing={"code": CheckError("no model holds this; use the pandas code.")})
+    form = make_cards.with_code(make_cards.card(view), view).codes[1]
+    assert form.problem == "No model holds this; use the pandas code."

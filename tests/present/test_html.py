@@ -8,6 +8,7 @@ import pytest
 from preflight_magic.model import Difference, Finding
 from preflight_magic.plan.plan import Plan
 from preflight_magic.present import html, make_cards
+from preflight_magic.present.cards import Card
 from preflight_magic.present.markup import Markup, el, join
 from tests.present.fakes import FakeReport, FakeSeries
 
@@ -55,8 +56,12 @@ def read(markup: str) -> Reader:
     return reader
 
 
+def whole(view: FakeSeries) -> Card:
+    return make_cards.with_code(make_cards.card(view), view)
+
+
 def shown(view: FakeSeries) -> Reader:
-    return read(html.card_html(make_cards.card(view)))
+    return read(html.card_html(whole(view)))
 
 
 @pytest.mark.parametrize("name", HOSTILE)
@@ -90,7 +95,7 @@ class HostileSeries(FakeSeries):
 def test_every_sentence_is_escaped() -> None:
     bad = "<script>alert(1)</script>"
     view = HostileSeries(answer=bad, noun=bad, alternatives=((bad, 0.0, ()),), source=bad)
-    markup = html.card_html(make_cards.card(view))
+    markup = html.card_html(whole(view))
     assert "<script" not in markup
     assert bad in "".join(read(markup).text)
 

@@ -18,18 +18,34 @@ from preflight_magic.model import CheckError
 
 if TYPE_CHECKING:
     from preflight_magic import demo
-    from preflight_magic.batch import check, stream
+    from preflight_magic.batch import Interrupted, check, stream
+    from preflight_magic.estimate import time_needed
+    from preflight_magic.overview_file import write_overview
     from preflight_magic.plan.plan import Plan
     from preflight_magic.report import Report
     from preflight_magic.series_report import SeriesReport
 
 __version__ = "0.1.0"
-__all__ = ["CheckError", "Plan", "Report", "SeriesReport", "check", "demo", "stream"]
+__all__ = [
+    "CheckError",
+    "Interrupted",
+    "Plan",
+    "Report",
+    "SeriesReport",
+    "check",
+    "demo",
+    "stream",
+    "time_needed",
+    "write_overview",
+]
 
 # Found when first asked for, so that loading the extension costs next to nothing.
 _HOMES = {
+    "Interrupted": "preflight_magic.batch",
     "check": "preflight_magic.batch",
     "stream": "preflight_magic.batch",
+    "time_needed": "preflight_magic.estimate",
+    "write_overview": "preflight_magic.overview_file",
     "Plan": "preflight_magic.plan.plan",
     "Report": "preflight_magic.report",
     "SeriesReport": "preflight_magic.series_report",

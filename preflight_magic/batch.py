@@ -5,20 +5,21 @@ from __future__ import annotations
 import hashlib
 import operator
 from collections import OrderedDict
-from collections.abc import Hashable, Iterable, Iterator, Sequence
+from collections.abc import Hashable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor
 from dataclasses import replace
-from itertools import repeat
-from typing import Any
+from typing import Any, TypeVar
 
 import numpy as np
 
+from preflight_magic import __version__
 from preflight_magic.intake import read
 from preflight_magic.intake.spans import spans_of
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
 from preflight_magic.policy import Settings, Thresholds
-from preflight_magic.progress import Progress, follow
+from preflight_magic.pooling import Lost, Work, in_pool
+from preflight_magic.progress import Progress, Tally, follow
 from preflight_magic.report import Report
 from preflight_magic.series_report import SeriesReport
 from preflight_magic.together import check_target
@@ -26,7 +27,27 @@ from preflight_magic.together import check_target
 CACHE_SIZE = 2000
 """Most climbs kept; a climb takes some tens of kilobytes."""
 
+T = TypeVar("T")
+
 _cache: OrderedDict[bytes, Climb] = OrderedDict()
+
+
+class Interrupted(KeyboardInterrupt):
+    """An interrupt in the middle of a check; `report` holds the series that were done.
+
+    Attributes
+    ----------
+    report : Report
+    total : int
+        Series of the whole check.
+    """
+
+    def __init__(self, report: Report, total: int) -> None:
+        super().__init__(
+            f"stopped after {len(report)} of {total} series; the same check again goes on from there, as long as the "
+            "cache holds what is done"
+        )
+        self.report, self.total = report, total
 
 
 def check(
@@ -83,13 +104,21 @@ def check(
     ------
     CheckError
         When nothing can be checked; a series that cannot be checked among others is reported as ``infeasible``.
+    Interrupted
+        After an interrupt from the keyboard; its `report` holds what was done.
     """
     spans = spans_of(exclude)
     every = _read(frame, season, time, series, value, only, spans, repair)
     if target is not None:
         check_target([one.name for one in every], target)
     settings = _settings(season, horizon, significance, spans)
-    return Report(follow(_stream(every, settings, cache, pool), len(every), progress), target)
+    tally, done = Tally(), list[SeriesReport]()
+    try:
+        for one in follow(_stream(every, settings, cache, pool, tally), len(every), progress, tally):
+            done.append(one)
+    except KeyboardInterrupt:
+        raise Interrupted(Report(done), len(every)) from None
+    return Report(done, target)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
@@ -106,19 +135,41 @@ def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:
     SeriesReport
         In the order of the table.
     """
+    every, settings, o = opened("stream", frame, options)
+    tally = Tally()
+    return follow(_stream(every, settings, o["cache"], o["pool"], tally), len(every), o["progress"], tally)
+
+
+def opened(
+    caller: str, frame: Any, options: Mapping[str, Any]
+) -> tuple[tuple[TimeSeries, ...], Settings, dict[str, Any]]:
+    """Read a table with the options of `check`, given by name, in the name of a function that hands them on.
+
+    Parameters
+    ----------
+    caller : str
+    frame : DataFrame, Series, or anything with ``to_pandas``
+    options : Mapping
+
+    Returns
+    -------
+    every : tuple of TimeSeries
+    settings : Settings
+    given : dict
+        All options, those left out at their defaults.
+    """
     given: dict[str, Any] = {"season": None, "horizon": None, "time": None, "series": None, "value": None, "only": None}
     given |= {"exclude": None, "repair": True, "cache": True, "pool": None, "progress": None, "significance": 0.05}
     given |= {"target": None}
     unknown = sorted(options.keys() - given.keys())
     if unknown:
-        raise TypeError(f"stream() has no option {', '.join(unknown)}")
-    o = given | options
+        raise TypeError(f"{caller}() has no option {', '.join(unknown)}")
+    o = {**given, **options}
     o["exclude"] = spans_of(o["exclude"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
     if o["target"] is not None:
         check_target([one.name for one in every], o["target"])
-    settings = _settings(o["season"], o["horizon"], o["significance"], o["exclude"])
-    return follow(_stream(every, settings, o["cache"], o["pool"]), len(every), o["progress"])
+    return every, _settings(o["season"], o["horizon"], o["significance"], o["exclude"]), o
 
 
 def _read(
@@ -147,38 +198,62 @@ def _settings(season: Any, horizon: Any, significance: Any, exclude: Any) -> Set
 
 
 def _stream(
-    every: Sequence[TimeSeries], settings: Settings, cache: bool, pool: Executor | None
+    every: Sequence[TimeSeries], settings: Settings, cache: bool, pool: Executor | None, tally: Tally
 ) -> Iterator[SeriesReport]:
-    """Reports in the order of the series."""
+    """Reports in the order of the series; after an interrupt those that are done, then the interrupt."""
     keys = [_key(one, settings) if cache else None for one in every]
-    waiting = [key is None or key not in _cache for key in keys]
-    todo = [one for one, waits in zip(every, waiting, strict=True) if waits]
-    found = map(_checked, todo, repeat(settings)) if pool is None else pool.map(_checked, todo, repeat(settings))
-    for one, key, waits in zip(every, keys, waiting, strict=True):
-        if waits:
-            source, known = next(found)
-            if source.problem is None:
-                _remember(key, known)
-        elif key is not None and key in _cache:
-            source, known = one, _cache[key]
-            _cache.move_to_end(key)
-        else:
-            # other results of this run have pushed it out
-            source, known = _checked(one, settings)
-        yield SeriesReport(source, settings, known)
+    # Held from here on, since the results of this run may push them out of the cache.
+    known = {place: kept for place, key in enumerate(keys) if (kept := _recalled(key)) is not None}
+    places = [place for place in range(len(every)) if place not in known]
+    start = 0
+    for position, found in computed(checked, [every[place] for place in places], settings, pool, tally):
+        place = places[position]
+        yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, place) if at in known)
+        yield report_of(every[place], keys[place], settings, found)
+        start = place + 1
+    yield from (SeriesReport(every[at], settings, known[at]) for at in range(start, len(every)))
 
 
-def _checked(one: TimeSeries, settings: Settings) -> tuple[TimeSeries, Climb]:
+def computed(
+    work: Work[T], todo: Sequence[TimeSeries], settings: Settings, pool: Executor | None, tally: Tally
+) -> Iterator[tuple[int, T | Lost]]:
+    """Do the same with each series, here or in a pool, and tell the position of each result."""
+    tally.wanted = len(todo)
+    if pool is not None:
+        yield from in_pool(work, todo, settings, pool, tally)
+        return
+    for position, one in enumerate(todo):
+        found = work(one, settings)
+        tally.finished += 1
+        yield position, found
+
+
+def checked(one: TimeSeries, settings: Settings) -> Climb | Lost:
     """Climb the ladder; a fault of ours makes this series infeasible and stops no other."""
     try:
-        return one, climb(one, settings)
+        # What the plan makes of the series costs less to compute again than to send and to keep.
+        return replace(climb(one, settings), transformed=None)
     except Exception as error:
-        problem = (
-            f"column {one.name!r}: the check failed inside preflight_magic ({type(error).__name__}: {error}); "
-            "please report this with the data, and check the other columns meanwhile."
+        return Lost(
+            f"the check failed inside preflight_magic ({type(error).__name__}: {error}); please report this with the "
+            "data, and check the other columns meanwhile"
         )
-        failed = replace(one, problem=problem)
-        return failed, climb(failed, settings)
+
+
+def report_of(one: TimeSeries, key: bytes | None, settings: Settings, known: Climb | Lost) -> SeriesReport:
+    """Report of a series, infeasible where its climb was lost; `key` is what the cache will know it by."""
+    if isinstance(known, Lost):
+        failed = replace(one, problem=f"column {one.name!r}: {known.reason}.")
+        return SeriesReport(failed, settings, climb(failed, settings))
+    _remember(key, known)
+    return SeriesReport(one, settings, known)
+
+
+def _recalled(key: bytes | None) -> Climb | None:
+    if key is None or key not in _cache:
+        return None
+    _cache.move_to_end(key)
+    return _cache[key]
 
 
 def _remember(key: bytes | None, found: Climb) -> None:
@@ -190,11 +265,15 @@ def _remember(key: bytes | None, found: Climb) -> None:
 
 
 def _key(one: TimeSeries, settings: Settings) -> bytes | None:
-    """Digest of everything a climb depends on; None for a series that cannot be checked."""
-    if one.problem is not None:
-        return None
+    """What the cache knows a climb by; None for a series that cannot be checked."""
+    return None if one.problem is not None else digest_of(one, settings)
+
+
+def digest_of(one: TimeSeries, settings: Settings) -> bytes:
+    """Digest of everything that findings depend on: values, name, calendar, options, version."""
     index = one.values.index
     digest = hashlib.blake2b(one.values.to_numpy().tobytes(), digest_size=16)
-    told = (one.name, type(one.name).__name__, one.calendar, one.season, one.repairs, one.notes, settings)
-    digest.update(repr((told, str(index.dtype), index[0], len(index))).encode())
+    told = (one.name, type(one.name).__name__, one.calendar, one.season, one.repairs, one.problem, one.notes)
+    place = (str(index.dtype), index[:1].tolist(), len(index))
+    digest.update(repr((told, settings, place, __version__)).encode())
     return digest.digest()

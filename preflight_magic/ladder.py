@@ -173,7 +173,7 @@ def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:
 
 
 def _comparison(series: TimeSeries, thresholds: Thresholds) -> Comparison | None:
-    return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds))
+    return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds), series.season[1:])
 
 
 @cache

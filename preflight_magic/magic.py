@@ -7,6 +7,7 @@ from typing import Any
 
 from IPython.core.error import UsageError
 from IPython.core.magic import no_var_expand
+from IPython.display import display
 
 from preflight_magic.cell_value import Shell, value_of_cell, value_of_line
 from preflight_magic.command_line import (
@@ -111,6 +112,8 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
     ------
     UsageError
         One sentence that says what to change.
+    KeyboardInterrupt
+        After an interrupt from the keyboard; the series that are done are shown and kept.
     """
     __tracebackhide__ = True
     given = read_line(line)
@@ -129,11 +132,19 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
 
     from preflight_magic.batch import check
 
+    into = given.options.get("--into")
     try:
         report = check(frame, **options)
     except CheckError as error:
         raise UsageError(_one_line(error)) from None
-    into = given.options.get("--into")
+    except KeyboardInterrupt as stop:
+        # What is finished is shown and kept; the interrupt still ends the cell, and "run all" with it.
+        finished = getattr(stop, "report", ())
+        if into is not None and finished:
+            shell.user_ns[str(into)] = finished
+        if finished and not (quiet or silent):
+            display(finished)  # type: ignore[no-untyped-call]
+        raise
     if into is not None:
         shell.user_ns[str(into)] = report
     return None if quiet or silent else report

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Hashable, Iterable, Mapping
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,6 +13,28 @@ from preflight_magic.model import Difference, Log, Power, RemovePattern, RemoveS
 
 if TYPE_CHECKING:
     from preflight_magic.series_report import SeriesReport
+
+
+COLUMNS = ("verdict", "plan", "log", "power", "trend", "shift", "season", "D", "d", "period", "n", "missing", "note")
+_KINDS = (
+    dict.fromkeys(("log", "trend", "shift"), "boolean")
+    | dict.fromkeys(("verdict", "plan", "season", "note"), "string")
+    | dict.fromkeys(("D", "d", "period", "n", "missing"), "Int64")
+    | {"power": "Float64"}
+)
+
+
+def table_of(rows: Iterable[Mapping[str, object]], names: Iterable[Hashable]) -> pd.DataFrame:
+    """Rows of series under each other, each column of a kind that knows missing values.
+
+    Parameters
+    ----------
+    rows : iterable of Mapping
+        From `row_of`.
+    names : iterable of Hashable
+    """
+    index = pd.Index(list(names), name="series", tupleize_cols=False)
+    return pd.DataFrame(list(rows), index=index, columns=list(COLUMNS)).astype(_KINDS)
 
 
 def row_of(report: SeriesReport) -> dict[str, object]:

@@ -11,9 +11,10 @@ import pandas as pd
 
 from preflight_magic.generated import proved_code
 from preflight_magic.model import Finding
-from preflight_magic.overview import row_of
+from preflight_magic.overview import row_of, table_of
 from preflight_magic.saving import save
 from preflight_magic.series_report import SeriesReport
+from preflight_magic.triage import attention
 
 
 class Report:
@@ -50,13 +51,25 @@ class Report:
     @cached_property
     def overview(self) -> pd.DataFrame:
         """One row a series; columns verdict, plan, log, power, trend, shift, season, D, d, period, n, missing, note."""
-        rows = [row_of(one) for one in self]
-        index = pd.Index(self.names, name="series", tupleize_cols=False)
-        frame = pd.DataFrame(rows, index=index)
-        kinds = dict.fromkeys(("log", "trend", "shift"), "boolean")
-        kinds |= dict.fromkeys(("verdict", "plan", "season", "note"), "string")
-        kinds |= dict.fromkeys(("D", "d", "period", "n", "missing"), "Int64") | {"power": "Float64"}
-        return frame.astype(kinds)
+        return table_of((row_of(one) for one in self), self.names)
+
+    def attention(self, earlier: Report | None = None, false_alarms: float = 0.05) -> pd.DataFrame:
+        """List the series that need a person, those that need one most first.
+
+        Parameters
+        ----------
+        earlier : Report, optional
+            A report of the same series from before; plans that changed since are listed.
+        false_alarms : float
+            Share of the alarms of each test, over all series, that may be false (Benjamini and Hochberg 1995).
+
+        Returns
+        -------
+        DataFrame
+            Indexed by series. `why`: ``infeasible``, ``changed``, ``inconclusive``, ``contradicted`` (a test differs
+            from the plan) or ``noted``, the first that holds; `reason`: a sentence for each that does.
+        """
+        return attention(self, earlier, false_alarms)
 
     @cached_property
     def together(self) -> Finding | None:

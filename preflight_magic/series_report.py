@@ -28,6 +28,7 @@ from preflight_magic.model import (
     TimeSeries,
     Verdict,
 )
+from preflight_magic.packing import pack, unpack
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.proof_result import Proof
@@ -108,8 +109,14 @@ class SeriesReport:
     @property
     def transformed(self) -> pd.Series:
         """Values after the plan, without missing ones; shape (m,)."""
-        found = self._found.transformed
-        return self.series.iloc[:0] if found is None else found.copy()
+        return self._transformed.copy()
+
+    @cached_property
+    def _transformed(self) -> pd.Series:
+        """Computed anew after a check of many series: it costs less to compute than to send and to keep."""
+        if self._found.transformed is not None:
+            return self._found.transformed
+        return self.series.iloc[:0] if self.problem is not None else self.plan.apply(self.series).dropna()
 
     @property
     def methods(self) -> Mapping[str, tuple[str, tuple[str, ...]]]:
@@ -244,7 +251,8 @@ class SeriesReport:
 
     def without_span(self, start: Any, end: Any) -> SeriesReport:
         """Check the series anew with the values from start to end, both included, treated as missing."""
-        return self._anew(without_span(self._source, start, end), self._settings)
+        exclude = (*self._settings.exclude, (start, end))
+        return self._anew(without_span(self._source, start, end), replace(self._settings, exclude=exclude))
 
     def _anew(self, source: TimeSeries, settings: Settings) -> SeriesReport:
         return SeriesReport(source, settings, climb(source, settings))
@@ -260,6 +268,13 @@ class SeriesReport:
         """Steps ahead: as asked, or one season, at least 6 and at most a quarter of the data."""
         asked = self._settings.horizon
         return asked if asked is not None else max(1, min(max(self.season[0], 6), len(self._source.values) // 4))
+
+    def __getstate__(self) -> dict[str, Any]:
+        light = {"_source": pack(self._source), "_found": replace(self._found, transformed=None)}
+        return {key: value for key, value in self.__dict__.items() if key != "_transformed"} | light
+
+    def __setstate__(self, state: dict[str, Any]) -> None:
+        self.__dict__ |= state | {"_source": unpack(state["_source"])}
 
     def __repr__(self) -> str:
         return f"<SeriesReport {self.name!r}: {self.verdict}, {self.problem or self.plan}>"

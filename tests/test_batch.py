@@ -252,8 +252,8 @@ def test_frame_of_the_caller_is_left_as_it_was(kind):
 
 
 def test_long_and_wide_tables_agree():
-    wide = small_table()
-    long = wide.rename_axis("year").reset_index().melt("year", var_name="line", value_name="count")
+    wide = small_table().rename_axis("year")
+    long = wide.reset_index().melt("year", var_name="line", value_name="count")
     found = pf.check(long, time="year", series="line", value="count", progress=False)
     same(found, pf.check(wide, progress=False))
 

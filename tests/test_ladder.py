@@ -264,3 +264,17 @@ def test_horizon_and_significance_never_change_the_plan():
     assert {k: v.verdict for k, v in plain.findings.items() if k in KNOWN} == {
         k: v.verdict for k, v in other.findings.items() if k in KNOWN
     }
+
+
+def test_hours_of_the_week_take_the_place_of_hours_of_the_day():
+    rng = np.random.default_rng(5)
+    t = np.arange(24 * 7 * 6)
+    weekend = (t // 24) % 7 >= 5
+    values = 40.0 + 6.0 * np.sin(2 * np.pi * t / 24) - 3.0 * weekend + rng.standard_normal(len(t))
+    power = pd.Series(values, pd.date_range("2025-01-06", periods=len(t), freq="h"), name="berth_power")
+    found = pf.check(power)["berth_power"]
+    assert found.season == (24, 168)
+    assert found.plan.steps == (pf.RemovePattern(168),)
+    assert "longer season of 168" in found.findings["season"].reason
+    alike = pf.check(power + 3.0 * weekend)["berth_power"]
+    assert alike.plan.steps == (pf.RemovePattern(24),)

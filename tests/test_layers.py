@@ -19,6 +19,7 @@ CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "pre
 REPORT = {"answer", "changes", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
 REPORT |= {"reference", "reference_mixture", "reference_parts", "together", "together_words"}
 REPORT |= {"proof", "proof_result", "proof_words"}
+REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
 SHELL = {"command_line", "completion", "cell_value", "magic"}
 

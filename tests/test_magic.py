@@ -136,6 +136,23 @@ def test_pool_is_the_executor_of_that_name(shell: InteractiveShell) -> None:
         assert checked(shell, "%checkseries monthly --pool workers").options == {"pool": pool}
 
 
+@pytest.mark.parametrize("more", ["", " --quiet"])
+def test_interrupt_keeps_and_shows_what_is_finished(
+    shell: InteractiveShell, more: str, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    stop = KeyboardInterrupt("stopped after 3 of 10 series")
+    stop.report = finished = Report(frame(), {})  # type: ignore[attr-defined]
+
+    def interrupted(table: object, **options: object) -> None:
+        raise stop
+
+    monkeypatch.setattr(sys.modules["preflight_magic.batch"], "check", interrupted)
+    result = shell.run_cell(f"%checkseries monthly --into kept{more}")
+    assert isinstance(result.error_in_exec, KeyboardInterrupt)
+    assert shell.user_ns["kept"] is finished
+    assert ("the report is shown" in capsys.readouterr().out) == (not more)
+
+
 def test_nothing_in_the_line_is_expanded(shell: InteractiveShell) -> None:
     shell.user_ns.update(passengers="crew overtime", frames={"{passengers}": frame(), "$passengers": frame()})
     assert checked(shell, '%checkseries frames["{passengers}"]').frame is shell.user_ns["frames"]["{passengers}"]

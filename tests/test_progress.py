@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from preflight_magic import progress as telling
-from preflight_magic.progress import follow
+from preflight_magic.progress import Tally, duration, follow
 
 
 @pytest.fixture
@@ -60,6 +60,28 @@ def test_long_work_is_shown_unasked(clock, capsys):
 def test_short_work_is_shown_when_asked(clock, capsys):
     list(follow(work(clock, 2, 0.5), 2, True))
     assert "2 of 2 series checked" in capsys.readouterr().err
+
+
+def test_pace_is_that_of_the_work_and_not_of_what_is_handed_on(clock, capsys):
+    tally = Tally(wanted=60)
+
+    def from_a_pool():
+        # The first forty come from a cache; of the others half are done when the first is handed on.
+        yield from range(40)
+        clock.now += 30.0
+        tally.finished = 30
+        yield from range(60)
+
+    list(follow(from_a_pool(), 100, None, tally))
+    first = capsys.readouterr().err.split("\r")[1]
+    assert first.strip() == "41 of 100 series checked, 30 s left"
+
+
+@pytest.mark.parametrize(
+    ("seconds", "told"), [(0.2, "0 s"), (99.4, "99 s"), (99.6, "2 min"), (3600.0, "60 min"), (12000.0, "3 h 20 min")]
+)
+def test_time_is_told_briefly(seconds, told):
+    assert duration(seconds) == told
 
 
 def test_line_is_not_written_too_often(clock, capsys):

@@ -180,7 +180,8 @@ def _infinite(numbers: Floats, index: pd.Index, kind: CalendarKind) -> str | Non
 
 def _out_of_scale(values: pd.Series) -> str | None:
     """Numbers whose squares a computer cannot hold."""
-    low, high = float(values.min()), float(values.max())
+    numbers = values.to_numpy()
+    low, high = float(np.nanmin(numbers)), float(np.nanmax(numbers))
     largest = max(abs(low), abs(high))
     if largest > LARGEST:
         return f"values up to {largest:.3g} in size, too large to be squared; divide the column by a power of ten"

@@ -99,7 +99,7 @@ def start(found: Regression, order: Order) -> Array:
     return inside(order, effects)
 
 
-def refine(found: Regression, order: Order, coefficients: Array) -> tuple[Array, float]:
+def refine(found: Regression, order: Order, coefficients: Array, rounds: int = _ROUNDS) -> tuple[Array, float]:
     """Gauss-Newton steps on the sum of squares.
 
     Parameters
@@ -108,6 +108,8 @@ def refine(found: Regression, order: Order, coefficients: Array) -> tuple[Array,
     order : Order
     coefficients : ndarray, shape (order.size,)
         Inside the circle.
+    rounds : int
+        Most steps.
 
     Returns
     -------
@@ -118,7 +120,7 @@ def refine(found: Regression, order: Order, coefficients: Array) -> tuple[Array,
     values, skip = found.values, found.skip
     residuals = _residuals(values, order, coefficients)
     total = float(residuals[skip:] @ residuals[skip:])
-    for _ in range(_ROUNDS if order.size else 0):
+    for _ in range(rounds if order.size else 0):
         slopes = _slopes(values, residuals, order, coefficients)[skip:]
         gram = slopes.T @ slopes
         gram[np.diag_indices(order.size)] += 1e-6 * float(np.trace(gram)) + 1e-300

@@ -15,6 +15,8 @@ from preflight_magic.kernels.arma_parameters import coefficients as bounded
 
 _FINALISTS = 4
 """Orders whose exact likelihood is found."""
+_LOOKED_AT = 8
+"""Orders whose conditional estimate is made exact before the finalists are picked."""
 _NEAR = 8.0
 """Orders farther than this from the best conditional AICc are not looked at again."""
 _COARSE = 1e-5
@@ -99,10 +101,13 @@ def _finalists(sample: Sample, period: int, seasonal: bool, most: tuple[int, int
 
     def ranked(order: Order) -> _Ranked:
         if order not in done:
-            estimate, square = refine(found, order, start(found, order))
-            height = -0.5 * sample.count * float(np.log(max(square, 1e-300)))
-            done[order] = _Ranked(corrected_aic(height, order.size + extra, sample.count), order, estimate)
+            done[order] = refined(order, start(found, order), 1)
         return done[order]
+
+    def refined(order: Order, begin: Array, rounds: int) -> _Ranked:
+        estimate, square = refine(found, order, begin, rounds)
+        height = -0.5 * sample.count * float(np.log(max(square, 1e-300)))
+        return _Ranked(corrected_aic(height, order.size + extra, sample.count), order, estimate)
 
     plain = [(p, q) for p in range(most[0] + 1) for q in range(most[1] + 1)]
     plain += [(3, 0)] if most[0] >= 2 else []
@@ -118,7 +123,9 @@ def _finalists(sample: Sample, period: int, seasonal: bool, most: tuple[int, int
     finalists: list[_Ranked] = []
     for P, Q in terms:
         orders = [Order(p, q, P, Q, period if P or Q else 1) for p, q in plain]
-        group = sorted((ranked(order) for order in orders if order.size <= room), key=lambda one: one.criterion)
+        likely = sorted((ranked(order) for order in orders if order.size <= room), key=lambda one: one.criterion)
+        group = [refined(one.order, one.coefficients, 2) for one in likely[: _LOOKED_AT // len(terms)]]
+        group.sort(key=lambda one: one.criterion)
         # each group by itself: between groups only the likelihood decides
         finalists += [one for one in group[: _FINALISTS // len(terms)] if one.criterion <= group[0].criterion + _NEAR]
     return finalists

@@ -7,7 +7,7 @@ priors, so that plans with and without them are comparable too.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.special import logsumexp
@@ -18,7 +18,7 @@ from preflight_magic.kernels.outliers import additive_outliers
 from preflight_magic.kernels.plan_evidence import Assessed, Candidate, PlanPrior, Subject, assess, base_columns, step_t
 from preflight_magic.kernels.power_transform import log_gain
 from preflight_magic.kernels.restricted_likelihood import Array, Levels, missing_columns, residuals
-from preflight_magic.kernels.seasonal_presence import Presence, season_presence
+from preflight_magic.kernels.seasonal_presence import Presence, longer_presence, season_presence, without_pattern
 
 __all__ = ["Candidate", "Comparison", "PlanPrior", "compare"]
 
@@ -58,7 +58,7 @@ class Comparison:
         return self.candidates[0]
 
 
-def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
+def compare(values: Array, period: int, prior: PlanPrior, longer: tuple[int, ...] = ()) -> Comparison | None:
     """Compare candidate plans of one series.
 
     Parameters
@@ -68,6 +68,9 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     period : int
         Seasonal period to consider; 1 for none.
     prior : PlanPrior
+    longer : tuple of int, optional
+        Further, longer periods. A multiple of `period` that shows a fixed pattern beyond that of `period` takes its
+        place: the pattern is taken out first, by its means, and the plans differ in all else.
 
     Returns
     -------
@@ -88,28 +91,44 @@ def compare(values: Array, period: int, prior: PlanPrior) -> Comparison | None:
     if not scale > 0.0:
         return None
     x = (x - centre) / scale + _GRAIN * np.random.default_rng(0).standard_normal(n)
-    found = _best_plans(x, usable, prior)
+    beyond = _longer(x, usable, longer, prior.season_p)
+    if beyond is not None:
+        x, searched = without_pattern(x, beyond[0]), 1
+    else:
+        searched = usable
+    found = _best_plans(x, searched, prior)
     if found is None:
         return None
     outliers = _outliers(found, x, prior.outlier_bound)
     if outliers:
         kept = x.copy()
         kept[list(outliers)] = np.nan
-        found = _best_plans(kept, usable, prior) or found
-    candidates = sorted((one.candidate for one in found.assessed), key=lambda candidate: -candidate.evidence)
+        found = _best_plans(kept, searched, prior) or found
+    every = (replace(one.candidate, pattern=beyond is not None or one.candidate.pattern) for one in found.assessed)
+    candidates = sorted(every, key=lambda candidate: -candidate.evidence)
     evidence = np.array([candidate.evidence for candidate in candidates])
     shifted = next((candidate for candidate in candidates if candidate.shift is not None), None)
     return Comparison(
         log=log,
         log_gain=gain,
-        period=usable,
-        presence=found.presence,
+        period=beyond[0] if beyond else usable,
+        presence=beyond[1] if beyond else found.presence,
         dated=found.dates[shifted.trend] if shifted else None,
         candidates=tuple(candidates),
         weights=tuple(np.exp(evidence - logsumexp(evidence)).tolist()),
         count=int(np.isfinite(values).sum()),
         outliers=outliers,
     )
+
+
+def _longer(x: Array, period: int, longer: tuple[int, ...], bound: float) -> tuple[int, Presence] | None:
+    """The longest period with a pattern beyond that of `period`, and its test."""
+    for one in sorted(longer, reverse=True):
+        if period > 1 and one > period and one % period == 0 and _cycles(x, one):
+            presence = longer_presence(x, period, one)
+            if presence.standardised < bound:
+                return one, presence
+    return None
 
 
 @dataclass(frozen=True)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg.lapack import dposv
 
 from preflight_magic.kernels.restricted_likelihood import Array, line_column, pattern_columns
 
@@ -137,9 +138,12 @@ def _fitted(design: Array, response: Array) -> tuple[Array, float]:
     for _ in range(20):
         scale = max(scale, _EXACT)
         weights = (_DEGREES + 1.0) / (_DEGREES + left**2 / scale)
-        root = np.sqrt(weights)[:, None]
-        effects = np.linalg.lstsq(design * root, response * root[:, 0], rcond=None)[0]
-        left = response - design @ effects
+        weighted = basis * weights[:, None]
+        # the basis is orthonormal, so its weighted products are well conditioned
+        _, move, info = dposv(weighted.T @ basis, weighted.T @ left)
+        if info != 0:
+            break
+        left = left - basis @ move
         last, scale = scale, float(np.mean(weights * left**2))
         if abs(scale - last) < 1e-4 * last:
             break

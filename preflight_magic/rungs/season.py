@@ -19,7 +19,8 @@ from preflight_magic.rungs.shares import capital, does, p_text, shares, told
 
 METHOD = (
     "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level "
-    "that grows stricter with the length of the series. "
+    "that grows stricter with the length of the series. Where there are several periods, the cycles of the shortest "
+    "may differ within a longer one (the hours of a day within the week): then the longer pattern is removed. "
     "Then whether the pattern is fixed: a seasonal difference of a fixed pattern leaves a seasonal moving average with "
     "a root at one, so both plans are models of the same data and their likelihoods are compared. HEGY (null: a unit "
     "root at every seasonal frequency) and Canova-Hansen (null: a fixed pattern) are shown beside it; HEGY is weak in "
@@ -65,12 +66,12 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         tests = (
             HypothesisTest(
                 test="F test of the pattern",
-                null="no season",
+                null="no season" if comparison.period <= asked else f"cycles of {asked} that are alike",
                 statistic=presence.statistic,
                 p_value=presence.p_value,
                 p_bound="exact",
                 nobs=presence.nobs,
-                lags=3,
+                lags=3 if comparison.period <= asked else asked + 1,
                 terms="ct",
                 options={
                     "series": "log" if comparison.log else "as given",
@@ -120,6 +121,13 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
             f"{standardised:.{4 if standardised < 0.01 else 3}f}; below {thresholds.season_p:g} is wanted."
         )
         return Judgement("clear", "no season", reason)
+    if period > asked:
+        reason = (
+            f"The cycles of {asked} differ within a longer season of {period} ({p_text}). A pattern that long is "
+            f"removed, never differenced: a difference at {period} would cost that many values, and there are few "
+            "cycles to tell how it wanders."
+        )
+        return Judgement("transform", "a fixed pattern", reason, (RemovePattern(period),))
     split = cast("Mapping[Hashable, float]", found["season_shares"])
     kind = next(iter(split))
     even = split[kind] < thresholds.even_share

@@ -9,6 +9,7 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.kernels.plan_likelihood import Candidate, Comparison
+from preflight_magic.kernels.seasonal_presence import without_pattern
 from preflight_magic.kernels.trend_evidence import TREND_TEST, TrendEvidence, trend_evidence
 from preflight_magic.model import (
     Evidence,
@@ -99,15 +100,18 @@ def _evidence(series: TimeSeries, comparison: Comparison) -> TrendEvidence:
     values = series.values.to_numpy(dtype=float, copy=True)
     values[list(comparison.outliers)] = np.nan
     values = np.log(values) if comparison.log else values
+    period, pattern = comparison.period, comparison.best.pattern or comparison.best.D > 0
+    if period > series.season[0]:
+        values, period, pattern = without_pattern(values, period), 1, False
     dated, best = comparison.dated, comparison.best
     shifted = next((one for one in comparison.candidates if dated and one.shift == dated.position), best)
     words = ["log" if comparison.log else "as given"] + (["outliers left out"] if comparison.outliers else [])
     return trend_evidence(
         values,
-        comparison.period,
+        period,
         dated.position if dated else None,
         with_line=shifted.trend,
-        with_pattern=best.pattern or best.D > 0,
+        with_pattern=pattern,
         series=", ".join(words),
     )
 

@@ -38,7 +38,9 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     """
     if context.comparison is None:
         return Evidence(problem="no plan could be computed, so the log could not be compared either.")
-    values, period = series.values.to_numpy(dtype=float), context.comparison.period
+    values = series.values.to_numpy(dtype=float)
+    # of several seasons the shortest: it tells the spread as well, and costs a tenth
+    period = min(context.comparison.period, series.season[0])
     measures: dict[str, object] = {"log_gain": context.comparison.log_gain, "smallest": float(np.nanmin(values))}
     likely, steady = box_cox(values, period), guerrero(values, period)
     if likely is not None:

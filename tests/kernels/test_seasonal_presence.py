@@ -7,7 +7,8 @@ import pytest
 from scipy.signal import lfilter
 from statsmodels.regression.linear_model import OLS
 
-from preflight_magic.kernels.seasonal_presence import Presence, season_presence
+from preflight_magic.kernels.power_transform import lagged_design, residual_sum
+from preflight_magic.kernels.seasonal_presence import Presence, longer_presence, season_presence, without_pattern
 
 
 def noise(n, ar=(), seed=0):
@@ -88,3 +89,55 @@ def test_p_value_is_standardised_to_a_hundred_values():
     assert found.nobs == 225
     assert found.standardised == pytest.approx(0.03)
     assert Presence(0.5, 0.9, 11, 209).standardised == 0.5
+
+
+def days(weeks, seed, *, weekend=0.0, wander=0.0):
+    """Six hours a day, seven days a week, with a pattern of the day and, where asked for, one of the week."""
+    rng = np.random.default_rng(seed)
+    t = np.arange(42 * weeks)
+    values = noise(len(t), 0.6, seed) + 3.0 * np.sin(2 * np.pi * t / 6) + weekend * ((t // 6) % 7 >= 5)
+    drift = wander * rng.standard_normal((len(t) // 6, 6)).cumsum(axis=0).ravel()
+    return values + drift
+
+
+def test_a_week_beyond_the_day_is_found():
+    for seed in range(5):
+        assert longer_presence(days(20, seed, weekend=1.5), 6, 42).p_value < 1e-6
+
+
+@pytest.mark.parametrize("wander", [0.0, 0.4])
+def test_a_pattern_of_the_day_alone_is_no_week(wander):
+    p = np.array([longer_presence(days(20, seed, wander=wander), 6, 42).p_value for seed in range(60)])
+    # 1 % of 60, and Monte Carlo error
+    assert (p < 0.01).sum() <= 3
+
+
+def test_longer_pattern_agrees_with_least_squares_on_dummies():
+    values = days(8, 3, weekend=0.5)
+    values[[5, 77, 200]] = np.nan
+    found = longer_presence(values, 6, 42)
+    design, response, _ = lagged_design(values, 1, (1, 2, 3, 6, 7))
+    rows = np.flatnonzero(np.isfinite(values))
+    rows = rows[rows >= 7]
+    sums = [
+        residual_sum(np.column_stack([np.eye(period)[rows % period], design[:, 1:]]), response) for period in (42, 6)
+    ]
+    degrees = len(rows) - 42 - 6
+    assert (found.numerator, found.denominator) == (36, degrees)
+    assert found.statistic == pytest.approx((sums[1] - sums[0]) / 36 / (sums[0] / degrees), rel=1e-9)
+
+
+def test_longer_pattern_needs_two_of_each_place():
+    assert np.isnan(longer_presence(days(2, 0)[:70], 6, 42).p_value)
+
+
+def test_mean_pattern_about_a_line_is_taken_out():
+    t = np.arange(84.0)
+    pattern = np.tile(np.random.default_rng(2).standard_normal(42), 2)
+    values = 5.0 + 0.1 * t + pattern - pattern.mean()
+    values[10] = np.nan
+    left = without_pattern(values, 42)
+    assert np.isnan(left[10])
+    seen = np.isfinite(left)
+    # one place is seen once: there the line and the pattern cannot be told apart, and no value is far off
+    assert left[seen] == pytest.approx(5.0 + 0.1 * t[seen], abs=1e-8)

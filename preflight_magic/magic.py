@@ -190,20 +190,16 @@ def series_code(shell: Shell, line: str) -> None:
 def _options(given: Line, frame: Any) -> dict[str, Any]:
     """Arguments of the check: those that were given, names of columns as the frame has them."""
     columns = tuple(getattr(frame, "columns", ()))
-    options: dict[str, Any] = {}
-    for option in OPTIONS:
-        if option.name in given.options and option.name not in ("--into", "--pool", "--quiet"):
-            options[option.name.removeprefix("--")] = given.options[option.name]
+    kept = [option.name for option in OPTIONS if option.name not in ("--into", "--pool", "--quiet")]
+    options: dict[str, Any] = {name.removeprefix("--"): given.options[name] for name in kept if name in given.options}
     for key in ("time", "series", "value"):
         if key in options:
             options[key] = label_of(options[key], columns)
-    long = options.get("series") in columns
-    if "only" in options or "target" in options:
-        names = tuple(frame[options["series"]].unique()) if long else columns
-        if "only" in options:
-            options["only"] = [label_of(name, names) for name in options["only"]]
-        if "target" in options:
-            options["target"] = label_of(options["target"], names)
+    names = tuple(frame[options["series"]].unique()) if options.get("series") in columns else columns
+    if "only" in options:
+        options["only"] = [label_of(name, names) for name in options["only"]]
+    if "target" in options:
+        options["target"] = label_of(options["target"], names)
     if "exclude" in options:
         stamps = frame[options["time"]] if options.get("time") in columns else getattr(frame, "index", None)
         options["exclude"] = [_span(span, stamps) for span in options["exclude"]]

@@ -86,6 +86,9 @@ def prove_plan(report: SeriesReport) -> Proof:
         scored[label] = [_with_plan(plan, y, cut, horizon, report.season[0]) for cut in cuts]
     for label, lag in _naives(report.season[0]).items():
         scored[label] = [_naive(y, cut, horizon, lag, report.season[0]) for cut in cuts]
+    if all(one is None for each in scored.values() for one in each):
+        told = "nothing changes from one season to the next, so there are no errors to scale"
+        return Proof(report.name, horizon, problem=f"column {report.name!r}: {told}; no proof is needed.")
     stamps = tuple(cast(Stamp, y.index[cut - 1]) for cut in cuts)
     rows, sentences, errors = rows_and_sentences(scored, cuts, horizon, report.plan)
     return Proof(report.name, horizon, stamps, rows, errors, sentences)
@@ -162,7 +165,8 @@ def _with_plan(plan: Plan, y: pd.Series, cut: int, horizon: int, period: int) ->
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
             table = forecast_of(plan, fit, history, transformed, future.index).table(COVERAGE)
-    except CheckError:
+    except (CheckError, ArithmeticError, np.linalg.LinAlgError):
+        # The history does not carry the plan, or no ARMA model of what it leaves could be found.
         return None
     middle, lower, upper = (table[name].to_numpy() for name in ("median", "lower", "upper"))
     return _scored(future.to_numpy(dtype=float), history.to_numpy(dtype=float), middle, lower, upper, period)

@@ -49,8 +49,8 @@ def forecast_of(
     Returns
     -------
     Mixture
-        Of one part. Its variance includes what is uncertain about mean, drift, trend, shift and pattern; its degrees
-        of freedom are the values left less the numbers estimated.
+        Of one part. Its variance includes what is uncertain about mean, drift, trend, shift, pattern and coefficients;
+        its degrees of freedom are the values left less the numbers estimated.
     """
     points = point_steps(plan.steps)
     others = Plan((), tuple(step for step in plan.steps if step not in points))
@@ -64,7 +64,7 @@ def forecast_of(
         left = values - fit.correction
         found = predict(ar, ma, left, steps, columns=columns, differences=lags, exact=fit.exact)
         path, degrees = found.mean, float(max(fit.nobs - fit.parameters + 1, 1))
-        variance = found.square / degrees * (found.noise + found.effects).diagonal()
+        variance = found.variance(len(values), fit.order.size, degrees)
     middle = pd.Series(path, index=index, name=history.name)
     level = others.back_transform(middle, Plan(plan.repairs, points).apply(history))
     part = Part(1.0, Ahead(level.to_numpy(), np.asarray(variance), degrees))

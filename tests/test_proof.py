@@ -168,3 +168,10 @@ def test_a_forecast_that_fails_is_told() -> None:
     rows, sentences, _ = rows_and_sentences(scored, range(30, 40), 2, pf.Plan((), (pf.Log(),)))
     assert "no forecast could be computed" in sentences[0]
     assert next(row for row in rows if row.forecast == "without log").origins == 0
+
+
+def test_a_series_that_repeats_itself_has_no_errors_to_scale() -> None:
+    y = pd.Series(np.resize([1.0, 5.0, 2.0, 8.0], 48), index=quarters(48).index, name="berths")
+    found = pf.check(y, horizon=4, progress=False)["berths"].proof
+    assert found.problem is not None
+    assert "nothing changes from one season to the next" in found.problem

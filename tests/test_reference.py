@@ -41,9 +41,10 @@ def test_airline_model_for_1960_agrees_with_statsmodels():
     other = model.get_forecast(12)
     found = one.reference_forecast(12, average=False)
     assert found["median"].to_numpy() == pytest.approx(np.exp(other.predicted_mean), rel=1e-5)
-    # Two coefficients are estimated beside the variance: 119 values over 117 degrees of freedom, and Student's t.
+    # Two coefficients are estimated beside the variance: 119 values over 117 degrees of freedom, and Student's t; they
+    # add two parts in 119 (Akaike 1969, final prediction error).
     width = np.log(found["upper"] / found["lower"]).to_numpy() / 2
-    expected = other.se_mean * np.sqrt(119 / 117) * student.ppf(0.95, 117)
+    expected = other.se_mean * np.sqrt(119 / 117 * 121 / 119) * student.ppf(0.95, 117)
     assert width == pytest.approx(expected, rel=1e-3)
     # Other plans are not ruled out, but agree: the forecast is the plan's own, its interval theirs.
     both = one.reference_forecast(12)

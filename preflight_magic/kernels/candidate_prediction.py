@@ -11,6 +11,7 @@ from preflight_magic.kernels.arma_parameters import Array, polynomials
 from preflight_magic.kernels.plan_evidence import Candidate
 from preflight_magic.kernels.prediction import predict, undo_differences
 from preflight_magic.kernels.restricted_likelihood import difference, missing_columns, pattern_columns
+from preflight_magic.kernels.whiten import NotPositiveDefiniteError
 
 WINDOW = 20.0
 """Odds against the leading plan from which a plan is left out of an average: Occam's window of Madigan and Raftery
@@ -62,7 +63,7 @@ def predict_candidate(
     Returns
     -------
     Ahead or None
-        None where too few values are left.
+        None where too few values are left, or its coefficients lie on the boundary.
     """
     n = len(levels)
     kept = np.asarray(levels, dtype=float).copy()
@@ -81,11 +82,14 @@ def predict_candidate(
     if degrees < 1:
         return None
     ar, ma = polynomials(candidate.order, candidate.coefficients)
-    found = predict(ar, ma, values, steps, columns=columns, differences=lags)
+    try:
+        found = predict(ar, ma, values, steps, columns=columns, differences=lags)
+    except NotPositiveDefiniteError:
+        return None
     mean = found.mean
     for level, lag in reversed(list(zip(chain, lags, strict=False))):
         mean = undo_differences(mean, lag, level)
-    variance = found.square / degrees * (found.noise + found.effects).diagonal() + sum(apart) / n
+    variance = found.variance(len(values), candidate.order.size, degrees) + sum(apart) / n
     return Ahead(mean, variance, float(degrees))
 
 

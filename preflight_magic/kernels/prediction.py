@@ -32,6 +32,26 @@ class Prediction:
     effects: Array
     square: float
 
+    def variance(self, rows: int, coefficients: int, degrees: float) -> Array:
+        """Error variance after undoing differences, shape (steps,).
+
+        Parameters
+        ----------
+        rows : int
+            Values after differences.
+        coefficients : int
+            ARMA coefficients that were estimated from them.
+        degrees : float
+            Values less all numbers estimated.
+
+        Notes
+        -----
+        What the coefficients add is that of the final prediction error (Akaike 1969, Fitting autoregressive models for
+        prediction, Annals of the Institute of Statistical Mathematics 21, 243-247): one part in n for each.
+        """
+        unit = self.square / degrees * (1.0 + coefficients / rows)
+        return np.asarray(unit * (self.noise + self.effects).diagonal())
+
 
 def predict(
     ar: Array,

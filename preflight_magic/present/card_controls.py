@@ -61,7 +61,7 @@ class CardControls:
 
         self._asks, self._guard = asks, guard
         self.boxes: list[Any] = []
-        self._back = button("Back to the recommendation", "Steps, season and spans as recommended", "pfm-back",
+        self._back = button("As recommended", "Back to the recommendation: steps, season and spans", "pfm-back",
                             lambda: self._run(asks.back))  # fmt: skip
         self._prove = button("Forecast the past", "From past origins, with this plan and others; takes seconds",
                              "pfm-prove", lambda: self._run(asks.prove))  # fmt: skip

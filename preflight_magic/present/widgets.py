@@ -15,10 +15,7 @@ if TYPE_CHECKING:
     from preflight_magic.present.contract import SeriesView
 
 _NUMBERS = itertools.count(1)
-HINT = (
-    "Turn a step off or on and the series is examined again; More changes has other plans, seasons and spans; "
-    "%seriescode puts the code into a new cell."
-)
+HINT = "Turn a step off to see what it does; More changes has other plans; %seriescode puts the code into a cell."
 """Said once in a session, until the first click."""
 _hints = iter([HINT])
 

@@ -44,10 +44,11 @@ class _Drawn:
     first: Bundle = field(default_factory=dict)
     rest: Bundle = field(default_factory=dict)
 
-    def show(self, card: Card, key: str) -> None:
+    def show(self, card: Card, key: str, styled: bool) -> None:
         """Make the upper part of a card."""
         self.card = card
-        self.top = {"text/html": join([html.style(), html.head(card, key)]), "text/plain": text.card_text(card)}
+        head = join([None if styled else html.style(), html.head(card, key)])
+        self.top = {"text/html": head, "text/plain": text.card_text(card)}
         self.first = {"text/html": html.first(card), "text/plain": ""}
 
 
@@ -61,10 +62,12 @@ class LiveCard:
     guard : Guard
     key : str
         Tells this card from others on the page.
+    styled : bool
+        Whether what stands above it has brought the style sheet already.
     """
 
-    def __init__(self, origin: SeriesView, guard: Guard, key: str) -> None:
-        self._guard, self._key = guard, key
+    def __init__(self, origin: SeriesView, guard: Guard, key: str, styled: bool = False) -> None:
+        self._guard, self._key, self._styled = guard, key, styled
         self._made: OrderedDict[tuple[Hashable, Wish], _Drawn] = OrderedDict()
         self._bases: dict[Wish, SeriesView] = {}
         self._handles: tuple[Any, Any, Any] | None = None
@@ -134,7 +137,7 @@ class LiveCard:
         proof, changes = proof_card(drawn.view), drawn.card.changes
         if self._wish != self._recommended:
             changes = (*changes, *hold_out(proof_card(self._drawn(self._recommended).view), proof))
-        drawn.show(replace(drawn.card, proof=proof, changes=changes), self._key)
+        drawn.show(replace(drawn.card, proof=proof, changes=changes), self._key, self._styled)
         self._guard.quietly(lambda: self._set_controls(boxes=False))
         if self._handles is not None:
             self._handles[0].update(drawn.top, raw=True)
@@ -200,7 +203,7 @@ class LiveCard:
             known = None if wish == self._recommended else self._drawn(self._recommended).view
             card = make_cards.card(view, known, _told(wish, self._origin))
             self._made[place] = _Drawn(view, card)
-            self._made[place].show(card, self._key)
+            self._made[place].show(card, self._key, self._styled)
             while len(self._made) > KEPT:
                 self._made.popitem(last=False)
         self._made.move_to_end(place)

@@ -71,7 +71,7 @@ class Controller:
             if len(report) > 1:
                 self.overview = LiveOverview(report, self.guard, key, lambda at: self.card.open(report[names[at]]))
             view = report[names[self.overview.position if self.overview else 0]]
-        self.card = LiveCard(view, self.guard, key)
+        self.card = LiveCard(view, self.guard, key, styled=self.overview is not None)
 
     @property
     def view(self) -> SeriesView:

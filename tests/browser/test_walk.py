@@ -218,6 +218,7 @@ def test_many_series_are_paged_sorted_and_found(lab: Lab, browser: Browser, pict
         page.wait_for_function(_ROWS, arg=1)
         assert "one value only" in rows.first.inner_text()
         choose(output.locator(".pfm-filter select"), "every verdict")
+        page.wait_for_function(_ROWS, arg=25)
         output.locator(".pfm-find input").fill("berth 17")
         page.wait_for_function(_ROWS, arg=1)
         rows.first.locator("button.pfm-open").click()

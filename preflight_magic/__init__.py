@@ -18,10 +18,12 @@ from preflight_magic.model import CheckError
 
 if TYPE_CHECKING:
     from preflight_magic import demo
+    from preflight_magic.against import PlansChanged
     from preflight_magic.batch import Interrupted, check, stream
     from preflight_magic.estimate import time_needed
     from preflight_magic.overview_file import write_overview
     from preflight_magic.plan.plan import Plan
+    from preflight_magic.record.read import load
     from preflight_magic.report import Report
     from preflight_magic.series_report import SeriesReport
 
@@ -30,10 +32,12 @@ __all__ = [
     "CheckError",
     "Interrupted",
     "Plan",
+    "PlansChanged",
     "Report",
     "SeriesReport",
     "check",
     "demo",
+    "load",
     "stream",
     "time_needed",
     "write_overview",
@@ -44,6 +48,8 @@ _HOMES = {
     "Interrupted": "preflight_magic.batch",
     "check": "preflight_magic.batch",
     "stream": "preflight_magic.batch",
+    "load": "preflight_magic.record.read",
+    "PlansChanged": "preflight_magic.against",
     "time_needed": "preflight_magic.estimate",
     "write_overview": "preflight_magic.overview_file",
     "Plan": "preflight_magic.plan.plan",

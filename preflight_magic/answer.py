@@ -10,9 +10,19 @@ from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.shares import per_cent
 
+_CHOSEN = {
+    "kept": "The earlier plan {plan} is kept: the data now lean to {recommended}, but not clearly.",
+    "group": "The plan of the group is {plan}; alone the recommendation is {recommended}.",
+}
+
 
 def answer_of(
-    verdict: Verdict, plan: Plan, recommended: Plan, findings: Mapping[str, Finding], problem: str | None
+    verdict: Verdict,
+    plan: Plan,
+    recommended: Plan,
+    findings: Mapping[str, Finding],
+    problem: str | None,
+    chosen: str = "person",
 ) -> str:
     """Say in one sentence what is to be done with a series.
 
@@ -24,6 +34,8 @@ def answer_of(
     findings : Mapping from rung name to Finding
     problem : str or None
         Why the series cannot be checked.
+    chosen : str
+        Where a plan that is not the recommended one comes from.
 
     Returns
     -------
@@ -32,7 +44,8 @@ def answer_of(
     if problem is not None:
         return problem
     if plan != recommended:
-        return f"Your plan is {_quoted(plan)}; the recommendation is {_quoted(recommended)}."
+        text = _CHOSEN.get(chosen, "Your plan is {plan}; the recommendation is {recommended}.")
+        return text.format(plan=_quoted(plan), recommended=_quoted(recommended))
     text = f"Before a model is fitted: {plan}." if plan else "Use the series as given: no transform is called for."
     if not plan and needs_another_road(findings, Thresholds()):
         text = "Demand comes now and then: use a method of its own or sums over longer periods, not an ARMA plan."

@@ -108,17 +108,25 @@ def check(
         After an interrupt from the keyboard; its `report` holds what was done.
     """
     spans = spans_of(exclude)
+    if isinstance(repair, Iterator):
+        repair = list(repair)
     every = _read(frame, season, time, series, value, only, spans, repair)
     if target is not None:
         check_target([one.name for one in every], target)
     settings = _settings(season, horizon, significance, spans)
+    asked: dict[str, object] = {"season": settings.season, "horizon": horizon, "significance": significance}
+    asked |= {"time": time, "series": series, "value": value, "exclude": spans or None, "repair": repair}
+    asked["target"] = target
+    usual = {"significance": 0.05, "repair": True}
+    asked["only"] = None if only is None else tuple(one.name for one in every)
+    options = {key: one for key, one in asked.items() if one is not None and (key not in usual or one != usual[key])}
     tally, done = Tally(), list[SeriesReport]()
     try:
         for one in follow(_stream(every, settings, cache, pool, tally), len(every), progress, tally):
             done.append(one)
     except KeyboardInterrupt:
-        raise Interrupted(Report(done), len(every)) from None
-    return Report(done, target)
+        raise Interrupted(Report(done, options), len(every)) from None
+    return Report(done, options)
 
 
 def stream(frame: Any, **options: Any) -> Iterator[SeriesReport]:

@@ -17,7 +17,7 @@ from typing import Literal
 
 from IPython.core.error import UsageError
 
-Wanted = Literal["column", "executor", "other"]
+Wanted = Literal["column", "executor", "report", "other"]
 
 
 @dataclass(frozen=True)
@@ -171,6 +171,8 @@ OPTIONS: tuple[Option, ...] = (
            repeated=True),
     Option("--pool", "NAME", "variable that holds a concurrent.futures executor", _identifier, "executor"),
     Option("--into", "NAME", "variable that gets the report", _identifier),
+    Option("--against", "FILE", "earlier report, to compare with: its file, or a variable that holds it",
+           wanted="report"),
     Option("--quiet", "", "show nothing"),
 )  # fmt: skip
 """Every option, in the order of the help text."""

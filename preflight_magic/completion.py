@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Hashable, Iterable, Mapping
+from pathlib import Path
 from typing import Any
 
 from IPython.core.completer import CompletionContext, SimpleCompletion, context_matcher
@@ -13,6 +14,7 @@ from preflight_magic.command_line import OPTIONS, is_executor, is_frame, is_repo
 IDENTIFIER = "preflight_magic"
 """By this the matcher is found again among those of the shell."""
 
+MOST_FILES = 50
 _MAGIC = re.compile(r"^\s*(?:[\w\s,]+=\s*)?(%%?)(checkseries|seriescode)\s(.*)$", re.DOTALL)
 
 
@@ -68,6 +70,8 @@ def offers(magic: str, in_cell: bool, rest: str, variables: Mapping[str, object]
     if option is not None:
         if option.wanted == "column":
             return fragment, _quoted(_columns(words, variables), fragment, "column")
+        if option.wanted == "report":
+            return fragment, _variables(variables, is_report, fragment) + _records(fragment)
         return fragment, _variables(variables, is_executor, fragment) if option.wanted == "executor" else []
     offered = []
     if not in_cell and not any(variables.get(word) is not None for word in words):
@@ -100,6 +104,22 @@ def _variables(
         for name, value in variables.items()
         if name.startswith(fragment) and not name.startswith("_") and wanted(value)
     ]
+
+
+def _records(fragment: str) -> list[tuple[str, str]]:
+    """Files and folders that lead to a record, as far as they begin like the fragment."""
+    quote = fragment[:1] if fragment[:1] in ("'", '"') else ""
+    typed = fragment[len(quote) :]
+    folder, _, start = typed.rpartition("/")
+    try:
+        names = sorted(
+            one.name + "/" if one.is_dir() else one.name
+            for one in Path(f"{folder}/" if "/" in typed else ".").iterdir()
+            if one.name.startswith(start) and not one.name.startswith(".") and (one.is_dir() or one.suffix == ".json")
+        )
+    except OSError:
+        return []
+    return _quoted([f"{folder}/{name}" if "/" in typed else name for name in names[:MOST_FILES]], fragment, "path")
 
 
 def _quoted(labels: Iterable[Hashable], fragment: str, kind: str) -> list[tuple[str, str]]:

@@ -17,9 +17,15 @@ if TYPE_CHECKING:
     from preflight_magic.kernels.arma import ArmaFit
     from preflight_magic.series_report import SeriesReport
 
+UNPROVED = """\
+# Written from a record, which holds no data: this code was not run against the plan.
+# report.attach(frame).code() runs it first.
+
+"""
+
 
 def proved_code(reports: Sequence[SeriesReport]) -> str:
-    """Source that applies and undoes the plans of some series.
+    """Source that applies and undoes the plans of some series; its head says so where a record gave no data to run it.
 
     Parameters
     ----------
@@ -40,10 +46,11 @@ def proved_code(reports: Sequence[SeriesReport]) -> str:
         if one.problem is not None:
             raise CheckError(one.problem)
     plans = {one.name: (one.plan, _reasons(one)) for one in reports}
-    source = emit(plans, {one.name: one.series.index for one in reports})
+    source = emit(plans, {one.name: one.index for one in reports})
     for one in reports:
-        prove(one.plan, source, one.series, one.horizon)
-    return source
+        if one.has_data:
+            prove(one.plan, source, one.series, one.horizon)
+    return source if all(one.has_data for one in reports) else UNPROVED + source
 
 
 def code_of(report: SeriesReport, form: str) -> str:

@@ -129,7 +129,7 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
                 context,
                 steps=chosen.steps,
                 transformed=transformed,
-                nuisance=_nuisance(series, chosen, len(transformed)),
+                nuisance=nuisance_of(series, chosen, len(transformed)),
             )
         if earlier is not None and not late:
             finding = earlier.findings[rung.name]
@@ -214,8 +214,26 @@ def _named_per_day(tests: tuple[HypothesisTest, ...], steps: tuple[Step, ...]) -
     return tuple(named)
 
 
-def _nuisance(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] | None:
-    """Indicators of the missing values, differenced as the plan does."""
+def nuisance_of(series: TimeSeries, plan: Plan, rows: int) -> NDArray[np.float64] | None:
+    """Indicators of the missing values, differenced as the plan does.
+
+    Parameters
+    ----------
+    series : TimeSeries
+    plan : Plan
+    rows : int
+        Values left after the plan.
+
+    Returns
+    -------
+    ndarray, shape (rows, missing), or None
+        None where nothing is missing.
+
+    Raises
+    ------
+    CheckError
+        When the plan leaves gaps open.
+    """
     columns = missing_columns(series.values.to_numpy(dtype=float))
     if not columns.shape[1]:
         return None

@@ -14,7 +14,6 @@ from preflight_magic.command_line import (
     OPTIONS,
     Line,
     did_you_mean,
-    is_executor,
     is_report,
     label_of,
     read_line,
@@ -23,6 +22,7 @@ from preflight_magic.command_line import (
 )
 from preflight_magic.completion import IDENTIFIER, matcher
 from preflight_magic.model import CheckError
+from preflight_magic.named import earlier_of, executor_of, one_line
 
 _CHECK_HELP = """Check series before forecasting: which transforms, why, and the code that applies and undoes them.
 
@@ -43,6 +43,11 @@ Examples:
     monthly[["passengers", "freight"]]
 
     %checkseries monthly --only passengers,"crew overtime" --exclude 2020-03..2020-06
+
+    %checkseries monthly --against last_month.json --into report
+    report.save("last_month.json")
+
+With --against the plans of the earlier report are kept where they stand, and what changed is shown below the overview.
 """
 _CODE_HELP = """Put the code of a report in a new cell below.
 
@@ -118,7 +123,8 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
     __tracebackhide__ = True
     given = read_line(line)
     quiet = "--quiet" in given.options
-    pool = _executor(shell, given)
+    pool = executor_of(shell.user_ns, given)
+    earlier = earlier_of(shell.user_ns, given)
     if cell is None:
         silent = given.expression.endswith(";")
         frame = value_of_line(shell, given.expression.rstrip("; "))
@@ -135,8 +141,10 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
     into = given.options.get("--into")
     try:
         report = check(frame, **options)
+        if earlier is not None:
+            report = report.keeping(earlier)
     except CheckError as error:
-        raise UsageError(_one_line(error)) from None
+        raise UsageError(one_line(error)) from None
     except KeyboardInterrupt as stop:
         # What is finished is shown and kept; the interrupt still ends the cell, and "run all" with it.
         finished = getattr(stop, "report", ())
@@ -182,7 +190,7 @@ def series_code(shell: Shell, line: str) -> None:
     try:
         code = report.code(labels) if labels else report.code()
     except CheckError as error:
-        raise UsageError(_one_line(error)) from None
+        raise UsageError(one_line(error)) from None
     shell.set_next_input(code)
 
 
@@ -190,7 +198,7 @@ def series_code(shell: Shell, line: str) -> None:
 def _options(given: Line, frame: Any) -> dict[str, Any]:
     """Arguments of the check: those that were given, names of columns as the frame has them."""
     columns = tuple(getattr(frame, "columns", ()))
-    kept = [option.name for option in OPTIONS if option.name not in ("--into", "--pool", "--quiet")]
+    kept = [option.name for option in OPTIONS if option.name not in ("--into", "--pool", "--against", "--quiet")]
     options: dict[str, Any] = {name.removeprefix("--"): given.options[name] for name in kept if name in given.options}
     for key in ("time", "series", "value"):
         if key in options:
@@ -214,23 +222,3 @@ def _span(span: tuple[str, str], stamps: Any) -> tuple[str, str] | tuple[int, in
         except ValueError:
             pass
     return span
-
-
-def _executor(shell: Shell, given: Line) -> object:
-    name = given.options.get("--pool")
-    if name is None:
-        return None
-    pools = [known for known, value in shell.user_ns.items() if is_executor(value) and not known.startswith("_")]
-    if name not in shell.user_ns:
-        raise UsageError(
-            f"--pool {name}: there is no such variable; "
-            + (did_you_mean(str(name), pools) if pools else "make an executor of concurrent.futures first.")
-        )
-    pool: object = shell.user_ns[str(name)]
-    if not is_executor(pool):
-        raise UsageError(f"--pool {name} is a {type(pool).__name__}, not an executor of concurrent.futures.")
-    return pool
-
-
-def _one_line(error: CheckError) -> str:
-    return " ".join(str(error).split())

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Hashable, Iterable, Mapping
 from typing import TYPE_CHECKING
 
-import numpy as np
 import pandas as pd
 
 from preflight_magic.answer import note_of
@@ -49,10 +48,10 @@ def row_of(report: SeriesReport) -> dict[str, object]:
     pattern = any(isinstance(step, RemovePattern) for step in steps)
     power = next((step.exponent for step in steps if isinstance(step, Power)), 0.0 if Log() in steps else 1.0)
     trend = RemoveTrend() in steps
-    values = report.series.to_numpy(dtype=float)
-    missing = int(np.isnan(values).sum())
     if len(lags) == 1:
-        trend = next(iter(report.findings["shift and trend"].measures.get("trend_shares", ())), "") == "trend"  # type: ignore[call-overload]
+        finding = report.findings.get("shift and trend")
+        shares = finding.measures.get("trend_shares") if finding else None
+        trend = isinstance(shares, Mapping) and next(iter(shares), "") == "trend"
     return {
         "verdict": report.verdict,
         "plan": str(report.plan),
@@ -64,7 +63,7 @@ def row_of(report: SeriesReport) -> dict[str, object]:
         "D": seasonal,
         "d": len(lags) - seasonal,
         "period": period,
-        "n": len(values) - missing,
-        "missing": missing,
+        "n": report.span.n - report.span.missing,
+        "missing": report.span.missing,
         "note": note_of(report.findings),
     }

@@ -1,174 +1,39 @@
-"""What users hold of one series: findings, plan, code."""
+"""What users hold of one series: findings, plan, code, forecasts, and the same under other plans."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Hashable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import replace
 from functools import cached_property
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
-import numpy as np
 import pandas as pd
 
-from preflight_magic.answer import answer_of
 from preflight_magic.changes import with_season, without_span
 from preflight_magic.generated import code_of
-from preflight_magic.kernels.correlation import autocorrelation
-from preflight_magic.ladder import Climb, climb, ladder
-from preflight_magic.model import (
-    CheckError,
-    Difference,
-    Finding,
-    Log,
-    PerDay,
-    RemovePattern,
-    RemoveShift,
-    RemoveTrend,
-    Step,
-    TimeSeries,
-    Verdict,
-)
-from preflight_magic.packing import pack, unpack
+from preflight_magic.ladder import climb
+from preflight_magic.model import CheckError, Step, TimeSeries
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.proof_result import Proof
 from preflight_magic.reference import reference_forecast
+from preflight_magic.root_intervals import root_intervals
+from preflight_magic.series_facts import Chosen, SeriesFacts
+from preflight_magic.standing import odds_against
 
-if TYPE_CHECKING:
-    from numpy.typing import NDArray
 
-
-class SeriesReport:
-    """Findings and plan of one series.
+class SeriesReport(SeriesFacts):
+    """Findings and plan of one series, and what can be made of them.
 
     Parameters
     ----------
     source : TimeSeries
     settings : Settings
     found : Climb
+    chosen : {"person", "kept", "group"}
+        Where the plan of `found` comes from if it is not the recommended one: a person, an earlier report that was
+        compared, or a group of series that share one.
     """
-
-    def __init__(self, source: TimeSeries, settings: Settings, found: Climb) -> None:
-        self._source, self._settings, self._found = source, settings, found
-
-    @property
-    def name(self) -> Hashable:
-        """The column, or the group of a long table."""
-        return self._source.name
-
-    @property
-    def series(self) -> pd.Series:
-        """Values from first to last observed, NaN where missing; shape (n,)."""
-        return self._source.values.copy()
-
-    @property
-    def findings(self) -> Mapping[str, Finding]:
-        """Rung name to finding, in the order of the ladder."""
-        return dict(self._found.findings)
-
-    @property
-    def verdict(self) -> Verdict:
-        """``clear``, ``transform``, ``inconclusive`` or ``infeasible``."""
-        return self._found.verdict
-
-    @property
-    def plan(self) -> Plan:
-        """The plan that was examined."""
-        return self._found.plan
-
-    @property
-    def recommended(self) -> Plan:
-        """The plan that the rungs propose; differs from `plan` after `leave_out` or `put_in`."""
-        return self._found.recommended
-
-    @property
-    def problem(self) -> str | None:
-        """Why the series cannot be checked, or None."""
-        return self._source.problem
-
-    @property
-    def noun(self) -> str:
-        """A step of the calendar: ``month``."""
-        return self._source.calendar.noun if self._source.calendar else "step"
-
-    @property
-    def significance(self) -> float:
-        """Size of the tests shown."""
-        return self._settings.thresholds.significance
-
-    @property
-    def season(self) -> tuple[int, ...]:
-        """Seasonal periods considered, shortest first."""
-        return self._source.season
-
-    @property
-    def answer(self) -> str:
-        """One sentence."""
-        return answer_of(self.verdict, self.plan, self.recommended, self.findings, self.problem)
-
-    @property
-    def transformed(self) -> pd.Series:
-        """Values after the plan, without missing ones; shape (m,)."""
-        return self._transformed.copy()
-
-    @cached_property
-    def _transformed(self) -> pd.Series:
-        """Computed anew after a check of many series: it costs less to compute than to send and to keep."""
-        if self._found.transformed is not None:
-            return self._found.transformed
-        return self.series.iloc[:0] if self.problem is not None else self.plan.apply(self.series).dropna()
-
-    @property
-    def methods(self) -> Mapping[str, tuple[str, tuple[str, ...]]]:
-        """Rung name to (how it is decided, published sources)."""
-        return {rung.name: (rung.method, rung.sources) for rung in ladder() if rung.name in self._found.findings}
-
-    @property
-    def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
-        """Plans compared, as (plan in words, log of its odds below the best, steps), the best first."""
-        comparison = self._found.comparison
-        if comparison is None:
-            return ()
-        best = comparison.best.evidence
-        found: dict[tuple[Step, ...], float] = {}
-        for one in comparison.candidates:
-            found.setdefault(self._steps_of(one, log=comparison.log, period=comparison.period), best - one.evidence)
-        return tuple((str(Plan((), steps)), below, steps) for steps, below in found.items())
-
-    def _steps_of(self, candidate: Any, *, log: bool, period: int) -> tuple[Step, ...]:
-        steps: list[Step] = [step for step in self.recommended.steps if isinstance(step, PerDay)]
-        steps += [Log()] if log else []
-        steps += [Difference(period)] * candidate.D + [Difference(1)] * candidate.d
-        if candidate.trend and candidate.d + candidate.D == 0:
-            steps.append(RemoveTrend())
-        if candidate.shift is not None:
-            at = self._source.values.index[candidate.shift]
-            steps.append(RemoveShift(at if isinstance(at, pd.Period | pd.Timestamp) else int(at)))
-        if candidate.pattern:
-            steps.append(RemovePattern(period))
-        return tuple(steps)
-
-    def correlograms(self, nlags: int) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
-        """Autocorrelations of the series as given and as transformed.
-
-        Parameters
-        ----------
-        nlags : int
-
-        Returns
-        -------
-        before, after : ndarray, shape (at most nlags,)
-            At lags 1, 2, ...
-        band : float
-            ``1.96 / sqrt(m)`` with m transformed values: the 95 % band of white noise (common practice).
-        """
-        after = self.transformed.to_numpy(dtype=float)
-        most = max(min(nlags, len(after) - 2), 0)
-        before = self._source.values.to_numpy(dtype=float)
-        band = 1.96 / max(len(after), 1) ** 0.5
-        curves = [autocorrelation(values, most) for values in (before, after)]
-        first, second = (np.empty(0) if curve is None else curve[1:] for curve in curves)
-        return first, second, band
 
     def code(self, form: str = "pandas") -> str:
         """Source that applies the plan and undoes it, run on the series and compared with the plan first.
@@ -232,6 +97,37 @@ class SeriesReport:
 
         return prove_plan(self)
 
+    def root_intervals(
+        self, coverage: float = 0.9, *, replications: int = 199, seed: int = 0, from_modulus: float = 0.5
+    ) -> pd.DataFrame:
+        """Intervals of roots that stay valid near one, by seeded bootstrap; takes up to a minute.
+
+        Parameters
+        ----------
+        coverage : float
+            Probability of an interval.
+        replications : int
+            Simulated series at each value that is tested, at least 99.
+        seed : int
+        from_modulus : float
+            ARMA roots with a smaller modulus are left out.
+
+        Returns
+        -------
+        DataFrame
+            First, `of` the series ``before differences``, the sum of the coefficients of an autoregression about a
+            line, one at a unit root (`part` is ``AR sum``; Hansen 1999, `modulus` is median-unbiased); then, ``after
+            the plan``, the roots of the ARMA model (``AR`` or ``MA``). Columns `of`, `part`, `seasonal`, `period`
+            (steps a cycle), `modulus`, `lower`, `upper`, and but for MA roots `half_life`, `half_life_lower`,
+            `half_life_upper`: in steps, infinite at one.
+
+        Raises
+        ------
+        CheckError
+            For a series that could not be checked, or options out of range.
+        """
+        return root_intervals(self, self._source, coverage, replications, seed, from_modulus)
+
     def leave_out(self, step: Step | int) -> SeriesReport:
         """Examine the series again without one step of the plan, given as itself or by its position."""
         return self._again(lambda plan: plan.without(step))
@@ -240,9 +136,20 @@ class SeriesReport:
         """Examine the series again with one more step, at its place in canonical order."""
         return self._again(lambda plan: plan.with_step(step))
 
-    def with_plan(self, steps: Iterable[Step]) -> SeriesReport:
-        """Examine the series again with these steps in place of those of the plan; repairs stay."""
-        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)))
+    def with_plan(self, steps: Iterable[Step], chosen: Chosen = "person") -> SeriesReport:
+        """Examine the series again with these steps in place of those of the plan; repairs stay.
+
+        Parameters
+        ----------
+        steps : iterable of Step
+        chosen : {"person", "kept", "group"}
+            Where they come from, if they are not the recommended ones.
+
+        Returns
+        -------
+        SeriesReport
+        """
+        return self._again(lambda plan: Plan(plan.repairs, tuple(steps)), chosen)
 
     def with_season(self, season: int | Sequence[int]) -> SeriesReport:
         """Check the series anew with other seasonal periods, in steps; 1 for none. The plan is the one that follows."""
@@ -257,27 +164,28 @@ class SeriesReport:
     def _anew(self, source: TimeSeries, settings: Settings) -> SeriesReport:
         return SeriesReport(source, settings, climb(source, settings))
 
-    def _again(self, change: Callable[[Plan], Plan]) -> SeriesReport:
+    def _again(self, change: Callable[[Plan], Plan], chosen: Chosen = "person") -> SeriesReport:
         if self.problem is not None:
             raise CheckError(self.problem)
         found = climb(self._source, self._settings, change(self.plan), self._found)
-        return SeriesReport(self._source, self._settings, found)
+        return SeriesReport(self._source, self._settings, found, chosen)
 
-    @property
-    def horizon(self) -> int:
-        """Steps ahead: as asked, or one season, at least 6 and at most a quarter of the data."""
-        asked = self._settings.horizon
-        return asked if asked is not None else max(1, min(max(self.season[0], 6), len(self._source.values) // 4))
+    def odds_against(self, plan: Plan) -> float:
+        """Odds of the recommended plan against another one on these data.
 
-    def __getstate__(self) -> dict[str, Any]:
-        light = {"_source": pack(self._source), "_found": replace(self._found, transformed=None)}
-        return {key: value for key, value in self.__dict__.items() if key != "_transformed"} | light
+        Parameters
+        ----------
+        plan : Plan
 
-    def __setstate__(self, state: dict[str, Any]) -> None:
-        self.__dict__ |= state | {"_source": unpack(state["_source"])}
-
-    def __repr__(self) -> str:
-        return f"<SeriesReport {self.name!r}: {self.verdict}, {self.problem or self.plan}>"
+        Returns
+        -------
+        float
+            From one up; infinite for a plan that the data do not allow, NaN for one that is not among those compared,
+            such as one with a power.
+        """
+        if self.problem is not None:
+            raise CheckError(self.problem)
+        return odds_against(self._source, self._found, self._settings.thresholds, plan)
 
     def _ipython_display_(self) -> None:
         from preflight_magic.present.widgets import show

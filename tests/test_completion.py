@@ -1,6 +1,7 @@
 from __future__ import annotations
 
 from concurrent.futures import ThreadPoolExecutor
+from pathlib import Path
 from typing import Any
 
 import pandas as pd
@@ -52,6 +53,26 @@ def test_line_of_a_check(variables: dict[str, Any], rest: str, fragment: str, wo
     found, offered = offers("checkseries", False, rest, variables)
     assert found == fragment
     assert [text for text, _ in offered] == words
+
+
+def test_records_are_offered_for_a_comparison(
+    variables: dict[str, Any], tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    for name in ("last.json", "last month.json", "kept.csv", ".hidden.json"):
+        (tmp_path / name).touch()
+    (tmp_path / "years").mkdir()
+    (tmp_path / "years" / "a.json").touch()
+    found = {rest: [text for text, _ in offers("checkseries", False, f"monthly --against {rest}", variables)[1]]
+             for rest in ("", "la", '"la', "years/", "none/", "ke")}  # fmt: skip
+    assert found == {
+        "": ["kept", '"last month.json"', "last.json", "years/"],
+        "la": ['"last month.json"', "last.json"],
+        '"la': ['"last month.json"', '"last.json"'],
+        "years/": ["years/a.json"],
+        "none/": [],
+        "ke": ["kept"],
+    }
 
 
 def test_options_given_are_left_out_unless_they_may_be_repeated(variables: dict[str, Any]) -> None:

@@ -17,11 +17,12 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
 REPORT = {"answer", "changes", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
-REPORT |= {"reference", "reference_mixture", "reference_parts", "together", "together_words"}
+REPORT |= {"reference", "reference_mixture", "reference_parts", "root_intervals", "together", "together_words"}
 REPORT |= {"proof", "proof_result", "proof_words"}
+REPORT |= {"record", "against", "group", "standing", "series_facts"}
 REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
-SHELL = {"command_line", "completion", "cell_value", "magic"}
+SHELL = {"command_line", "completion", "cell_value", "magic", "named"}
 
 # Part: what it may import from the package, and from outside the standard library. Imports inside functions and those
 # for annotations alone count too. An entry allows the module and everything below it.
@@ -40,11 +41,12 @@ LAYERS: dict[str, tuple[set[str], set[str]]] = {
     **dict.fromkeys(REPORT, (CHECKS | REPORT, {"numpy", "pandas"})),
     "demo": (NOUNS, {"numpy", "pandas"}),
     # The magics catch CheckError, hence the nouns.
-    "magic": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
+    "magic": (NOUNS | SHELL | {"report", "batch", "intake", "policy", "record"}, {"IPython"}),
     "command_line": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
+    "named": (NOUNS | SHELL | {"report", "batch", "intake", "policy", "record"}, {"IPython"}),
     "completion": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "cell_value": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
-    "__main__": (NOUNS | {"report", "batch", "intake", "policy"}, set()),
+    "__main__": (NOUNS | {"report", "batch", "intake", "policy", "record", "against", "present"}, {"pandas"}),
     "": (CHECKS | SHELL | {"demo"} | REPORT, set()),
 }
 

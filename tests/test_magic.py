@@ -219,3 +219,69 @@ def test_complaint_of_the_check_becomes_one_line(shell: InteractiveShell, monkey
     message = refused(shell, "%checkseries monthly --into kept")
     assert message == "column 'passengers' has 3 values; give it more."
     assert "kept" not in shell.user_ns
+
+
+# ------------------------------------------------------------------------------------------------------ --against
+class Compared(Report):
+    """A report that keeps what it was compared with."""
+
+    def keeping(self, earlier: Any) -> Compared:
+        self.earlier = earlier
+        return self
+
+
+@pytest.fixture
+def comparing(shell: InteractiveShell, monkeypatch: pytest.MonkeyPatch) -> InteractiveShell:
+    recorder = sys.modules["preflight_magic.batch"]
+    monkeypatch.setattr(recorder, "check", lambda frame, **options: Compared(frame, options))
+    return shell
+
+
+def test_against_takes_a_variable(comparing: InteractiveShell) -> None:
+    comparing.user_ns["last"] = last = Report(None, {})
+    report = checked(comparing, "%checkseries monthly --against last --into kept")
+    assert isinstance(report, Compared)
+    assert report.earlier is last
+    assert comparing.user_ns["kept"] is report
+    assert "against" not in report.options
+
+
+def test_against_takes_a_file(comparing: InteractiveShell, tmp_path: Path) -> None:
+    import preflight_magic as pf
+    from preflight_magic.batch import check  # noqa: F401  the recorder stands here
+
+    path = tmp_path / "last month.json"
+    saved(path)
+    report = checked(comparing, f'%checkseries monthly --against "{path}"')
+    assert isinstance(report, Compared)
+    assert isinstance(report.earlier, pf.Report)
+    assert report.earlier.names == ("harbour",)
+
+
+def saved(path: Path) -> None:
+    """A record of a series that could not be checked: the smallest there is."""
+    import preflight_magic as pf
+    from preflight_magic.ladder import climb
+    from preflight_magic.model import TimeSeries
+    from preflight_magic.policy import Settings
+
+    source = TimeSeries("harbour", pd.Series(dtype=float), None, problem="column 'harbour': no values.")
+    pf.Report([pf.SeriesReport(source, Settings(), climb(source, Settings()))]).save(path)
+
+
+@pytest.mark.parametrize(
+    ("line", "told"),
+    [
+        ("--against none.json", "--against none.json: no such file or directory; save a record first"),
+        ("--against monthly", "--against monthly is a DataFrame, not a report"),
+        ("--against bad.json", "--against bad.json: 'bad.json' is not JSON"),
+        ("--against .", "--against .: is a directory"),
+        ("--against", "--against needs a value; write --against FILE."),
+    ],
+)
+def test_against_what_is_no_report(
+    comparing: InteractiveShell, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, line: str, told: str
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    (tmp_path / "bad.json").write_text("<html>", encoding="utf-8")
+    assert told in refused(comparing, f"%checkseries monthly {line}")

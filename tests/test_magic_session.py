@@ -118,6 +118,7 @@ def test_examples_in_the_help_can_be_read(shell: InteractiveShell) -> None:
     assert [one.options for one in read] == [
         {"--season": 12, "--horizon": 12, "--into": "report"},
         {"--only": ["passengers", "crew overtime"], "--exclude": [("2020-03", "2020-06")]},
+        {"--against": "last_month.json", "--into": "report"},
     ]
 
 

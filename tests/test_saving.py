@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import stat
+
 import pytest
 
 import preflight_magic as pf
@@ -39,15 +41,16 @@ def test_other_suffixes_are_refused_with_what_to_use(report, tmp_path, name):
     assert not list(tmp_path.iterdir())
 
 
-@pytest.mark.parametrize("name", ["plans.py", "report.html"])
+@pytest.mark.parametrize("name", ["plans.py", "report.html", "record.json"])
 def test_missing_folder_is_named(report, tmp_path, name):
     with pytest.raises(pf.CheckError, match="harbour"):
         report.save(tmp_path / "harbour" / name)
 
 
-@pytest.mark.parametrize("where", ["fdopen", "replace"])
-def test_failure_leaves_the_old_file(report, tmp_path, monkeypatch, where):
-    path = tmp_path / "plans.py"
+@pytest.mark.parametrize("name", ["plans.py", "record.json"])
+@pytest.mark.parametrize("where", ["open", "fdopen", "fsync", "replace"])
+def test_failure_leaves_the_old_file(report, tmp_path, monkeypatch, where, name):
+    path = tmp_path / name
     path.write_text("old", encoding="utf-8")
 
     def fail(*given, **named):
@@ -58,7 +61,33 @@ def test_failure_leaves_the_old_file(report, tmp_path, monkeypatch, where):
         report.save(path)
     monkeypatch.undo()
     assert path.read_text(encoding="utf-8") == "old"
-    assert [one.name for one in tmp_path.iterdir()] == ["plans.py"]
+    assert [one.name for one in tmp_path.iterdir()] == [name]
+
+
+def test_a_kill_leaves_the_old_file(report, tmp_path, monkeypatch):
+    path = tmp_path / "record.json"
+    path.write_text("old", encoding="utf-8")
+    monkeypatch.setattr(saving.os, "fsync", lambda handle: (_ for _ in ()).throw(KeyboardInterrupt))
+    with pytest.raises(KeyboardInterrupt):
+        report.save(path)
+    assert path.read_text(encoding="utf-8") == "old"
+
+
+def test_permissions_and_links_stay(report, tmp_path):
+    path, link = tmp_path / "record.json", tmp_path / "last.json"
+    path.write_text("old", encoding="utf-8")
+    path.chmod(0o640)
+    link.symlink_to(path)
+    report.save(link)
+    assert link.is_symlink()
+    assert stat.S_IMODE(path.stat().st_mode) == 0o640
+    assert pf.load(path).names == report.names
+
+
+def test_a_new_file_has_the_permissions_of_any_other(report, tmp_path):
+    (tmp_path / "any").touch()
+    report.save(tmp_path / "record.json")
+    assert (tmp_path / "record.json").stat().st_mode == (tmp_path / "any").stat().st_mode
 
 
 def test_old_file_is_replaced_with_the_same_line_ends(report, tmp_path):

@@ -11,7 +11,7 @@ from scipy.linalg.lapack import dpotrf, dpotrs
 from scipy.signal import lfilter
 
 from preflight_magic.kernels.arma_parameters import Array, Order, polynomials
-from preflight_magic.kernels.long_run_variance import does_not_vary
+from preflight_magic.kernels.scaling import does_not_vary
 from preflight_magic.kernels.whiten import NotPositiveDefiniteError, whiten
 
 FEWEST = 8

@@ -13,10 +13,10 @@ from typing import Literal
 import numpy as np
 from scipy.linalg.lapack import dpotrf, dtrtrs
 
+from preflight_magic.kernels.canova_hansen_law import canova_hansen_p_value
 from preflight_magic.kernels.least_squares import FloatArray, polynomial
-from preflight_magic.kernels.long_run_variance import andrews_bandwidth, within_rounding
-from preflight_magic.kernels.quadratic_forms import cramer_von_mises_p_value
-from preflight_magic.kernels.scaling import to_unit_size
+from preflight_magic.kernels.long_run_variance import andrews_bandwidth
+from preflight_magic.kernels.scaling import to_unit_size, within_rounding
 
 _EPSILON = float(np.finfo(np.float64).eps)
 _DEPENDENT = 1e-7  # relative to its own length, what the columns before leave of a regressor that repeats them
@@ -112,9 +112,8 @@ def canova_hansen(
 
     Notes
     -----
-    p-values are those of the limiting distribution at the statistic times the share of the observations that the
-    regression leaves free: the sums of residuals are as large as those of the errors, but the variance that divides
-    them is too small by that share. It matters where cycles are few.
+    p-values are those of the limiting distribution, moved and stretched to the mean and spread that the statistic has
+    in white noise of this length (`canova_hansen_law`): where cycles are few, the limit alone rejects far too seldom.
 
     References
     ----------
@@ -214,7 +213,7 @@ def _result(
     joint = _trace(variance, moments)
     if joint is None:
         return None
-    free = 1.0 - (period + (terms == "ct") + lagged) / n
+    columns = period + (terms == "ct") + lagged
     found = []
     for k in range(1, period // 2 + 1):
         degrees = 1 if 2 * k == period else 2
@@ -225,8 +224,9 @@ def _result(
         else:
             value = float(a[1, 1] * b[0, 0] - 2.0 * a[0, 1] * b[0, 1] + a[0, 0] * b[1, 1])
             value /= float(a[0, 0] * a[1, 1] - a[0, 1] ** 2)
-        found.append(FrequencyStability(period / k, value, cramer_von_mises_p_value(value * free, degrees), degrees))
-    p_value = cramer_von_mises_p_value(joint * free, count)
+        p_value = canova_hansen_p_value(value, "pi" if degrees == 1 else "pair", degrees, n, columns, width)
+        found.append(FrequencyStability(period / k, value, p_value, degrees))
+    p_value = canova_hansen_p_value(joint, "joint", count, n, columns, width)
     return CanovaHansenResult(joint, p_value, tuple(found), period, width, n, terms, lagged)
 
 

@@ -8,7 +8,8 @@ import numpy as np
 from scipy.special import chdtrc
 
 from preflight_magic.kernels.least_squares import FloatArray
-from preflight_magic.kernels.long_run_variance import autocovariances, does_not_vary
+from preflight_magic.kernels.long_run_variance import autocovariances
+from preflight_magic.kernels.scaling import does_not_vary
 
 
 @dataclass(frozen=True)

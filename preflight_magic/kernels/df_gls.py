@@ -12,8 +12,8 @@ from preflight_magic.kernels.dickey_fuller import ROUNDING, finite_range, level_
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.lag_length import Criterion
 from preflight_magic.kernels.least_squares import FloatArray, detrend
-from preflight_magic.kernels.long_run_variance import within_rounding
 from preflight_magic.kernels.response_surfaces import critical_values, lower_tail
+from preflight_magic.kernels.scaling import within_rounding
 
 Search = Literal["OLS", "GLS"]
 

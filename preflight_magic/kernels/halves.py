@@ -8,7 +8,8 @@ import numpy as np
 from scipy.special import ndtri, stdtr
 
 from preflight_magic.kernels.least_squares import FloatArray
-from preflight_magic.kernels.long_run_variance import does_not_vary, long_run_variance
+from preflight_magic.kernels.long_run_variance import long_run_variance
+from preflight_magic.kernels.scaling import does_not_vary
 
 
 @dataclass(frozen=True)

@@ -58,22 +58,26 @@ def smallest_criterion(rss: FloatArray, nobs: int, parameters: int, criterion: I
     return int(value.argmin())
 
 
-def searched_lags(factor: FloatArray, fixed: int, nobs: int, criterion: Criterion) -> int | None:
-    """Lag length of a Dickey-Fuller regression, all lengths read from one triangular factor.
+def searched_lags(factor: FloatArray, fixed: int, nobs: int, criterion: Criterion, levels: int = 1) -> int | None:
+    """Lag length of a Dickey-Fuller or HEGY regression, all lengths read from one triangular factor.
 
     Parameters
     ----------
     factor : ndarray, shape (k + 1, k + 1)
-        From `least_squares.triangle`: deterministic terms, the lagged level, lagged differences from the shortest lag
+        From `least_squares.triangle`: deterministic terms, the lagged levels, lagged differences from the shortest lag
         to the longest, and the response, all on the same `nobs` observations.
     fixed : int
-        Columns before the lagged differences, the level being the last of them.
+        Columns before the lagged differences, the levels being the last of them.
     nobs : int
     criterion : {"AIC", "BIC", "t-stat", "MAIC"}
         ``t-stat`` takes the longest length whose last lag is significant at 10 % (Ng and Perron 1995, Journal of the
         American Statistical Association 90). ``MAIC`` is the modified AIC of Ng and Perron (2001), Econometrica 69:
-        its penalty grows where few lags leave a moving average near -1 in the level's coefficient. Its
+        its penalty grows where few lags leave a moving average near -1 in the coefficients of the levels. Its
         sum of squared levels is taken after the deterministic terms.
+    levels : int
+        One for Dickey-Fuller, as many as the period for HEGY. With several the modified AIC takes the sum of squares
+        that they explain together; del Barrio Castro, Osborn and Taylor (2016), Econometric Reviews 35, add it up
+        frequency by frequency (from memory), which in a long series is the same.
 
     Returns
     -------
@@ -92,21 +96,21 @@ def searched_lags(factor: FloatArray, fixed: int, nobs: int, criterion: Criterio
     if criterion == "AIC" or criterion == "BIC":
         return smallest_criterion(rss, nobs, fixed, criterion)
     rss = np.maximum(rss, _TINY)
-    lost = factor[fixed - 1 : independent, -1]  # what the response loses to the level and to each lag
+    lost = factor[fixed - levels : independent, -1]  # what the response loses to the levels and to each lag
     if criterion == "t-stat":
-        t_squared = lost[1:] ** 2 / rss[1:] * (nobs - np.arange(fixed + 1, independent + 1))
+        t_squared = lost[levels:] ** 2 / rss[1:] * (nobs - np.arange(fixed + 1, independent + 1))
         significant = np.flatnonzero(t_squared >= _SIGNIFICANT**2)
         return int(significant[-1]) + 1 if significant.size else 0
     if criterion != "MAIC":
         raise ValueError(f"there is no lag choice {criterion!r}; use 'AIC', 'BIC', 't-stat' or 'MAIC'")
-    # The leading blocks of a triangular inverse are the inverses of the leading blocks, so that the level's
-    # coefficient with 0, 1, ... lags is a running sum along one row of the inverse.
-    block = factor[fixed - 1 : independent, fixed - 1 : independent]
-    first = np.zeros(block.shape[0])
-    first[0] = 1.0
-    inverse_row: FloatArray = dtrtrs(block, first, trans=1)[0].ravel()
-    coefficient = (inverse_row * lost).cumsum()
+    # The leading blocks of a triangular inverse are the inverses of the leading blocks, so that the coefficients of the
+    # levels with 0, 1, ... lags are running sums along the first rows of the inverse.
+    block = factor[fixed - levels : independent, fixed - levels : independent]
+    first = np.eye(block.shape[0], levels)
+    inverse_rows: FloatArray = dtrtrs(block, first, trans=1)[0]
+    coefficients = (inverse_rows * lost[:, None]).cumsum(axis=0)[levels - 1 :]
+    explained = coefficients @ block[:levels, :levels].T
     with np.errstate(over="ignore"):
         # infinite where nothing is left of the response: such a length is not chosen
-        tau = coefficient**2 * block[0, 0] ** 2 / (rss / nobs)
+        tau = (explained**2).sum(axis=1) / (rss / nobs)
     return int((nobs * np.log(rss) + 2.0 * (tau + np.arange(rss.size))).argmin())

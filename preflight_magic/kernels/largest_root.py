@@ -23,31 +23,13 @@ from preflight_magic.kernels.dickey_fuller import (
 )
 from preflight_magic.kernels.lag_length import Criterion
 from preflight_magic.kernels.least_squares import FloatArray
-from preflight_magic.kernels.long_run_variance import within_rounding
+from preflight_magic.kernels.persistence import Persistence, half_life, largest_modulus
+from preflight_magic.kernels.scaling import within_rounding
 
 _DEGREE = {"c": 0, "ct": 1}
 _CHUNK = 20_000  # values of the simulated series held at a time, few enough for the cache
 _EXPLODED = 1e12  # standard deviations of the residual
 _BELOW, _ABOVE, _POINTS = 3.0, 5.0, 33  # the grid, in standard errors around the estimate
-
-
-@dataclass(frozen=True)
-class Persistence:
-    """One autoregression, told by three numbers.
-
-    Attributes
-    ----------
-    coefficient_sum : float
-        Sum of the autoregressive coefficients; one at a unit root.
-    root : float
-        Largest modulus of an inverse root.
-    half_life : float
-        Steps after which the response to an impulse stays below one half; infinite at a unit root.
-    """
-
-    coefficient_sum: float
-    root: float
-    half_life: float
 
 
 @dataclass(frozen=True)
@@ -174,39 +156,6 @@ def largest_root(
     )
 
 
-def half_life(coefficients: FloatArray, longest: int = 10_000) -> float:
-    """Steps after which the response to an impulse stays below one half.
-
-    Parameters
-    ----------
-    coefficients : ndarray, shape (p,)
-        Of an autoregression, the first lag first.
-    longest : int
-        Steps looked at.
-
-    Returns
-    -------
-    float
-        On the straight line between two steps; one half without coefficients, infinite where the response does not
-        come below one half for good within `longest` steps.
-    """
-    impulse = np.zeros(longest + 1)
-    impulse[0] = 1.0
-    modulus = _largest_modulus(coefficients)
-    if modulus >= 1.0 - 1e-9:
-        return float("inf")
-    response = np.abs(lfilter([1.0], np.concatenate([[1.0], -coefficients]), impulse))
-    last = int(np.flatnonzero(response > 0.5)[-1])
-    if last == longest:
-        return float("inf")
-    return last + float((response[last] - 0.5) / (response[last] - response[last + 1]))
-
-
-def _largest_modulus(coefficients: FloatArray) -> float:
-    roots = np.roots(np.concatenate([[1.0], -coefficients]))
-    return float(np.abs(roots).max()) if roots.size else 0.0
-
-
 def _design(y: FloatArray, degree: int, lags: int, noise: float) -> _Design | None:
     columns = regression_columns(y, degree, lags)[lags:]
     level, response = columns[:, degree + 1], columns[:, degree + 1] + columns[:, -1]
@@ -247,7 +196,7 @@ def _restricted(design: _Design, value: float) -> tuple[FloatArray, FloatArray]:
 def _persistence(design: _Design, value: float) -> Persistence:
     coefficients, _ = _restricted(design, value)
     life = float("inf") if value >= 1.0 else half_life(coefficients)
-    return Persistence(value, _largest_modulus(coefficients), life)
+    return Persistence(value, largest_modulus(coefficients), life)
 
 
 def _simulated_quantiles(

@@ -12,12 +12,13 @@ from typing import Literal
 
 import numpy as np
 
+from preflight_magic.kernels.lag_weights import bartlett, parzen, quadratic_spectral
 from preflight_magic.kernels.least_squares import FloatArray
+from preflight_magic.kernels.scaling import does_not_vary
 
 Kernel = Literal["bartlett", "parzen", "quadratic spectral"]
 Rule = Literal["andrews", "newey-west"]
 
-_ROUNDING = 4.0 * float(np.finfo(np.float64).eps)
 _PREWHITENING_LIMIT = 0.97  # Andrews and Monahan (1992), from memory: keeps 1 / (1 - rho)**2 bounded
 
 
@@ -39,57 +40,6 @@ class LongRunVariance:
     bandwidth: float
     kernel: Kernel
     prewhitening: float = 0.0
-
-
-def bartlett(x: FloatArray) -> FloatArray:
-    """``1 - x`` up to 1.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    weight: FloatArray = np.maximum(1.0 - x, 0.0)
-    return weight
-
-
-def parzen(x: FloatArray) -> FloatArray:
-    """``1 - 6 x**2 + 6 x**3`` up to 1/2, then ``2 (1 - x)**3`` up to 1.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    weight: FloatArray = np.where(x <= 0.5, 1.0 - 6.0 * x**2 * (1.0 - x), 2.0 * np.maximum(1.0 - x, 0.0) ** 3)
-    return weight
-
-
-def quadratic_spectral(x: FloatArray) -> FloatArray:
-    """``3 / z**2 (sin(z) / z - cos(z))`` with ``z = 6 pi x / 5``; no lag has weight exactly zero.
-
-    Parameters
-    ----------
-    x : ndarray of any shape
-        Lag over bandwidth, not negative.
-
-    Returns
-    -------
-    ndarray of the same shape
-    """
-    z = 1.2 * np.pi * np.maximum(x, 1e-3)
-    # Below x = 0.001 rounding would spoil the quotient; the series 1 - z**2 / 10 is exact there.
-    near_zero = 1.0 - (1.2 * np.pi * x) ** 2 / 10.0
-    weight: FloatArray = np.where(x < 1e-3, near_zero, 3.0 / z**2 * (np.sin(z) / z - np.cos(z)))
-    return weight
 
 
 @dataclass(frozen=True)
@@ -201,6 +151,7 @@ def long_run_variance(
     kernel: Kernel = "bartlett",
     bandwidth: float | Rule = "andrews",
     prewhiten: bool = False,
+    fitted: int | None = None,
 ) -> LongRunVariance | None:
     """Kernel estimate of the long-run variance, the sum of all autocovariances.
 
@@ -213,6 +164,9 @@ def long_run_variance(
         In steps, or the rule that finds it.
     prewhiten : bool
         Estimate on the residuals of an AR(1) and recolour (Andrews and Monahan 1992, Econometrica 60).
+    fitted : int, optional
+        Where `u` are residuals from a constant (1) or from constant and line (2): the estimate then allows for them in
+        a short series, by degrees of freedom and, with `prewhiten`, by the bias of the AR(1) coefficient.
 
     Returns
     -------
@@ -223,6 +177,11 @@ def long_run_variance(
     ------
     ValueError
         For missing or infinite values or a negative bandwidth.
+
+    References
+    ----------
+    Bias of the coefficient, ``-(k + (k + 2) rho) / n`` with k terms: Marriott and Pope (1954), Biometrika 41, and
+    Kendall (1954), Biometrika 41, for a constant; for a line from memory, confirmed by simulation in the tests.
     """
     if not np.isfinite(u).all():
         raise ValueError("a long-run variance needs finite values")
@@ -231,7 +190,10 @@ def long_run_variance(
     residual: FloatArray = u - u.mean()
     rho = 0.0
     if prewhiten:
-        rho = float(np.clip(_first_order(residual), -_PREWHITENING_LIMIT, _PREWHITENING_LIMIT))
+        rho = _first_order(residual)
+        if fitted is not None:
+            rho += (fitted + (fitted + 2) * rho) / u.size
+        rho = float(np.clip(rho, -_PREWHITENING_LIMIT, _PREWHITENING_LIMIT))
         residual = residual[1:] - rho * residual[:-1]
         if does_not_vary(residual):
             return None
@@ -243,7 +205,8 @@ def long_run_variance(
         width = float(bandwidth)
         if width < 0:
             raise ValueError(f"the bandwidth is {width:g}; it must not be negative")
-    return LongRunVariance(weighted_sum(residual, kernel, width) / (1.0 - rho) ** 2, width, kernel, rho)
+    freedom = 1.0 if fitted is None else residual.size / max(residual.size - fitted, 1)
+    return LongRunVariance(weighted_sum(residual, kernel, width) * freedom / (1.0 - rho) ** 2, width, kernel, rho)
 
 
 def weighted_sum(u: FloatArray, kernel: Kernel, bandwidth: float) -> float:
@@ -269,34 +232,6 @@ def weighted_sum(u: FloatArray, kernel: Kernel, bandwidth: float) -> float:
         lags, width = (u.size - 1, bandwidth) if bandwidth > 0 else (0, 1.0)
     sigma = autocovariances(u, lags)
     return max(float(sigma[0] + 2.0 * (shape.weight(np.arange(1, lags + 1) / width) @ sigma[1:])), 0.0)
-
-
-def does_not_vary(u: FloatArray) -> bool:
-    """Whether all values are equal up to the rounding of the largest.
-
-    Parameters
-    ----------
-    u : ndarray, shape (n,), n > 0
-
-    Returns
-    -------
-    bool
-    """
-    return within_rounding(float(u.min()), float(u.max()))
-
-
-def within_rounding(low: float, high: float) -> bool:
-    """Whether two numbers differ by no more than the rounding of the larger.
-
-    Parameters
-    ----------
-    low, high : float
-
-    Returns
-    -------
-    bool
-    """
-    return high - low <= _ROUNDING * max(abs(low), abs(high))
 
 
 def _first_order(u: FloatArray) -> float:

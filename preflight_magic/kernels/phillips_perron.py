@@ -11,16 +11,14 @@ import numpy as np
 from scipy.linalg.lapack import dgeqrf, dorgqr
 
 from preflight_magic.kernels.dickey_fuller import ROUNDING, finite_range
-from preflight_magic.kernels.distributions import (
-    Bound,
-    Terms,
-    dickey_fuller_critical_values,
-    dickey_fuller_p_value,
-)
+from preflight_magic.kernels.distributions import Bound, Terms
 from preflight_magic.kernels.lag_length import schwert
 from preflight_magic.kernels.least_squares import FloatArray, polynomial
-from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum, within_rounding
+from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum
+from preflight_magic.kernels.response_surfaces import critical_values, lower_tail
+from preflight_magic.kernels.scaling import within_rounding
 
+_TABLE = "phillips_perron"
 _DEGREE: Mapping[Terms, int] = {"n": -1, "c": 0, "ct": 1, "ctt": 2}
 
 
@@ -33,7 +31,7 @@ class PhillipsPerronResult:
     statistic : float
         The corrected t-ratio of the lagged level, often called Z-tau.
     p_value : float
-        Read it with `p_bound`.
+        In a sample of this length; read it with `p_bound`.
     p_bound : {"exact", "at most", "at least"}
     bandwidth : int
         Last autocovariance in the Bartlett estimate of the long-run variance.
@@ -41,7 +39,7 @@ class PhillipsPerronResult:
         Observations in the regression.
     terms : {"n", "c", "ct", "ctt"}
     critical_values : Mapping[str, float]
-        By level, for `nobs` observations.
+        By level, for this length, from the same surfaces as `p_value`.
     """
 
     statistic: float
@@ -83,7 +81,8 @@ def phillips_perron(
 
     References
     ----------
-    Phillips and Perron (1988), Biometrika 75. P-values: MacKinnon (1994); critical values: MacKinnon (2010).
+    Phillips and Perron (1988), Biometrika 75. p-values and critical values: our own simulation, tests/simulation, for
+    a bandwidth that is given and for one that is searched; without a bandwidth they are those of Dickey and Fuller.
     """
     if terms not in _DEGREE:
         raise ValueError(f"there are no deterministic terms {terms!r}; use one of {', '.join(_DEGREE)}")
@@ -111,9 +110,25 @@ def phillips_perron(
         return None
     t_ratio = copysign(beside, beside * diagonal) / (abs(error) / sqrt(nobs - level - 1))
     statistic = sqrt(short / long) * t_ratio - 0.5 * (long - short) / sqrt(long) * nobs / abs(diagonal)
-    p_value, bound = dickey_fuller_p_value(statistic, terms)
-    critical = dickey_fuller_critical_values(terms, nobs)
+    case, lags = (f"{terms} automatic", 0) if bandwidth == "newey-west" else (terms, table_lags(width, y.size))
+    p_value, bound = lower_tail(statistic, _TABLE, case, y.size, lags)
+    critical = critical_values(_TABLE, case, y.size, lags)
     return PhillipsPerronResult(statistic, p_value, bound, width, nobs, terms, critical)
+
+
+def table_lags(bandwidth: int, n: int) -> int:
+    """Where the table of quantiles has a bandwidth: half the root of the bandwidth times the length.
+
+    Parameters
+    ----------
+    bandwidth, n : int
+
+    Returns
+    -------
+    int
+        The first autocovariances change the law more than those that follow, so the surfaces are even in this number.
+    """
+    return round(0.5 * sqrt(bandwidth * n))
 
 
 def _bandwidth(residual: FloatArray, wanted: int | str, n: int) -> int:

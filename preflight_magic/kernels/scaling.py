@@ -1,10 +1,14 @@
-"""Bring a series to a size whose squares neither overflow nor vanish."""
+"""The size of a series beside its rounding: whether it varies at all, and a size whose squares do not overflow."""
 
 from __future__ import annotations
 
 from math import frexp, ldexp
 
+import numpy as np
+
 from preflight_magic.kernels.least_squares import FloatArray
+
+_ROUNDING = 4.0 * float(np.finfo(np.float64).eps)
 
 
 def to_unit_size(y: FloatArray) -> tuple[FloatArray, float]:
@@ -24,3 +28,31 @@ def to_unit_size(y: FloatArray) -> tuple[FloatArray, float]:
     """
     scale = ldexp(1.0, frexp(max(-float(y.min()), float(y.max())))[1])
     return y / scale, scale
+
+
+def does_not_vary(u: FloatArray) -> bool:
+    """Whether all values are equal up to the rounding of the largest.
+
+    Parameters
+    ----------
+    u : ndarray, shape (n,), n > 0
+
+    Returns
+    -------
+    bool
+    """
+    return within_rounding(float(u.min()), float(u.max()))
+
+
+def within_rounding(low: float, high: float) -> bool:
+    """Whether two numbers differ by no more than the rounding of the larger.
+
+    Parameters
+    ----------
+    low, high : float
+
+    Returns
+    -------
+    bool
+    """
+    return high - low <= _ROUNDING * max(abs(low), abs(high))

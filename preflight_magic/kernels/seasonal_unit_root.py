@@ -15,10 +15,9 @@ import numpy as np
 from scipy.linalg.lapack import dtrtri
 
 from preflight_magic.kernels.distributions import Bound
-from preflight_magic.kernels.lag_length import schwert, smallest_criterion
-from preflight_magic.kernels.least_squares import FloatArray, leading_rank, polynomial, residual_sums, triangle
-from preflight_magic.kernels.long_run_variance import within_rounding
-from preflight_magic.kernels.scaling import to_unit_size
+from preflight_magic.kernels.lag_length import Criterion, schwert, searched_lags
+from preflight_magic.kernels.least_squares import FloatArray, leading_rank, polynomial, triangle
+from preflight_magic.kernels.scaling import to_unit_size, within_rounding
 from preflight_magic.kernels.seasonal_unit_root_surfaces import Kind, hegy_p_values
 
 HegyTerms = Literal["n", "c", "ct"]
@@ -90,7 +89,7 @@ def hegy(
     dummies: bool = True,
     lags: int | None = None,
     max_lags: int | None = None,
-    criterion: Literal["AIC", "BIC"] | None = "AIC",
+    criterion: Criterion | None = "AIC",
 ) -> HegyResult | None:
     """HEGY test at every frequency of a seasonal period.
 
@@ -108,8 +107,9 @@ def hegy(
         Lagged seasonal differences, where they are not to be searched.
     max_lags : int, optional
         Longest length in the search, by default that of Schwert (1989), shortened for a short series.
-    criterion : {"AIC", "BIC"} or None
-        None takes `max_lags` itself. All lengths are compared on one common sample.
+    criterion : {"AIC", "BIC", "t-stat", "MAIC"} or None
+        How the length is searched, see `lag_length.searched_lags`; None takes `max_lags` itself. All lengths are
+        compared on one common sample.
 
     Returns
     -------
@@ -119,7 +119,14 @@ def hegy(
     Raises
     ------
     ValueError
-        For missing or infinite values, unknown terms, a period below 2, or negative lags.
+        For missing or infinite values, unknown terms, an unknown criterion, a period below 2, or negative lags.
+
+    Notes
+    -----
+    Rejections by the joint statistic of the seasonal frequencies at 5 %, random walks for each season, s = 4 and then
+    12, constant, line and dummies, n = 50, 100 and 400 (own simulation, 1000 series): lags by AIC .086, .085, .058 and
+    .114, .084, .059; by BIC .062, .072, .058 and .117, .061, .047; by the modified AIC .034, .047, .050 and .049, .046,
+    .044. A seasonal moving average near -1 makes all of them reject too often, the modified AIC least.
 
     References
     ----------
@@ -150,11 +157,10 @@ def hegy(
     if lags is None and criterion is not None and longest:
         search = [*range(width), *range(width + longest, width + longest + s), *range(width, width + longest), -1]
         common = triangle(np.asfortranarray(columns[longest:, search]))
-        independent = leading_rank(common)
-        if independent < width + s:
+        searched = searched_lags(common, width + s, n - s - longest, criterion, levels=s)
+        if searched is None:
             return None
-        rss = residual_sums(common)[width + s : independent + 1]
-        chosen = smallest_criterion(rss, n - s - longest, width + s, criterion)
+        chosen = searched
     kept = columns if chosen == longest else np.delete(columns, np.s_[width + chosen : width + longest], axis=1)
     factor = triangle(np.asfortranarray(kept[chosen:]))
     nobs, before = n - s - chosen, width + chosen

@@ -87,6 +87,6 @@ def _test(values: FloatArray, period: int, pattern: FloatArray | None, series: s
             "t of the mean difference": found.t_differences,
             "weight of the mean difference": found.weight,
             "kernel": "quadratic spectral",
-            "bandwidth": "Newey-West",
+            "bandwidth": "Andrews, prewhitened",
         },
     )

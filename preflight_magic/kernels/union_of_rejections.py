@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Literal
 
-from preflight_magic.kernels.df_gls import df_gls
+from preflight_magic.kernels.df_gls import DfGlsResult, df_gls
 from preflight_magic.kernels.dickey_fuller import finite_range
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.least_squares import FloatArray
 from preflight_magic.kernels.response_surfaces import critical_values, lower_tail
-from preflight_magic.kernels.unit_root import adf
+from preflight_magic.kernels.unit_root import AdfResult, adf
 
 _TABLE = "union_of_rejections"
 _CASE = "four tests"
@@ -54,7 +54,9 @@ class UnionResult:
     nobs: int = 0
 
 
-def union_of_rejections(y: FloatArray, lags: int | None = None) -> UnionResult | None:
+def union_of_rejections(
+    y: FloatArray, lags: int | None = None, *, made: Sequence[DfGlsResult | AdfResult] = ()
+) -> UnionResult | None:
     """Reject a unit root if DF-GLS or ADF, with or without a line, rejects at a stretched critical value.
 
     DF-GLS has the power where the series starts near its trend, ADF where it starts far off; without a line both are
@@ -67,6 +69,9 @@ def union_of_rejections(y: FloatArray, lags: int | None = None) -> UnionResult |
         No missing values. Null hypothesis: a unit root.
     lags : int, optional
         Lagged differences of all four; by default those of `df_gls` with the same terms, from the modified AIC.
+    made : sequence of DfGlsResult and AdfResult
+        Of the same series, made before: used instead of new ones where terms and lags are right. A `df_gls` among them
+        is taken to have searched as by default.
 
     Returns
     -------
@@ -89,8 +94,8 @@ def union_of_rejections(y: FloatArray, lags: int | None = None) -> UnionResult |
     nobs = y.size
     terms: Literal["c", "ct"]
     for terms in ("c", "ct"):
-        efficient = df_gls(y, terms, lags=lags)
-        ordinary = None if efficient is None else adf(y, terms, lags=efficient.lags)
+        efficient = _made_gls(made, terms, lags) or df_gls(y, terms, lags=lags)
+        ordinary = efficient and (_made_adf(made, terms, efficient.lags) or adf(y, terms, lags=efficient.lags))
         if efficient is None or ordinary is None:
             return None
         chosen[terms], nobs = efficient.lags, min(nobs, efficient.nobs)
@@ -102,3 +107,15 @@ def union_of_rejections(y: FloatArray, lags: int | None = None) -> UnionResult |
     p_value, bound = lower_tail(-statistic, _TABLE, _CASE, y.size)
     stretch = {level: -value for level, value in critical_values(_TABLE, _CASE, y.size).items()}
     return UnionResult(statistic, p_value, bound, stretch, foremost, ratios, chosen, nobs)
+
+
+def _made_gls(
+    made: Sequence[DfGlsResult | AdfResult], terms: Literal["c", "ct"], lags: int | None
+) -> DfGlsResult | None:
+    fits = (one for one in made if isinstance(one, DfGlsResult) and one.terms == terms)
+    return next((one for one in fits if lags is None or one.lags == lags), None)
+
+
+def _made_adf(made: Sequence[DfGlsResult | AdfResult], terms: Literal["c", "ct"], lags: int) -> AdfResult | None:
+    fits = (one for one in made if isinstance(one, AdfResult) and one.terms == terms)
+    return next((one for one in fits if one.lags == lags), None)

@@ -22,7 +22,8 @@ from preflight_magic.kernels.distributions import (
 )
 from preflight_magic.kernels.lag_length import Criterion, schwert
 from preflight_magic.kernels.least_squares import FloatArray, detrend
-from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum, within_rounding
+from preflight_magic.kernels.long_run_variance import newey_west_bandwidth, weighted_sum
+from preflight_magic.kernels.scaling import within_rounding
 
 _DEGREE: Mapping[Terms, int] = {"n": -1, "c": 0, "ct": 1, "ctt": 2}
 _EPSILON = float(np.finfo(np.float64).eps)

@@ -21,8 +21,8 @@ from preflight_magic.kernels.dickey_fuller import (
 from preflight_magic.kernels.distributions import Bound
 from preflight_magic.kernels.lag_length import Criterion
 from preflight_magic.kernels.least_squares import FloatArray, leading_rank
-from preflight_magic.kernels.long_run_variance import within_rounding
 from preflight_magic.kernels.response_surfaces import critical_values, lower_tail
+from preflight_magic.kernels.scaling import within_rounding
 
 BreakModel = Literal["level", "trend", "both"]
 
@@ -99,6 +99,14 @@ def zivot_andrews(
     ------
     ValueError
         For missing or infinite values, an unknown model or criterion, or negative lags.
+
+    Notes
+    -----
+    A search looks at the data, which the tables do not know. Rejections of random walks at 5 % by the model of both
+    breaks at n = 50, 100 and 400 (own simulation, 1000 series): lags by AIC .090, .060, .050; by BIC .056, .053, .047;
+    by the modified AIC .031, .028, .035. With a moving average of -.5 in the differences AIC rejects .47, .25, .10, BIC
+    .65, .46, .21 and the modified AIC .13, .04, .04. It finds a change of level by five standard deviations in nine of
+    ten series of a hundred values.
 
     References
     ----------

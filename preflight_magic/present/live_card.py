@@ -83,7 +83,9 @@ class LiveCard:
         self._wish = Wish(steps=tuple(origin.plan.steps))
         self._recommended = Wish(steps=tuple(origin.recommended.steps))
         self._base = origin
-        self._guard.quietly(lambda: self._set_controls(is_open=origin.verdict == "inconclusive"))
+        self._guard.quietly(
+            lambda: self._set_controls(is_open=origin.verdict == "inconclusive" and len(origin.series) > 0)
+        )
 
     def open(self, origin: SeriesView) -> None:
         """Show another series."""
@@ -170,9 +172,10 @@ class LiveCard:
         steps, base = self._wish.steps or (), self._base
         # A step that was on once can be turned on again.
         self._asked_for = tuple((Counter(self._asked_for) | Counter(steps)).elements())
-        offered = switches(base, self._asked_for) if base.problem is None else ()
-        offers = could_put_in(base, [switch.step for switch in offered]) if base.problem is None else ()
-        usable = base.problem is None
+        # A series from a record has no data by which it could be examined again.
+        usable = base.problem is None and len(base.series) > 0
+        offered = switches(base, self._asked_for) if usable else ()
+        offers = could_put_in(base, [switch.step for switch in offered]) if usable else ()
         if (offered, usable) != (self._offered, self._usable):
             self._offered, self._usable, boxes = offered, usable, True
             self.controls.set_switches(offered, usable)
@@ -184,7 +187,7 @@ class LiveCard:
             sorted(base.alternatives, key=lambda one: one[1]),
             steps,
             base.season,
-            span_example(base.series.index) if len(base.series) else "",
+            span_example(base.series.index) if usable else "",
             is_open=is_open,
         )
 

@@ -78,7 +78,8 @@ def card(view: SeriesView, recommended: SeriesView | None = None, asked: str = "
 def span_text(series: pd.Series, noun: str) -> str:
     """Count, first and last stamp and missing values of a series, in words."""
     if not len(series):
-        return "no values"
+        # a record holds no data, but it knows their span
+        return str(series.attrs.get("span", "no values"))
     missing = int(series.isna().sum())
     ends = f"{words.stamp(series.index[0], noun)} to {words.stamp(series.index[-1], noun)}"
     return f"{words.count_of(len(series), noun)}, {ends}" + (f", {missing:,} missing" if missing else "")
@@ -173,7 +174,7 @@ def _roots(view: SeriesView) -> RootsPicture | None:
 def _halves(view: SeriesView) -> HalvesPicture | None:
     finding = view.findings.get("halves")
     moments = finding.measures.get("moments", ()) if finding is not None else ()
-    if finding is None or not isinstance(moments, tuple) or not moments:
+    if finding is None or not isinstance(moments, tuple) or not moments or len(view.transformed) < 2:
         return None
     told = tuple((str(one.name), float(one.first), float(one.second), float(one.z)) for one in moments)
     return HalvesPicture(view.transformed, finding.measures.get("second_from"), told, view.noun)

@@ -7,11 +7,13 @@ from typing import TYPE_CHECKING
 
 from preflight_magic.present import html, make_cards, make_overview, registry, text
 from preflight_magic.present.contract import ReportView
-from preflight_magic.present.live import Bundle, Guard, close
+from preflight_magic.present.live import Bundle, Guard, close, show_bundle
 from preflight_magic.present.live_card import LiveCard
 from preflight_magic.present.live_overview import LiveOverview
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from preflight_magic.present.contract import SeriesView
 
 _NUMBERS = itertools.count(1)
@@ -46,6 +48,16 @@ def show(view: ReportView | SeriesView) -> Controller | None:
     registry.register(controller)
     controller.show()
     return controller
+
+
+def show_changes(changes: pd.DataFrame) -> None:
+    """Show what changed since an earlier report: a table in a notebook, as text in a terminal."""
+    from preflight_magic.present.changes import changes_html, changes_text
+
+    if in_notebook():
+        show_bundle({"text/html": changes_html(changes), "text/plain": changes_text(changes)})
+    else:
+        print(f"\n{changes_text(changes)}")
 
 
 def bundle(view: ReportView | SeriesView) -> Bundle:

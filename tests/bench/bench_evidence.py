@@ -2,8 +2,8 @@
 
 Run ``OPENBLAS_NUM_THREADS=1 python -m tests.bench.bench_evidence [rounds]`` from the root of the project. All tests
 together are meant to cost less than a fortieth of one fit of SARIMAX(1,1,1)(0,1,1,12). Five series take turns, since a
-fit costs two or three times as much for one as for another, and so do model and tests, so that a busy machine slows
-both alike; medians are shown.
+fit costs two or three times as much for one as for another, and so do model and tests; medians of the time of the
+processor are shown.
 """
 
 from __future__ import annotations
@@ -74,7 +74,7 @@ def as_shown(y: np.ndarray, innovations: np.ndarray) -> dict[str, Task]:
     logs, changes = np.log(y), np.diff(np.log(y))
     each = one_of_each(y, innovations)
     return {
-        "unit root, of the level": lambda: root_tests(logs, "log") + level_tests(logs, "log", str),
+        "unit root, of the level": lambda: level_tests(logs, "log", str),
         "unit root, of the differences": lambda: root_tests(changes, "log, differenced once"),
         "season": lambda: seasonal_evidence(logs, PERIOD, 1, "log"),
         "trend, shift and corner": lambda: trend_evidence(logs, PERIOD, LENGTH // 2, True, True, "log"),
@@ -89,10 +89,10 @@ def sarimax(logs: np.ndarray) -> object:
 
 
 def taken(task: Task) -> float:
-    """Milliseconds of one call."""
-    start = time.perf_counter()
+    """Milliseconds of the processor in one call, so that what else the machine does is not counted."""
+    start = time.process_time()
     task()
-    return 1e3 * (time.perf_counter() - start)
+    return 1e3 * (time.process_time() - start)
 
 
 def main() -> None:

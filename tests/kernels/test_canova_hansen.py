@@ -5,7 +5,7 @@ import pytest
 from scipy.signal import lfilter
 
 from preflight_magic.kernels.canova_hansen import canova_hansen
-from preflight_magic.kernels.quadratic_forms import cramer_von_mises_p_value
+from preflight_magic.kernels.canova_hansen_law import canova_hansen_p_value
 from tests.references import seasonal
 
 
@@ -33,13 +33,24 @@ def test_statistics_are_those_of_uroot(row: dict) -> None:
     assert (found.bandwidth, found.nobs, found.terms) == (row["bandwidth"], y.size - row["lag1"], terms)
 
 
-def test_p_values_are_those_of_the_limit_with_the_share_left_free() -> None:
+def test_p_values_are_those_of_this_length() -> None:
     found = canova_hansen(pattern(96, 4), 4, "ct", lagged=True, bandwidth=2)
     assert found is not None
-    free = 1.0 - 6.0 / 95.0  # constant, line, three waves and the lag on 95 observations
-    assert found.p_value == cramer_von_mises_p_value(found.statistic * free, 3)
+    columns = 6  # constant, line, three waves and the lag, on 95 observations
+    assert found.p_value == canova_hansen_p_value(found.statistic, "joint", 3, 95, columns, 2)
     for one in found.frequencies:
-        assert one.p_value == cramer_von_mises_p_value(one.statistic * free, one.degrees)
+        kind = "pi" if one.degrees == 1 else "pair"
+        assert one.p_value == canova_hansen_p_value(one.statistic, kind, one.degrees, 95, columns, 2)
+
+
+@pytest.mark.parametrize("n", [50, 75])
+def test_few_cycles_reject_a_fixed_pattern_about_as_often_as_they_should(n: int) -> None:
+    p = []
+    for seed in range(500):
+        found = canova_hansen(pattern(n, 12, seed), 12, "ct", lagged=True)
+        assert found is not None
+        p.append(found.p_value)
+    assert abs(np.mean(np.array(p) < 0.05) - 0.05) < 0.015 + 2.5 * np.sqrt(0.05 * 0.95 / 500)
 
 
 @pytest.mark.parametrize("period", [4, 7, 12])

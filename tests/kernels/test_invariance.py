@@ -31,7 +31,7 @@ from preflight_magic.kernels.shift_date import broken_trend, shift_interval
 from preflight_magic.kernels.trend_evidence import trend_evidence
 from preflight_magic.kernels.union_of_rejections import union_of_rejections
 from preflight_magic.kernels.unit_root import adf, kpss
-from preflight_magic.kernels.unit_root_evidence import level_tests, root_tests
+from preflight_magic.kernels.unit_root_evidence import level_tests
 from preflight_magic.kernels.zivot_andrews import zivot_andrews
 
 PERIOD, LENGTH = 12, 132
@@ -141,7 +141,7 @@ def unit_root_numbers() -> Iterator[tuple[str, Callable[[np.ndarray], Numbers]]]
     for model in ("level", "trend", "both"):
         yield f"Zivot-Andrews {model}", lambda y, m=model: picked(zivot_andrews(y, m), "p_value", "break_at", "lags")
     yield "union of rejections", lambda y: picked(union_of_rejections(y), "p_value")
-    yield "unit root, as shown", lambda y: of_tests(root_tests(y, "") + level_tests(y, "", str))
+    yield "unit root, as shown", lambda y: of_tests(level_tests(y, "", str))
 
 
 # Both the unit and the origin are free.

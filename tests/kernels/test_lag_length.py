@@ -76,6 +76,34 @@ def test_search_from_one_factor_is_that_of_refitting_every_length(criterion: str
     assert len(set(found)) > 2
 
 
+@pytest.mark.parametrize("criterion", ["AIC", "BIC", "t-stat", "MAIC"])
+def test_search_with_several_levels_is_that_of_refitting_every_length(criterion: str) -> None:
+    """Three levels, as in a HEGY regression of period 3."""
+    chosen = set()
+    for seed in range(40):
+        rng = np.random.default_rng(seed)
+        terms, levels = np.column_stack([np.ones(80), np.arange(80.0)]), rng.standard_normal((80, 3)).cumsum(axis=0)
+        lags = rng.standard_normal((80, 6))
+        y = 0.3 * lags @ 0.6 ** np.arange(6) - 0.05 * levels.sum(axis=1) + rng.standard_normal(80)
+        around = levels - terms @ np.linalg.lstsq(terms, levels, rcond=None)[0]
+        values, significant = [], 0
+        for k in range(7):
+            x = np.column_stack([terms, levels, lags[:, :k]])
+            beta, rss = np.linalg.lstsq(x, y, rcond=None)[:2]
+            variance = float(rss[0]) / 80
+            explained = float(np.sum((around @ beta[2:5]) ** 2))
+            penalty = {"AIC": 2.0 * k, "BIC": np.log(80) * k, "MAIC": 2.0 * (explained / variance + k)}
+            values.append(np.log(variance) + penalty.get(criterion, 0.0) / 80)
+            error = np.sqrt(float(rss[0]) / (80 - 5 - k) * np.linalg.inv(x.T @ x)[-1, -1])
+            if k and abs(beta[-1] / error) >= 1.6448536:
+                significant = k
+        expected = significant if criterion == "t-stat" else int(np.argmin(values))
+        factor = triangle(np.asfortranarray(np.column_stack([terms, levels, lags, y])))
+        assert searched_lags(factor, 5, 80, criterion, levels=3) == expected  # type: ignore[arg-type]
+        chosen.add(expected)
+    assert len(chosen) > 2
+
+
 def test_search_leaves_out_lags_that_depend_on_others() -> None:
     for criterion in ("AIC", "BIC", "t-stat", "MAIC"):
         columns = regression(1, 1, 5)

@@ -2,7 +2,8 @@ import numpy as np
 import pytest
 from scipy.signal import lfilter
 
-from preflight_magic.kernels.largest_root import half_life, largest_root
+from preflight_magic.kernels.largest_root import largest_root
+from preflight_magic.kernels.persistence import half_life
 
 
 def autoregression(*coefficients: float, n: int = 120, seed: int = 0) -> np.ndarray:

@@ -58,8 +58,37 @@ def test_without_bandwidth_it_is_the_test_of_dickey_and_fuller(terms: str) -> No
     assert found is not None
     assert plain is not None
     assert found.statistic == pytest.approx(plain.statistic, rel=1e-10)
-    assert (found.p_value, found.p_bound) == pytest.approx(dickey_fuller_p_value(found.statistic, terms))
-    assert found.critical_values == dickey_fuller_critical_values(terms, 79)
+
+
+@pytest.mark.parametrize("terms", ["n", "c", "ct", "ctt"])
+@pytest.mark.parametrize("n", [30, 80, 300])
+def test_without_bandwidth_the_critical_values_are_those_of_mackinnon(terms: str, n: int) -> None:
+    found = phillips_perron(walk(n), terms, 0)
+    assert found is not None
+    published = dickey_fuller_critical_values(terms, n - 1)  # MacKinnon (2010), working paper 1227
+    for level, allowed in (("1%", 0.06), ("5%", 0.03), ("10%", 0.03)):
+        assert found.critical_values[level] == pytest.approx(published[level], abs=allowed)
+
+
+def test_in_a_long_series_the_p_value_is_that_of_mackinnon() -> None:
+    for seed in range(20):
+        y = np.random.default_rng(seed).standard_normal(4000).cumsum()
+        for width in (0, "newey-west"):
+            found = phillips_perron(y, "ct", width)
+            assert found is not None
+            # MacKinnon (1994), Journal of Business and Economic Statistics 12; in the middle both err by a hundredth
+            assert found.p_value == pytest.approx(dickey_fuller_p_value(found.statistic, "ct")[0], abs=0.02)
+
+
+@pytest.mark.parametrize("terms", ["n", "c", "ct", "ctt"])
+@pytest.mark.parametrize("width", [0, 3, "schwert", "newey-west"])
+def test_p_value_and_critical_values_never_contradict_each_other(terms: str, width: int | str) -> None:
+    for seed in range(40):
+        y = np.random.default_rng(seed).standard_normal(45).cumsum()
+        found = phillips_perron(y, terms, width)
+        assert found is not None
+        for level, value in found.critical_values.items():
+            assert (found.statistic <= value) == (found.p_value <= float(level[:-1]) / 100.0 + 1e-12)
 
 
 @pytest.mark.parametrize(

@@ -28,6 +28,10 @@ def test_a_finding_can_be_repeated_from_what_it_reports(differences: int) -> Non
     assert stability.statistic == pytest.approx(other.statistic)
     assert stability.terms == ("ct" if differences == 0 else "c")
     assert stability.options["series"] == "log" + ("", ", differenced once", ", differenced twice")[differences]
+    assert roots.options["lag choice"] == "modified AIC"
+    chosen = hegy(y, 12, "ct", criterion="MAIC")
+    assert chosen is not None
+    assert roots.lags == chosen.lags
     assert found.hegy == {f"{one.cycle:.4g}": pytest.approx(one.p_value) for one in again.roots[1:]}
     assert list(found.canova_hansen) == ["12", "6", "4", "3", "2.4", "2"]
 

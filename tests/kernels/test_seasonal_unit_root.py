@@ -205,6 +205,8 @@ def test_wrong_input_is_refused() -> None:
         hegy(y, 1, "n", dummies=False)
     with pytest.raises(ValueError, match="negative"):
         hegy(y, 4, lags=-1)
+    with pytest.raises(ValueError, match="lag choice"):
+        hegy(y, 4, criterion="HQ")  # type: ignore[arg-type]
 
 
 def test_input_is_not_changed() -> None:

@@ -29,6 +29,24 @@ def test_statistic_is_the_largest_of_four_ratios(lags: int | None) -> None:
     assert found.ratios[found.foremost] == found.statistic
 
 
+@pytest.mark.parametrize("seed", range(8))
+def test_fits_made_before_change_nothing(seed: int) -> None:
+    y = np.random.default_rng(seed).standard_normal(120).cumsum()
+    efficient = [df_gls(y, terms) for terms in ("c", "ct")]
+    ordinary = [adf(y, terms, criterion="MAIC") for terms in ("c", "ct")]
+    other = [adf(y, terms, lags=9) for terms in ("c", "ct")]  # of no use, unless the search took as many
+    made = [one for one in (*efficient, *other, *ordinary) if one is not None]
+    alone, shared = union_of_rejections(y), union_of_rejections(y, made=made)
+    assert alone is not None
+    assert shared is not None
+    assert shared.ratios == pytest.approx(alone.ratios, rel=1e-9)
+    assert (shared.lags, shared.nobs, shared.foremost) == (alone.lags, alone.nobs, alone.foremost)
+    fixed, reused = union_of_rejections(y, 9), union_of_rejections(y, 9, made=made)
+    assert fixed is not None
+    assert reused is not None
+    assert reused.ratios == pytest.approx(fixed.ratios, rel=1e-9)
+
+
 def test_critical_values_stretch_those_of_the_four() -> None:
     # Four correlated tests at 5 % each reject more often than 5 %: each critical value has to be stretched.
     for n in (30, 100, 400):

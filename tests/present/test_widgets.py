@@ -256,6 +256,15 @@ def test_a_series_that_cannot_be_checked_has_no_controls(displayed: list[Handle]
     assert len(steps.children) == 3 + 3
 
 
+def test_a_series_without_its_data_has_no_controls(displayed: list[Handle]) -> None:
+    empty = FakeSeries(series=FakeSeries().series.iloc[:0], verdict="inconclusive")
+    controller = Controller(empty)
+    controller.show()
+    assert controller.card.controls._steps.children == controller.card.controls._others.children == ()
+    assert "passengers" in displayed[0].drawn[0]["text/html"]
+    assert "<pre" in displayed[3].drawn[0]["text/html"]
+
+
 @pytest.mark.parametrize("error", [ValueError("A plan <cannot> do this."), RuntimeError("broken"), KeyboardInterrupt()])
 def test_errors_are_shown_and_the_card_stays(displayed: list[Handle], error: BaseException) -> None:
     view = FakeSeries(failing={"with_plan": error})

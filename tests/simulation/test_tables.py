@@ -5,27 +5,38 @@ from collections.abc import Callable
 import numpy as np
 import pytest
 
+from preflight_magic.kernels.phillips_perron import table_lags
 from preflight_magic.kernels.response_surfaces import lower_tail
 from preflight_magic.kernels.tables import read
-from tests.simulation import df_gls_table, surfaces, union_of_rejections_table, zivot_andrews_table
+from tests.simulation import (
+    df_gls_table,
+    phillips_perron_table,
+    surfaces,
+    union_of_rejections_table,
+    zivot_andrews_table,
+)
 
 REPLICATIONS = 3000
 SAMPLE = [
     *(("df_gls", terms, n, lags) for terms in ("c", "ct") for n, lags in ((30, 0), (30, 6), (60, 3), (120, 10))),
     *(("zivot_andrews", model, n, 0) for model in ("level", "trend", "both") for n in (24, 60, 130)),
     *(("union_of_rejections", "four tests", n, 0) for n in (30, 130)),
+    *(("phillips_perron", terms, n, width) for terms in phillips_perron_table.TERMS for n, width in ((30, 4), (90, 0))),
+    *(("phillips_perron", f"{terms} automatic", n, 0) for terms in phillips_perron_table.TERMS for n in (30, 130)),
 ]
 DRAW: dict[str, Callable[[str, int, int, int, int], np.ndarray]] = {
     "df_gls": df_gls_table.draw,
     "zivot_andrews": zivot_andrews_table.draw,
     "union_of_rejections": union_of_rejections_table.draw,
+    "phillips_perron": phillips_perron_table.draw,
 }
 
 
 @pytest.mark.parametrize(("table", "case", "n", "lags"), SAMPLE)
 def test_a_cell_simulated_again_has_uniform_p_values(table: str, case: str, n: int, lags: int) -> None:
     found = DRAW[table](case, n, lags, REPLICATIONS, 4711)
-    p_values = np.array([lower_tail(float(one), table, case, n, lags)[0] for one in found])
+    place = table_lags(lags, n) if table == "phillips_perron" else lags
+    p_values = np.array([lower_tail(float(one), table, case, n, place)[0] for one in found])
     for level in (0.01, 0.05, 0.1, 0.25, 0.5, 0.75, 0.95):
         error = np.sqrt(level * (1.0 - level) / REPLICATIONS)
         # Beside Monte Carlo error a surface may be wrong by a twentieth of the level in a short series.
@@ -55,6 +66,7 @@ def test_the_sample_is_one_of_each_case() -> None:
 def test_generators_agree_with_the_package() -> None:
     """The statistics that the tables are made of are those that the package computes."""
     from preflight_magic.kernels.df_gls import df_gls
+    from preflight_magic.kernels.phillips_perron import phillips_perron
     from preflight_magic.kernels.union_of_rejections import union_of_rejections
     from preflight_magic.kernels.zivot_andrews import zivot_andrews
 
@@ -69,6 +81,11 @@ def test_generators_agree_with_the_package() -> None:
         broken = [zivot_andrews(y, model, lags=0) for y in walks]
         drawn = zivot_andrews_table.draw(model, n, 0, 6, seed)
         np.testing.assert_allclose([one.statistic for one in broken if one], drawn, rtol=1e-8)
+    for terms in ("n", "c", "ct", "ctt"):
+        for case, width in ((terms, 3), (f"{terms} automatic", "newey-west")):
+            corrected = [phillips_perron(y, terms, width) for y in walks]
+            drawn = phillips_perron_table.draw(case, n, 3, 6, seed)
+            np.testing.assert_allclose([one.statistic for one in corrected if one], drawn, rtol=1e-8)
     union = [union_of_rejections(y, lags=0) for y in walks]
     drawn = union_of_rejections_table.draw("four tests", n, 0, 6, seed)
     np.testing.assert_allclose([-one.statistic for one in union if one], drawn, rtol=1e-8)

@@ -1,12 +1,8 @@
-"""Are the p-values of KPSS, Canova-Hansen and HEGY uniform under their null hypotheses? Prints a table.
-
-Run ``OPENBLAS_NUM_THREADS=1 pytest -s tests/bench/size_seasonal.py`` from the root of the project, or the file itself.
-"""
+"""Are the p-values of KPSS, Canova-Hansen and HEGY uniform under their null hypotheses?"""
 
 from __future__ import annotations
 
-import sys
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 
 import numpy as np
 import pytest
@@ -15,6 +11,7 @@ from scipy.signal import lfilter
 from preflight_magic.kernels.canova_hansen import canova_hansen
 from preflight_magic.kernels.seasonal_unit_root import hegy
 from preflight_magic.kernels.unit_root import kpss
+from tests.bench.calibration import distance
 
 RUNS, LENGTH, FARTHEST = 2000, 400, 0.03
 Draw = Callable[[np.random.Generator], np.ndarray]
@@ -84,42 +81,15 @@ CASES: dict[str, tuple[Draw, PValues]] = {
     "HEGY, s = 12, ct": (seasonal_walk(12), hegy_p(12, "ct", 0)),
     "HEGY, s = 12, ct, 5 lags": (seasonal_walk(12), hegy_p(12, "ct", 5)),
 }
-SHOWN: dict[str, tuple[Draw, PValues]] = {
-    # A search looks at the data, so no law of a fixed length can be exact.
-    "HEGY, s = 4, c, lags by AIC": (seasonal_walk(4), hegy_p(4, "c", None)),
-    "HEGY, s = 12, ct, lags by AIC": (seasonal_walk(12), hegy_p(12, "ct", None)),
-}
-
-
-def distances(draw: Draw, p_values: PValues) -> Iterator[tuple[str, float, float]]:
-    """Statistic, Kolmogorov distance of its p-values from uniform, and share below 0.05."""
-    rng = np.random.default_rng(1995)
-    drawn = [p_values(draw(rng)) for _ in range(RUNS)]
-    place = np.arange(RUNS + 1) / RUNS
-    for name in drawn[0]:
-        p = np.sort([one[name] for one in drawn])
-        far = max(float((place[1:] - p).max()), float((p - place[:-1]).max()))
-        yield name, far, float(np.mean(p < 0.05))
-
-
-def show(case: str, draw: Draw, p_values: PValues) -> float:
-    """Print the rows of one case; the largest distance."""
-    worst = 0.0
-    for name, far, size in distances(draw, p_values):
-        print(f"{case:36s}{name:12s}{far:10.3f}{size:14.3f}")
-        worst = max(worst, far)
-    return worst
 
 
 @pytest.mark.slow
 @pytest.mark.parametrize("case", CASES)
 def test_p_values_are_uniform(case: str) -> None:
-    assert show(case, *CASES[case]) < FARTHEST
-
-
-if __name__ == "__main__":
-    print(f"{'test':36s}{'statistic':12s}{'distance':>10s}{'share < .05':>14s}")
-    worst = max(show(case, *both) for case, both in CASES.items())
-    for case, both in SHOWN.items():
-        show(case, *both)
-    sys.exit(0 if worst < FARTHEST else f"a distance of {worst:.3f} is {FARTHEST} or more")
+    draw, p_values = CASES[case]
+    rng = np.random.default_rng(1995)
+    drawn = [p_values(draw(rng)) for _ in range(RUNS)]
+    for name in drawn[0]:
+        p = np.array([one[name] for one in drawn])
+        assert distance(p) < FARTHEST, name
+        assert abs(np.mean(p < 0.05) - 0.05) < 0.015, name

@@ -1,0 +1,1 @@
+"""Records: findings and plans as JSON, without the data, and back."""

@@ -57,12 +57,13 @@ _HOMES = {
     "SeriesReport": "preflight_magic.series_report",
 }
 _STEPS = ("PerDay", "Log", "Power", "Logit", "Difference", "RemoveTrend", "RemoveShift", "RemovePattern")
+_REPAIRS = ("ReadDates", "Sort", "MergeDuplicates", "RegularCalendar", "FillGaps")
 
 
 def __getattr__(name: str) -> Any:
     if name in _HOMES:
         return getattr(importlib.import_module(_HOMES[name]), name)
-    if name in _STEPS:
+    if name in _STEPS + _REPAIRS:
         return getattr(importlib.import_module("preflight_magic.model"), name)
     if name == "demo":
         return importlib.import_module("preflight_magic.demo")

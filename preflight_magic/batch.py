@@ -10,10 +10,10 @@ from concurrent.futures import Executor
 from dataclasses import replace
 from typing import Any, TypeVar
 
-import numpy as np
-
 from preflight_magic import __version__
 from preflight_magic.intake import read
+from preflight_magic.intake.dates import short
+from preflight_magic.intake.read import season_of
 from preflight_magic.intake.spans import spans_of
 from preflight_magic.ladder import Climb, climb
 from preflight_magic.model import CheckError, TimeSeries
@@ -107,7 +107,8 @@ def check(
     Interrupted
         After an interrupt from the keyboard; its `report` holds what was done.
     """
-    spans = spans_of(exclude)
+    spans, season = spans_of(exclude), season_of(season)
+    _refuse_wrong_tools(pool, progress)
     if isinstance(repair, Iterator):
         repair = list(repair)
     every = _read(frame, season, time, series, value, only, spans, repair)
@@ -173,7 +174,8 @@ def opened(
     if unknown:
         raise TypeError(f"{caller}() has no option {', '.join(unknown)}")
     o = {**given, **options}
-    o["exclude"] = spans_of(o["exclude"])
+    o["exclude"], o["season"] = spans_of(o["exclude"]), season_of(o["season"])
+    _refuse_wrong_tools(o["pool"], o["progress"])
     every = _read(frame, o["season"], o["time"], o["series"], o["value"], o["only"], o["exclude"], o["repair"])
     if o["target"] is not None:
         check_target([one.name for one in every], o["target"])
@@ -186,12 +188,20 @@ def _read(
     return read(frame, season=season, time=time, series=series, value=value, only=only, exclude=exclude, repair=repair)
 
 
+def _refuse_wrong_tools(pool: Any, progress: Any) -> None:
+    if pool is not None and not callable(getattr(pool, "submit", None)):
+        raise CheckError(f"pool is {short(pool)}, not an executor; give one of concurrent.futures, or None.")
+    if not (progress is None or isinstance(progress, bool) or callable(progress)):
+        raise CheckError(f"progress is {short(progress)}; give True, False, None or a function of (done, total).")
+
+
 def _settings(season: Any, horizon: Any, significance: Any, exclude: Any) -> Settings:
     try:
         size = float(significance)
     except (TypeError, ValueError):
         size = float("nan")
-    if not 0.0 < size < 1.0:
+    # Quantiles closer to the end than this are no numbers.
+    if not 1e-9 < size < 1.0 - 1e-9:
         raise CheckError(f"significance is {significance!r}; give a number between 0 and 1, such as 0.05.")
     steps = None
     if horizon is not None:
@@ -201,8 +211,7 @@ def _settings(season: Any, horizon: Any, significance: Any, exclude: Any) -> Set
             steps = 0
         if steps < 1:
             raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, at least 1.")
-    asked = None if season is None else tuple(np.atleast_1d(np.asarray(season)).astype(int).tolist())
-    return Settings(season=asked, horizon=steps, thresholds=Thresholds(significance=size), exclude=exclude)
+    return Settings(season=season, horizon=steps, thresholds=Thresholds(significance=size), exclude=exclude)
 
 
 def _stream(

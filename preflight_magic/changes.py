@@ -9,9 +9,10 @@ import numpy as np
 import numpy.typing as npt
 
 from preflight_magic.intake.columns import Column, Options, to_series
+from preflight_magic.intake.mend import Mended
 from preflight_magic.intake.read import season_of
 from preflight_magic.intake.spans import excluded, refuse_empty_spans, spans_of
-from preflight_magic.model import CheckError, TimeSeries
+from preflight_magic.model import CheckError, FillGaps, TimeSeries
 
 
 def with_season(source: TimeSeries, season: int | Sequence[int]) -> TimeSeries:
@@ -64,7 +65,9 @@ def _again(source: TimeSeries, season: tuple[int, ...] | None, mask: npt.NDArray
         raise CheckError(source.problem or f"series {source.name!r} has no calendar.")
     values = source.values
     raw = Column(source.name, f"column {source.name!r}", values.to_numpy(dtype=np.float64, copy=True))
-    made = to_series(raw, source.calendar, values.index, mask, Options(season, fill_gaps=True))
+    # What made the index regular stays; whether gaps are filled follows from the values.
+    kept = tuple(repair for repair in source.repairs if not isinstance(repair, FillGaps))
+    made = to_series(raw, Mended(source.calendar, values.index, None, kept), mask, Options(season))
     if made.problem is not None:
         raise CheckError(made.problem)
     return made

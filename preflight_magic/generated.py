@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, cast
 
-from preflight_magic.model import CheckError
+from preflight_magic.model import CheckError, MergeDuplicates, ReadDates, RegularCalendar, Sort
 from preflight_magic.plan.emit import emit
 from preflight_magic.plan.emit_features import emit_features
 from preflight_magic.plan.emit_model import Orders, emit_model
@@ -22,6 +22,14 @@ UNPROVED = """\
 # report.attach(frame).code() runs it first.
 
 """
+
+
+_WHY: dict[type, str] = {
+    ReadDates: "The stamps were text or objects.",
+    Sort: "The rows were out of order.",
+    MergeDuplicates: "Some stamps had more than one row, with the same value.",
+    RegularCalendar: "Some stamps had no row; they get one without a value.",
+}
 
 
 def proved_code(reports: Sequence[SeriesReport]) -> str:
@@ -143,7 +151,7 @@ def features_code(report: SeriesReport) -> str:
 
 def _reasons(report: SeriesReport) -> dict[Any, str]:
     """Why each step of the plan is there, in the words of the finding that proposes it."""
-    said: dict[Any, str] = {}
+    said: dict[Any, str] = {one: _WHY[type(one)] for one in report.plan.repairs if type(one) in _WHY}
     for finding in report.findings.values():
         for step in finding.steps:
             said.setdefault(step, finding.reason.split(". ")[0].rstrip(".") + ".")

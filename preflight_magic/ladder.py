@@ -37,6 +37,8 @@ if TYPE_CHECKING:
 
 READING = ("time index", "values")
 """Rungs that say whether the series can be checked at all."""
+NO_NUMBERS = (np.linalg.LinAlgError, ArithmeticError)
+"""What a singular system or a number out of range raises: a rung that meets it is not decided, and says so."""
 DECIDING = ("calendar length", "spread", "shift and trend", "season", "unit root")
 """Rungs whose doubts make the series inconclusive; those after them add notes."""
 
@@ -108,6 +110,12 @@ def climb(series: TimeSeries, settings: Settings, plan: Plan | None = None, earl
     CheckError
         When `plan` cannot be applied to the series.
     """
+    # A person's own `np.seterr` must not stop the numbers, nor may what overflows on the way warn.
+    with np.errstate(all="ignore"):
+        return _climbed(series, settings, plan, earlier)
+
+
+def _climbed(series: TimeSeries, settings: Settings, plan: Plan | None, earlier: Climb | None) -> Climb:
     findings: dict[str, Finding] = {}
     context = Context(settings=settings, comparison=earlier.comparison if earlier else None)
     recommended = Plan(series.repairs)
@@ -173,7 +181,10 @@ def per_day(series: TimeSeries, steps: tuple[Step, ...]) -> TimeSeries:
 
 
 def _comparison(series: TimeSeries, thresholds: Thresholds) -> Comparison | None:
-    return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds), series.season[1:])
+    try:
+        return compare(series.values.to_numpy(dtype=float), series.season[0], prior_of(thresholds), series.season[1:])
+    except NO_NUMBERS:
+        return None
 
 
 @cache
@@ -184,7 +195,10 @@ def _comes_after(name: str, other: str) -> bool:
 
 
 def _finding(rung: Rung, series: TimeSeries, context: Context, thresholds: Thresholds) -> Finding:
-    evidence: Evidence = rung.examine(series, context)
+    try:
+        evidence: Evidence = rung.examine(series, context)
+    except NO_NUMBERS as error:
+        evidence = Evidence(problem=f"the numbers of this rung could not be computed ({str(error).rstrip('.')}).")
     if context.transformed is None:
         evidence = replace(evidence, tests=_named_per_day(evidence.tests, context.steps))
     judgement: Judgement = rung.judge(evidence, thresholds)

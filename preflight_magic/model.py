@@ -25,13 +25,42 @@ class CheckError(ValueError):
 
 # --------------------------------------------------------------------------------------------- repairs
 @dataclass(frozen=True)
+class ReadDates:
+    """Read stamps that are text in ISO form, or date objects, as dates."""
+
+
+@dataclass(frozen=True)
+class Sort:
+    """Put the rows in the order of their stamps."""
+
+
+@dataclass(frozen=True)
+class MergeDuplicates:
+    """Make one row of those that have the same stamp; their values have to be the same."""
+
+
+@dataclass(frozen=True)
+class RegularCalendar:
+    """Put in the stamps that the calendar has and the index lacks, without values.
+
+    `freq` is the pandas frequency of dates and periods, None for numbers, which count by one.
+    """
+
+    freq: str | None
+    kind: Literal["dates", "periods", "numbers"] = "dates"
+
+
+@dataclass(frozen=True)
 class FillGaps:
     """Fill missing values inside the span on a straight line, after taking out the mean pattern of `period`."""
 
     period: int = 1
 
 
-Repair = FillGaps
+IndexRepair = ReadDates | Sort | MergeDuplicates | RegularCalendar
+"""Repairs of the time index; they come before the values are filled, in this order."""
+
+Repair = IndexRepair | FillGaps
 
 
 # ----------------------------------------------------------------------------------------------- steps

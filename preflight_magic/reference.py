@@ -5,14 +5,18 @@ from __future__ import annotations
 import operator
 from typing import TYPE_CHECKING
 
+import numpy as np
 import pandas as pd
 
 from preflight_magic.model import CheckError
 from preflight_magic.reference_parts import averaged, plan_alone
+from preflight_magic.stamps import stamp_text
 
 if TYPE_CHECKING:
     from preflight_magic.series_report import SeriesReport
 
+_FURTHEST = 1_000_000
+"""Steps ahead beyond which a forecast is refused: it would fill the memory, and say nothing."""
 _ONE_DEVIATION = 0.6827
 """Probability of an interval of one standard deviation on each side."""
 _AGREEMENT = 0.25
@@ -47,7 +51,19 @@ def reference_forecast(report: SeriesReport, horizon: int, coverage: float, aver
     if report.problem is not None:
         raise CheckError(report.problem)
     check_options(horizon, coverage)
-    index = following(report.series.index, horizon)
+    # A person's own `np.seterr` must not stop it.
+    with np.errstate(all="ignore"):
+        return _forecast(report, horizon, coverage, average)
+
+
+def _forecast(report: SeriesReport, horizon: int, coverage: float, average: bool) -> pd.DataFrame:
+    try:
+        index = following(report.series.index, horizon)
+    except (OverflowError, ValueError) as error:
+        last = stamp_text(report.series.index[-1])
+        raise CheckError(
+            f"horizon is {horizon}, and pandas has not so many stamps after {last}; give fewer steps."
+        ) from error
     alone = plan_alone(report, index).table(coverage)
     mixture = averaged(report, index) if average and report.plan == report.recommended else None
     if mixture is None:
@@ -66,13 +82,14 @@ def check_options(horizon: object, coverage: object) -> None:
         steps = 0 if isinstance(horizon, bool) else operator.index(horizon)  # type: ignore[arg-type]
     except TypeError:
         steps = 0
-    if steps < 1:
-        raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, at least 1.")
+    if not 1 <= steps <= _FURTHEST:
+        raise CheckError(f"horizon is {horizon!r}; give a whole number of steps, from 1 to {_FURTHEST:,}.")
     try:
         share = float(coverage)  # type: ignore[arg-type]
     except (TypeError, ValueError):
         share = 0.0
-    if not 0.0 < share < 1.0:
+    # Quantiles closer to the end than this are no numbers.
+    if not 1e-9 < share < 1.0 - 1e-9:
         raise CheckError(f"coverage is {coverage!r}; give a probability between 0 and 1, such as 0.9.")
 
 

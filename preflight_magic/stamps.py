@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from datetime import time
+
 import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
 from preflight_magic.model import CalendarKind, Stamp
 
+MIDNIGHT = time()
 _FORMATS: dict[str, str] = {"yearly": "%Y", "quarterly": "%Y-%m", "monthly": "%Y-%m"}
 
 
@@ -26,9 +29,14 @@ def stamp_text(stamp: Stamp, kind: CalendarKind | None = None) -> str:
         return str(stamp)
     if kind in _FORMATS:
         return format(stamp, _FORMATS[kind])
-    if stamp == stamp.normalize() and kind not in ("hourly", "minutely"):
+    if is_midnight(stamp) and kind not in ("hourly", "minutely"):
         return f"{stamp:%Y-%m-%d}"
     return f"{stamp:%Y-%m-%d %H:%M:%S}" if stamp.second else f"{stamp:%Y-%m-%d %H:%M}"
+
+
+def is_midnight(stamp: pd.Timestamp) -> bool:
+    """Whether a stamp has no time of day; `Timestamp.normalize` fails where clocks skip midnight."""
+    return stamp.time() == MIDNIGHT and stamp.nanosecond == 0
 
 
 def counted(n: int, noun: str) -> str:

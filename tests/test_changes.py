@@ -51,6 +51,15 @@ def test_without_span_treats_it_as_missing(passengers):
     assert passengers.series.isna().sum() == 0
 
 
+def test_repairs_of_the_index_stay_in_the_plan():
+    given = pf.demo.ferry_line()["passengers"]
+    shuffled = given.iloc[[*range(1, len(given)), 0]]
+    one = pf.check(shuffled, progress=False)["passengers"]
+    assert one.plan.repairs
+    assert one.with_season(1).plan.repairs == one.plan.repairs
+    assert one.without_span("2020-03", "2020-05").plan.repairs[:-1] == one.plan.repairs
+
+
 @pytest.mark.parametrize(
     "change",
     [

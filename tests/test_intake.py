@@ -113,7 +113,8 @@ def test_groups_of_a_long_table_may_interleave_and_have_their_own_spans_and_prob
     table = long(ferry()).sort_values("month", kind="stable")
     late = (table["line"] == "freight") & (table["month"] < pd.Period("2013-01", "M"))
     hole = (table["line"] == "fuel_price") & (table["month"] == pd.Period("2014-02", "M"))
-    found = read(table[~late & ~hole].reset_index(drop=True), time="month", series="line")
+    table = table[~late & ~hole].reset_index(drop=True)
+    found = read(table, time="month", series="line", repair="fill gaps")
     assert [series.name for series in found] == ["passengers", "fuel_price", "freight"]
     passengers, fuel, freight = found
     assert passengers.values.index[0] == pd.Period("2012-01", "M")
@@ -125,10 +126,10 @@ def test_groups_of_a_long_table_may_interleave_and_have_their_own_spans_and_prob
 def test_long_tables_out_of_order():
     table = long(ferry())
     with pytest.raises(CheckError, match=r"frame = frame.sort_values\(\['line', 'month'\]\)"):
-        read(table[::-1], time="month", series="line")
+        read(table[::-1], time="month", series="line", repair=False)
     twice = pd.concat([table, table.iloc[[0]]]).sort_values(["line", "month"])
     assert "frame.drop_duplicates(['line', 'month'])" in " ".join(
-        series.problem or "" for series in read(twice, time="month", series="line")
+        series.problem or "" for series in read(twice, time="month", series="line", repair=False)
     )
 
 
@@ -141,8 +142,8 @@ def test_long_tables_with_too_little_told():
     with pytest.raises(CheckError, match=r"time='moth', but no column has that name; did you mean 'month'\?$"):
         read(table, time="moth", series="line", value="tonnes")
     text = table.assign(month=table["month"].astype(str))
-    with pytest.raises(CheckError, match=r"frame\['month'\] = pd.to_datetime\(frame\['month'\]\)"):
-        read(text, time="month", series="line", value="tonnes")
+    with pytest.raises(CheckError, match=r"frame\['month'\] = pd.to_datetime\(frame\['month'\], format='ISO8601'\)"):
+        read(text, time="month", series="line", value="tonnes", repair=["sort"])
 
 
 # ------------------------------------------------------------------------------------------------------- numbers
@@ -187,9 +188,13 @@ def test_sparse_numbers():
     [
         (
             ["calm"] * 60,
-            "column 'freight': text, for example 'calm'; convert it with `pd.to_numeric` or drop the column.",
+            "column 'freight': text, for example 'calm'; drop the column, or pass it as `series` if it names the "
+            "series.",
         ),
-        (["1", "2", "3"] * 20, "column 'freight': text, for example '1'; convert it with `pd.to_numeric`"),
+        (
+            ["1", "2", "3"] * 20,
+            "text, for example '1'; convert it with `frame['freight'] = pd.to_numeric(",
+        ),
         (pd.Categorical(["a", "b"] * 30), "column 'freight': categories, for example 'a'"),
         (pd.date_range("2020-01-01", periods=60), "column 'freight': dates, not numbers"),
         (pd.period_range("2020-01-01", periods=60, freq="D"), "column 'freight': periods, not numbers"),
@@ -239,8 +244,8 @@ def test_gaps_without_repair():
     assert "1 value missing, the first at 2014-07, and repair does not allow filling" in problem(column, repair=False)
     assert "repair does not allow filling" in problem(column, repair=[])
     assert problem(column, repair="fill gaps") is None
-    with pytest.raises(CheckError, match="repair names 'sort', which is none of the repairs 'fill gaps'"):
-        read(ferry(), repair=["sort"])
+    with pytest.raises(CheckError, match="repair names 'sorting', which is none of the repairs 'read dates', 'sort'"):
+        read(ferry(), repair=["sorting"])
 
 
 SPANS = [
@@ -370,7 +375,7 @@ def test_a_counter_needs_a_season():
 )
 def test_frames_that_cannot_be_checked(frame, told):
     with pytest.raises(CheckError, match=told):
-        read(frame)
+        read(frame, repair=False)
 
 
 def test_only_the_first_problems_of_a_wide_frame_are_told():
@@ -396,3 +401,98 @@ def test_options_that_name_nothing():
 
 def test_the_fewest_values_are_those_of_the_thresholds():
     assert Thresholds().minimum_observations == FEWEST_VALUES
+
+
+@pytest.mark.parametrize(
+    ("write", "code"),
+    [
+        (str, "pd.to_numeric(frame['freight'])"),
+        (lambda value: f"{value * 1000:,.1f}", ".str.replace(r'[^0-9.+-]', '', regex=True)"),
+        (lambda value: f"{value * 1000:,}".replace(",", "\u202f"), ".str.replace(r'[^0-9.+-]', '', regex=True)"),
+        (lambda value: f"{value},5", ".str.replace(',', '.')"),
+        (lambda value: f"{value} %", ".str.rstrip('% ')"),
+        (lambda value: "n/a" if value == 3 else str(value), "errors='coerce'"),
+    ],
+)
+@pytest.mark.parametrize("dtype", ["object", "string"])
+def test_numbers_written_as_text_come_with_the_code_that_reads_them(write, code, dtype):
+    numbers = np.arange(60) % 7 + 1
+    frame = pd.DataFrame({"freight": pd.array([write(int(value)) for value in numbers], dtype=dtype)}, index=MONTHS)
+    with pytest.raises(CheckError) as caught:
+        read(frame)
+    statement = str(caught.value).split("`")[1]
+    assert code in statement
+    space = {"frame": frame.copy(), "pd": pd}
+    exec(statement, space)
+    (series,) = read(space["frame"])
+    assert series.values.corr(pd.Series(numbers, index=MONTHS).where(series.values.notna())) > 0.99
+
+
+def test_a_long_row_of_digits_is_no_trap():
+    column = pd.Series(["1" * 200_000 + "x"] * 60, index=MONTHS)
+    assert "text, for example" in problem(column)
+
+
+def test_categories_of_numbers_become_numbers():
+    frame = pd.DataFrame({"freight": pd.Categorical(np.arange(60) % 7)}, index=MONTHS)
+    with pytest.raises(CheckError, match="categories, for example 0; read them as numbers") as caught:
+        read(frame)
+    space = {"frame": frame.copy()}
+    exec(str(caught.value).split("`")[1], space)
+    assert read(space["frame"])[0].problem is None
+
+
+@pytest.mark.parametrize(
+    ("values", "told"),
+    [
+        ([10**400, *range(59)], "1 infinite value, the first at 2012-01"),
+        ([-(10**400), *range(59)], "1 infinite value, the first at 2012-01"),
+        ([decimal.Decimal("sNaN"), *map(decimal.Decimal, range(59))], None),
+        ([decimal.Decimal("NaN"), *map(decimal.Decimal, range(59))], None),
+        ([pd.NaT, pd.NA, None, *range(57)], None),
+        ([-0.0] * 60, "one value only, 0 from"),
+        ([pd.DataFrame()] * 60, "values of type DataFrame, for example Empty DataFrame"),
+        ([b"1"] * 60, "values of type bytes"),
+    ],
+)
+def test_objects_at_the_edge_of_what_is_a_number(values, told):
+    found = problem(pd.Series(values, index=MONTHS, dtype=object))
+    assert found is None if told is None else told in found
+    assert "\n" not in (found or "")
+
+
+def test_bools_of_arrow_are_numbers():
+    pytest.importorskip("pyarrow")
+    column = pd.Series(np.arange(60) % 3 == 0, index=MONTHS).astype("bool[pyarrow]")
+    column.iloc[4] = None
+    assert one(column).values.sum() == 20.0
+
+
+class Foreign:
+    """Stands for a table of another library."""
+
+    def __init__(self, made):
+        self.made = made
+
+    def to_pandas(self):
+        if isinstance(self.made, Exception):
+            raise self.made
+        return self.made
+
+
+def test_tables_that_do_not_become_frames():
+    assert [series.name for series in read(Foreign(ferry()))] == ["passengers", "freight", "fuel_price"]
+    with pytest.raises(CheckError, match="to_pandas of the Foreign failed with OSError, 'no memory left'; convert it"):
+        read(Foreign(OSError("no\nmemory left")))
+    with pytest.raises(CheckError, match="found 'NoneType' where"):
+        read(Foreign(None))
+    polars = pytest.importorskip("polars")
+    with pytest.raises(CheckError, match=r"found 'LazyFrame', which is not computed yet; pass `frame.collect\(\)`"):
+        read(polars.DataFrame({"freight": range(60)}).lazy(), season=12)
+
+
+@pytest.mark.parametrize(
+    "season", [np.array([12, 4]), {4, 12}, [12, 4], (n for n in (4, 12)), np.array(12), range(4, 13, 8)]
+)
+def test_seasons_in_any_container(season):
+    assert read(ferry(), season=season)[0].season in ((4, 12), (12,))

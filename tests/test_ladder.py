@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import sys
 import textwrap
+from dataclasses import replace
 
 import numpy as np
 import pandas as pd
@@ -17,6 +18,7 @@ from preflight_magic.ladder import Climb, climb, ladder
 from preflight_magic.model import Difference, Finding, Log, RemovePattern, RemoveTrend, TimeSeries
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
+from tests.small_table import small_table
 
 KNOWN = ("time index", "values", "calendar length", "spread", "shift and trend", "season", "unit root")
 
@@ -278,3 +280,32 @@ def test_hours_of_the_week_take_the_place_of_hours_of_the_day():
     assert "longer season of 168" in found.findings["season"].reason
     alike = pf.check(power + 3.0 * weekend)["berth_power"]
     assert alike.plan.steps == (pf.RemovePattern(24),)
+
+
+# ------------------------------------------------------------------------------------------ numbers that cannot be had
+@pytest.mark.parametrize("rung", [one.name for one in ladder() if one.name not in climbing.READING])
+@pytest.mark.parametrize("error", [np.linalg.LinAlgError("Singular matrix"), ZeroDivisionError("division by zero")])
+def test_a_rung_that_fails_says_why_and_stops_no_other(monkeypatch, rung, error):
+    def fails(series, context):
+        raise error
+
+    rungs = tuple(replace(one, examine=fails) if one.name == rung else one for one in ladder())
+    monkeypatch.setattr(climbing, "ladder", lambda: rungs)
+    report = pf.check(small_table()[["cargo"]], cache=False, progress=False)["cargo"]
+    finding = report.findings[rung]
+    assert str(error) in finding.reason
+    assert finding.steps == ()
+    assert report.problem is None
+    assert report.verdict != "infeasible"
+    assert list(report.findings) == [one.name for one in rungs]
+    assert "def prepare" in report.code()
+
+
+def test_a_comparison_that_fails_leaves_the_decision_to_a_person(monkeypatch):
+    def fails(*arguments):
+        raise np.linalg.LinAlgError("Singular matrix")
+
+    monkeypatch.setattr(climbing, "compare", fails)
+    report = pf.check(small_table()[["cargo"]], cache=False, progress=False)["cargo"]
+    assert report.verdict == "inconclusive"
+    assert not report.plan

@@ -1,5 +1,6 @@
 """From what the person passed to series on a regular index."""
 
-from preflight_magic.intake.read import REPAIRS, read
+from preflight_magic.intake.mend import REPAIRS
+from preflight_magic.intake.read import read
 
 __all__ = ["REPAIRS", "read"]

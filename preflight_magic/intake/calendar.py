@@ -2,49 +2,22 @@
 
 from __future__ import annotations
 
-import re
-from dataclasses import dataclass
-
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import Calendar, CalendarKind, CheckError
+from preflight_magic.intake.dates import plain, refusal, written_as_number
+from preflight_magic.intake.frequencies import DAY_MINUTES, calendar_of
+from preflight_magic.intake.irregular import gap_days, interrupted, irregular, unknown_step
+from preflight_magic.intake.remedies import LacksStampsError, Remedies
+from preflight_magic.model import Calendar, CheckError
 from preflight_magic.stamps import counted, stamp_text
 
-_YEARLY = Calendar("yearly", None, "year")
-_QUARTERLY = Calendar("quarterly", None, "quarter", (4,))
-_MONTHLY = Calendar("monthly", None, "month", (12,))
-_KINDS: dict[str, Calendar] = {
-    **dict.fromkeys(("Y", "YS", "YE", "BYS", "BYE"), _YEARLY),
-    **dict.fromkeys(("Q", "QS", "QE", "BQS", "BQE"), _QUARTERLY),
-    **dict.fromkeys(("M", "MS", "ME", "BMS", "BME", "WOM", "LWOM"), _MONTHLY),
-    "W": Calendar("weekly", None, "week", (52,)),
-    "D": Calendar("daily", None, "day", (7,)),
-    "B": Calendar("business daily", None, "business day", (5,)),
-}
-_DAY_MINUTES = 24 * 60
 _MONTHS = ("JAN", "FEB", "MAR", "APR", "MAY", "JUN", "JUL", "AUG", "SEP", "OCT", "NOV", "DEC")
 _WEEKDAYS = ("MON", "TUE", "WED", "THU", "FRI", "SAT", "SUN")
-_KNOWN = "yearly, quarterly, monthly, weekly, daily, business daily or hourly"
+FEWEST_KNOWN = 0.5
+"""Share of the stamps of a calendar below which an index is not taken for that calendar."""
 
-
-@dataclass(frozen=True)
-class Remedies:
-    """Code that mends an index, in terms of what the person passed.
-
-    `base` is an expression for the table with the time index as its index, and `also` is what to change in the call
-    when it is used; `present`, `sort` and `unique` are statements about the table itself.
-    """
-
-    base: str = "frame"
-    present: str = "frame = frame[frame.index.notna()]"
-    sort: str = "frame = frame.sort_index()"
-    unique: str = "frame = frame[~frame.index.duplicated()]"
-    also: str = ""
-
-    def mend(self, code: str) -> str:
-        """Write an expression that continues `base`, with what else to change."""
-        return f"`{self.base}{code}`{self.also}"
+_LARGEST_NUMBER = 2**62
 
 
 def recognise(index: pd.Index, remedies: Remedies | None = None) -> tuple[Calendar, pd.Index]:
@@ -69,43 +42,15 @@ def recognise(index: pd.Index, remedies: Remedies | None = None) -> tuple[Calend
         Where stamps are missing, unsorted, repeated or irregular: names the first one.
     """
     remedies = remedies or Remedies()
-    if isinstance(index.dtype, pd.ArrowDtype) and index.dtype.kind == "M":
-        index = pd.DatetimeIndex(index)
-    if isinstance(index, pd.MultiIndex):
-        raise CheckError(
-            f"the index has {index.nlevels} levels where one of dates is needed; make them columns with "
-            f"`{remedies.base}.reset_index()` and name the time, series and value columns."
-        )
+    refuse_business_periods(index, remedies)
+    index = plain(index)
     if isinstance(index, pd.DatetimeIndex | pd.PeriodIndex):
         _refuse_disorder(index, remedies)
         return _dates(index, remedies) if isinstance(index, pd.DatetimeIndex) else _periods(index, remedies)
-    if pd.api.types.is_integer_dtype(index.dtype):
+    if pd.api.types.is_integer_dtype(index.dtype) and not isinstance(index, pd.MultiIndex):
         _refuse_disorder(index, remedies)
         return _counter(index, remedies)
-    first = f", beginning with {index[0]}" if len(index) else ""
-    convert = "{0}.astype(int)" if index.inferred_type.endswith("floating") else "pd.to_datetime({0})"
-    raise CheckError(
-        f"the index holds {index.inferred_type} values{first}, where dates, periods or whole numbers are needed; "
-        f"convert it with `{remedies.base}.index = {convert.format(remedies.base + '.index')}`."
-    )
-
-
-def calendar_of(freq: str) -> Calendar | None:
-    """Calendar of a pandas frequency such as ``QS-OCT`` or ``15min``; None for one that is not known here."""
-    parts = re.fullmatch(r"(\d*)([A-Za-z]+)(-.*)?", freq)
-    if parts is None:
-        return None
-    count = int(parts[1] or 1)
-    known = _KINDS.get(parts[2])
-    if known is not None:
-        return Calendar(known.kind, freq, known.noun, known.seasons) if count == 1 else None
-    minutes = count * {"h": 60, "min": 1}.get(parts[2], 0)
-    if not 0 < minutes < _DAY_MINUTES or _DAY_MINUTES % minutes:
-        return None
-    kind: CalendarKind = "minutely" if minutes % 60 else "hourly"
-    size, unit = (minutes, "minute") if minutes % 60 else (minutes // 60, "hour")
-    per_day = _DAY_MINUTES // minutes
-    return Calendar(kind, freq, unit if size == 1 else f"{size} {unit}s", (per_day, 7 * per_day))
+    raise refusal(index, remedies.stamps, f"{remedies.base}.reset_index()")
 
 
 # ------------------------------------------------------------------------------------------- order of the stamps
@@ -132,30 +77,46 @@ def _refuse_disorder(index: pd.Index, remedies: Remedies) -> None:
 
 # ------------------------------------------------------------------------------------------ integers and periods
 def _counter(index: pd.Index, remedies: Remedies) -> tuple[Calendar, pd.Index]:
+    first, last = int(index[0]), int(index[-1])
+    if max(abs(first), abs(last)) >= _LARGEST_NUMBER:
+        raise CheckError(
+            f"the index counts from {first} to {last}, too far to be counted on; number the rows with "
+            f"{remedies.mend('.reset_index(drop=True)')}."
+        )
     numbers = index if isinstance(index, pd.RangeIndex) else pd.Index(index.to_numpy(dtype=np.int64), name=index.name)
     steps = np.diff(numbers.to_numpy())
     odd = np.flatnonzero(steps != 1)
-    if odd.size:
-        before, found = numbers[odd[0]], numbers[odd[0] + 1]
-        remedy = f".reindex(range({numbers[0]}, {numbers[-1] + 1}))"
-        if (steps == steps[0]).all():
-            remedy = ".reset_index(drop=True)"
+    calendar = Calendar("counter", None, "step")
+    if not odd.size:
+        return calendar, numbers
+    before, found = numbers[odd[0]], numbers[odd[0] + 1]
+    told = f"the index does not count by one: after {before} comes {found}"
+    form = written_as_number(numbers)
+    if form is not None:
+        text = f"{remedies.stamps}.astype(str)"
         raise CheckError(
-            f"the index does not count by one: after {before} comes {found}, {before + 1} is expected; mend it with "
-            f"{remedies.mend(remedy)}."
+            f"{told}, as dates do; read them with `{remedies.stamps} = pd.to_datetime({text}, format='{form}')`."
         )
-    return Calendar("counter", None, "step"), numbers
+    told += f", {before + 1} is expected; mend it with "
+    if (steps == steps[0]).all() or len(numbers) < FEWEST_KNOWN * (last - first + 1):
+        raise CheckError(f"{told}{remedies.mend('.reset_index(drop=True)')}.")
+    message = f"{told}{remedies.mend(f'.reindex(range({first}, {last + 1}))')}."
+    raise LacksStampsError(message, calendar, pd.RangeIndex(first, last + 1, name=index.name), "numbers")
 
 
-def _periods(index: pd.PeriodIndex, remedies: Remedies) -> tuple[Calendar, pd.Index]:
-    calendar = calendar_of(index.freqstr)
-    if index.freqstr == "B":
+def refuse_business_periods(index: pd.Index, remedies: Remedies) -> None:
+    """Refuse periods of business days, before anything is done with them: pandas warns of each use."""
+    if isinstance(index.dtype, pd.PeriodDtype) and isinstance(index.dtype.freq, pd.offsets.BusinessDay):
         raise CheckError(
             "the index holds business-day periods, which pandas gives up; use dates with "
             f"{remedies.mend('.to_timestamp()')}."
         )
+
+
+def _periods(index: pd.PeriodIndex, remedies: Remedies) -> tuple[Calendar, pd.Index]:
+    calendar = calendar_of(index.freqstr)
     if calendar is None:
-        raise _unknown_step(f"periods of {index.freqstr!r}", remedies)
+        raise unknown_step(f"periods of {index.freqstr!r}", remedies)
     ordinals = index.asi8
     # Periods of several minutes or hours count in single ones.
     step = (index[0] + 1).ordinal - index[0].ordinal
@@ -164,19 +125,16 @@ def _periods(index: pd.PeriodIndex, remedies: Remedies) -> tuple[Calendar, pd.In
         before, found = index[odd[0]], index[odd[0] + 1]
         first, last = (stamp_text(stamp, calendar.kind) for stamp in (index[0], index[-1]))
         remedy = f'.reindex(pd.period_range("{first}", "{last}", freq="{index.freqstr}"))'
-        raise CheckError(
+        message = (
             f"the index is {calendar.kind}, but after {stamp_text(before)} comes {stamp_text(found)} where "
-            f"{stamp_text(before + 1)} is expected; put in what is missing with "
-            f"{remedies.mend(remedy)}."
+            f"{stamp_text(before + 1)} is expected; put in what is missing with {remedies.mend(remedy)}."
         )
+        size = (ordinals[-1] - ordinals[0]) // step + 1
+        if (np.diff(ordinals) % step).any() or len(index) < FEWEST_KNOWN * size:
+            raise CheckError(message)
+        regular = pd.period_range(index[0], index[-1], freq=index.freq, name=index.name)
+        raise LacksStampsError(message, calendar, regular, "periods")
     return calendar, index
-
-
-def _unknown_step(found: str, remedies: Remedies) -> CheckError:
-    return CheckError(
-        f"the index has {found}, not {_KNOWN} ones; number the rows with "
-        f"{remedies.mend('.reset_index(drop=True)')} and give the season, for example season=1 for none."
-    )
 
 
 # --------------------------------------------------------------------------------------------------------- dates
@@ -189,29 +147,69 @@ def _dates(index: pd.DatetimeIndex, remedies: Remedies) -> tuple[Calendar, pd.In
     for freq in _candidates(wall):
         # Hours are steps of absolute time, everything longer of local dates.
         stamps = index if freq.endswith(("h", "min")) else wall
-        expected = pd.date_range(stamps[0], stamps[-1], freq=freq)
+        expected = _whole(stamps, freq)
+        if expected is None:
+            continue
         common = int(stamps.isin(expected).sum())
         score = common / (len(expected) + len(stamps) - common)
         if score == 1.0:
             calendar = calendar_of(freq)
             assert calendar is not None
-            return calendar, pd.DatetimeIndex(index, freq=freq)
+            return calendar, _local(index, freq, remedies)
         if best is None or score > best[0]:
             best = score, freq, expected
-    if best is None or best[0] < 0.5:
-        raise _irregular(wall, zoned, remedies)
-    raise _interrupted(index if best[2].tz is not None else wall, best[1], best[2], zoned, remedies)
+    if best is None or best[0] < FEWEST_KNOWN:
+        raise irregular(wall, zoned, remedies)
+    stamps = index if best[2].tz is not None else wall
+    found = interrupted(stamps, best[1], best[2], zoned, remedies)
+    calendar = calendar_of(best[1])
+    if calendar is None or not stamps.isin(best[2]).all():
+        raise found
+    regular = pd.DatetimeIndex(best[2], name=index.name)
+    if zoned and regular.tz is None:
+        regular = _local(_in_zone(regular, index, remedies), best[1], remedies)
+    raise LacksStampsError(str(found), calendar, regular, "dates")
 
 
-def _gap_days(wall: pd.DatetimeIndex) -> np.ndarray[tuple[int], np.dtype[np.float64]]:
-    return np.asarray(np.diff(wall.to_numpy()) / np.timedelta64(1, "D"), dtype=np.float64)
+def _whole(stamps: pd.DatetimeIndex, freq: str) -> pd.DatetimeIndex | None:
+    """Every stamp of a calendar from the first to the last; None where most of them are lacking, or past all dates."""
+    usual = float(np.median(gap_days(stamps if stamps.tz is None else stamps.tz_convert(None))))
+    # As days, since the difference of two dates of nanoseconds may be too long for one.
+    if stamps[-1].to_julian_date() - stamps[0].to_julian_date() > 4 * usual * (len(stamps) + 25):
+        return None
+    try:
+        return pd.date_range(stamps[0], stamps[-1], freq=freq)
+    except (OverflowError, ValueError):
+        return None
+
+
+def _in_zone(regular: pd.DatetimeIndex, index: pd.DatetimeIndex, remedies: Remedies) -> pd.DatetimeIndex:
+    try:
+        return regular.tz_localize(index.tz)
+    except ValueError as error:
+        raise _no_such_hour(regular, index.tz, remedies) from error
+
+
+def _local(index: pd.DatetimeIndex, freq: str, remedies: Remedies) -> pd.DatetimeIndex:
+    """The index with its frequency; a zone whose clocks change at the hour of its stamps has none."""
+    try:
+        return pd.DatetimeIndex(index, freq=freq)
+    except ValueError as error:
+        raise _no_such_hour(index, index.tz, remedies) from error
+
+
+def _no_such_hour(index: pd.DatetimeIndex, zone: object, remedies: Remedies) -> CheckError:
+    return CheckError(
+        f"the index is local time of {zone} from {stamp_text(index[0])} on, and the clocks change there at the very "
+        f"hour of its stamps; leave the zone out with {remedies.mend('.tz_localize(None)')}."
+    )
 
 
 def _candidates(wall: pd.DatetimeIndex) -> list[str]:
     """Frequencies worth trying, by the median distance of the stamps."""
     if len(wall) < 2:
         return []
-    gap = float(np.median(_gap_days(wall)))
+    gap = float(np.median(gap_days(wall)))
     month = int(np.bincount(wall.month).argmax()) - 1
     if gap > 300:
         return [f"{base}-{_MONTHS[month]}" for base in ("YS", "YE", "BYS", "BYE")] if gap < 400 else []
@@ -225,73 +223,9 @@ def _candidates(wall: pd.DatetimeIndex) -> list[str]:
         return [f"W-{_WEEKDAYS[int(np.bincount(wall.day_of_week).argmax())]}"] if gap < 10 else []
     if gap > 0.9:
         return ["D", "B"] if gap < 2 else []
-    minutes = gap * _DAY_MINUTES
+    minutes = gap * DAY_MINUTES
     if minutes < 1 or minutes != int(minutes):
         return []
     freq = f"{int(minutes) // 60}h" if minutes % 60 == 0 else f"{int(minutes)}min"
     freq = {"1h": "h", "1min": "min"}.get(freq, freq)
     return [freq] if calendar_of(freq) else []
-
-
-def _interrupted(
-    stamps: pd.DatetimeIndex, freq: str, expected: pd.DatetimeIndex, zoned: bool, remedies: Remedies
-) -> CheckError:
-    """Error for a known calendar with stamps missing or beside it."""
-    calendar = calendar_of(freq)
-    kind = calendar.kind if calendar else None
-    row = next((i for i, (a, b) in enumerate(zip(stamps, expected, strict=False)) if a != b), len(expected))
-    beside = stamps[~stamps.isin(expected)]
-    # Stamps beside the calendar need their day told, even in a monthly index.
-    texts = [stamp_text(stamp, None if len(beside) else kind) for stamp in (stamps[row - 1], stamps[row])]
-    wanted = (
-        f" where {stamp_text(expected[row], None if len(beside) else kind)} is expected" if row < len(expected) else ""
-    )
-    where = f"after {texts[0]} comes {texts[1]}" if row else f"it begins with {texts[1]}"
-    if len(beside):
-        remedy = _by_period(stamps.tz_localize(None), zoned, remedies) or _collect(freq, remedies)
-    else:
-        remedy = "put in what is missing with " + remedies.mend(f'.asfreq("{freq}")')
-    return CheckError(f"the index is {kind}, but {where}{wanted}; {remedy}.")
-
-
-def _irregular(wall: pd.DatetimeIndex, zoned: bool, remedies: Remedies) -> CheckError:
-    """Error for stamps that follow none of the known calendars."""
-    gaps = _gap_days(wall)
-    months = np.diff(wall.year.to_numpy() * 12 + wall.month.to_numpy())
-    by_period = _by_period(wall, zoned, remedies)
-    if gaps.size and by_period is None:
-        if (gaps == gaps[0]).all():
-            return _unknown_step(f"stamps every {_length(gaps[0])}", remedies)
-        if (months == months[0]).all() and months[0] > 1:
-            return _unknown_step(f"stamps every {months[0]} months", remedies)
-    usual = float(np.median(gaps)) if gaps.size else 0.0
-    row = int(np.flatnonzero(gaps != usual)[0]) if (gaps != usual).any() else 0
-    sizes = ((300, "YS"), (80, "QS"), (26, "MS"), (6, "W"), (0.9, "D"))
-    freq = next((name for size, name in sizes if usual > size), "h")
-    remedy = by_period or _collect(freq, remedies)
-    return CheckError(
-        f"the index is not {_KNOWN}: the usual step is {_length(usual)}, but after {stamp_text(wall[row])} comes "
-        f"{stamp_text(wall[row + 1])}; {remedy}."
-    )
-
-
-def _by_period(wall: pd.DatetimeIndex, zoned: bool, remedies: Remedies) -> str | None:
-    """Remedy for stamps that are one a period, though not on the same day or hour of each."""
-    local = ".tz_localize(None)" if zoned else ""
-    for freq in ("Y", "Q", "M", "W", "D", "h"):
-        if (np.diff(wall.to_period(freq).asi8) == 1).all():
-            noun = _KINDS[freq].noun if freq in _KINDS else "hour"
-            return f"there is one a {noun}, so use periods with " + remedies.mend(f'{local}.to_period("{freq}")')
-    return None
-
-
-def _length(days: float) -> str:
-    sizes = ((1.0, "day"), (1 / 24, "hour"), (1 / _DAY_MINUTES, "minute"))
-    size, noun = next((one for one in sizes if days >= one[0]), (1 / _DAY_MINUTES / 60, "second"))
-    text = f"{days / size:.4g} {noun}"
-    return text if text.startswith("1 ") else text + "s"
-
-
-def _collect(freq: str, remedies: Remedies) -> str:
-    totals = remedies.mend(f'.resample("{freq}").sum()')
-    return f"collect them by calendar with {totals}, or with mean() where they are levels"

@@ -12,13 +12,16 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
+from preflight_magic.intake.dates import short
+from preflight_magic.intake.mend import REPAIRS, Mended
+from preflight_magic.intake.written import reading
 from preflight_magic.model import Calendar, CalendarKind, FillGaps, TimeSeries
 from preflight_magic.stamps import counted, stamp_text
 
 FEWEST_VALUES = 8
 """Fewest observed values from which anything is decided: common practice."""
-LARGEST = 1e100
-"""Size beyond which sums of squares leave the range of a double; its inverse is the smallest span."""
+LARGEST = 1e75
+"""Size beyond which fourth powers leave the range of a double; its inverse is the smallest span."""
 CYCLES = 2.5
 """Cycles that a season taken from the calendar needs: two to compare, and some more to tell chance from pattern."""
 CYCLES_LONGER = 4.0
@@ -29,10 +32,15 @@ Floats = npt.NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Options:
-    """What was asked of every series: `season` (None infers), and whether gaps may be filled."""
+    """What was asked of every series: `season` (None infers), and the names of the repairs allowed."""
 
     season: tuple[int, ...] | None = None
-    fill_gaps: bool = True
+    repairs: frozenset[str] = frozenset(REPAIRS)
+
+    @property
+    def fill_gaps(self) -> bool:
+        """Whether missing values may be filled."""
+        return "fill gaps" in self.repairs
 
 
 @dataclass(frozen=True)
@@ -56,7 +64,7 @@ class Column:
     problem: str | None = None
 
 
-def column(name: Hashable, label: str, values: pd.Series) -> Column:
+def column(name: Hashable, label: str, values: pd.Series, code: str) -> Column:
     """Read the numbers of a column of any dtype; text, dates and the like become a problem.
 
     Parameters
@@ -64,12 +72,14 @@ def column(name: Hashable, label: str, values: pd.Series) -> Column:
     name : Hashable
     label : str
     values : pandas.Series, shape (n,)
+    code : str
+        Expression for the column in the person's own table: ``frame['freight']``.
     """
-    numbers, problem = _numbers(values)
+    numbers, problem = _numbers(values, code)
     return Column(name, label, numbers, problem)
 
 
-def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
+def _numbers(values: pd.Series, code: str) -> tuple[Floats | None, str | None]:
     dtype = values.dtype
     if pd.api.types.is_complex_dtype(dtype):
         return None, "complex numbers; take the real part or the modulus, for example with `.abs()`, or drop the column"
@@ -79,8 +89,10 @@ def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
         if isinstance(dtype, pd.SparseDtype):
             return np.asarray(values.to_numpy(), dtype=np.float64).copy(), None
         return np.array(values.to_numpy(dtype=np.float64, na_value=np.nan)), None
+    if pd.api.types.is_bool_dtype(dtype) and not isinstance(dtype, pd.CategoricalDtype):
+        return np.array(values.to_numpy(dtype=np.float64, na_value=np.nan)), None
     if pd.api.types.is_object_dtype(dtype):
-        return _objects(values)
+        return _objects(values, code)
     for test, what in (
         (pd.api.types.is_datetime64_any_dtype, "dates"),
         (pd.api.types.is_timedelta64_dtype, "lengths of time"),
@@ -90,50 +102,67 @@ def _numbers(values: pd.Series) -> tuple[Floats | None, str | None]:
     if isinstance(dtype, pd.PeriodDtype):
         return None, "periods, not numbers; drop the column, or pass it as `time` if it dates the rows"
     if isinstance(dtype, pd.CategoricalDtype):
+        if pd.api.types.is_numeric_dtype(values.cat.categories.dtype):
+            return None, f"categories{_example(values)}; read them as numbers with `{code} = {code}.astype(float)`"
         return None, f"categories{_example(values)}; drop the column, or pass it as `series` if it names the series"
-    return None, f"text{_example(values)}; convert it with `pd.to_numeric` or drop the column"
+    if pd.api.types.is_string_dtype(dtype):
+        return None, f"text{_example(values)}; {reading(values.dropna(), code)}"
+    return None, f"values of type {dtype}{_example(values)}; drop the column"
 
 
-def _objects(values: pd.Series) -> tuple[Floats | None, str | None]:
-    present = values[values.notna()]
-    kinds = {type(one) for one in present}
-    if any(issubclass(kind, complex | np.complexfloating) for kind in kinds):
+def _objects(values: pd.Series, code: str) -> tuple[Floats | None, str | None]:
+    raw = values.to_numpy(dtype=object)
+    # A signalling NaN of decimal cannot even be compared.
+    seen = np.array([not (_no_number(one) or one is None or one is pd.NA or one is pd.NaT) for one in raw], dtype=bool)
+    present = raw[seen]
+    if any(isinstance(one, complex | np.complexfloating) for one in present):
         return None, "complex numbers; take the real part or the modulus, or drop the column"
-    # bool and numpy's bool are numbers here, as in a column of their own dtype.
-    if all(issubclass(kind, int | float | np.number | np.bool_ | Decimal | Fraction) for kind in kinds):
-        numbers = np.full(len(values), np.nan)
-        numbers[values.notna().to_numpy()] = [float(one) for one in present]
+    odd = next((one for one in present if not isinstance(one, _NUMBERS)), None)
+    if odd is None:
+        numbers = np.full(len(raw), np.nan)
+        numbers[seen] = [_float(one) for one in present]
         return numbers, None
-    odd = next(one for one in present if not isinstance(one, int | float | np.number | np.bool_ | Decimal | Fraction))
-    what = "text" if isinstance(odd, str) else f"values of type {type(odd).__name__}"
-    return None, f"{what}, for example {_short(odd)}; convert it with `pd.to_numeric` or drop the column"
+    if isinstance(odd, str):
+        told = reading(pd.Series([str(one) for one in present]), code)
+        return None, f"text, for example {short(odd)}; {told}"
+    return None, f"values of type {type(odd).__name__}, for example {short(odd)}; drop the column"
+
+
+# bool and numpy's bool are numbers here, as in a column of their own dtype.
+_NUMBERS = (int, float, np.number, np.bool_, Decimal, Fraction)
+
+
+def _no_number(value: object) -> bool:
+    if isinstance(value, Decimal):
+        return value.is_nan()
+    return isinstance(value, float | np.floating) and bool(np.isnan(value))
+
+
+def _float(value: Any) -> float:
+    try:
+        return float(value)
+    except OverflowError:
+        return np.inf if value > 0 else -np.inf
 
 
 def _example(values: pd.Series) -> str:
     present = values.dropna()
-    return f", for example {_short(present.iloc[0])}" if len(present) else ""
+    return f", for example {short(present.iloc[0])}" if len(present) else ""
 
 
-def _short(value: Any) -> str:
-    text = repr(value)
-    return text if len(text) <= 40 else text[:37] + "..."
-
-
-def to_series(
-    source: Column, calendar: Calendar, index: pd.Index, excluded: npt.NDArray[np.bool_] | None, options: Options
-) -> TimeSeries:
+def to_series(source: Column, mended: Mended, excluded: npt.NDArray[np.bool_] | None, options: Options) -> TimeSeries:
     """Trim a column to its observed span and say what season it has, or why it cannot be checked.
 
     Parameters
     ----------
     source : Column
-    calendar : Calendar
-    index : pandas.Index, shape (n,)
-        Regular.
+    mended : Mended
+        The regular index, shape (n,), and what made it regular.
     excluded : numpy.ndarray of bool or None, shape (n,)
         True where the values are to be treated as missing.
     options : Options
     """
+    calendar, index = mended.calendar, mended.index
     if source.numbers is None:
         return refused(source.name, source.label, source.problem or "no numbers", calendar)
     numbers = source.numbers if excluded is None else np.where(excluded, np.nan, source.numbers)
@@ -157,8 +186,8 @@ def to_series(
     if problem is not None:
         return refused(source.name, source.label, problem, calendar, values)
     season, notes = (options.season, ()) if options.season else _natural_season(calendar, observed)
-    repairs = (FillGaps(season[0]),) if observed < len(numbers) else ()
-    return TimeSeries(source.name, values, calendar, season, repairs, None, notes)
+    filled = (FillGaps(season[0]),) if observed < len(numbers) else ()
+    return TimeSeries(source.name, values, calendar, season, (*mended.repairs, *filled), None, notes)
 
 
 def refused(
@@ -179,14 +208,14 @@ def _infinite(numbers: Floats, index: pd.Index, kind: CalendarKind) -> str | Non
 
 
 def _out_of_scale(values: pd.Series) -> str | None:
-    """Numbers whose squares a computer cannot hold."""
+    """Numbers whose powers a computer cannot hold."""
     numbers = values.to_numpy()
     low, high = float(np.nanmin(numbers)), float(np.nanmax(numbers))
     largest = max(abs(low), abs(high))
     if largest > LARGEST:
-        return f"values up to {largest:.3g} in size, too large to be squared; divide the column by a power of ten"
+        return f"values up to {largest:.3g} in size, too large to compute with; divide the column by a power of ten"
     if 0.0 < high - low < 1.0 / LARGEST:
-        return f"values that span {high - low:.3g}, too little to be squared; multiply the column by a power of ten"
+        return f"values that span {high - low:.3g}, too little to compute with; multiply the column by a power of ten"
     return None
 
 
@@ -214,7 +243,8 @@ def _too_little(values: pd.Series, observed: int, kind: CalendarKind) -> str | N
             f"only {counted(observed, 'value')}, {span}, where at least {FEWEST_VALUES} are needed; give a longer "
             "series or drop the column"
         )
-    return f"one value only, {numbers[0]:g} from {first} to {last}, so there is nothing to decide; drop the column"
+    value = numbers[0] + 0.0  # no negative zero
+    return f"one value only, {value:g} from {first} to {last}, so there is nothing to decide; drop the column"
 
 
 def _bad_season(values: pd.Series, season: tuple[int, ...] | None) -> str | None:

@@ -3,19 +3,18 @@
 from __future__ import annotations
 
 import operator
-from collections.abc import Hashable, Iterable, Sequence
+from collections.abc import Hashable, Iterable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
 import pandas as pd
 
 from preflight_magic.intake.columns import Options
+from preflight_magic.intake.dates import short
+from preflight_magic.intake.mend import REPAIRS
 from preflight_magic.intake.spans import Span, spans_of
 from preflight_magic.intake.tables import long_table, wide_table
 from preflight_magic.model import CheckError, TimeSeries
-
-REPAIRS = ("fill gaps",)
-"""Names of the repairs that `repair` may allow."""
 
 
 def read(
@@ -44,7 +43,8 @@ def read(
     exclude : iterable of (start, end), optional
         Spans, both ends included, to treat as missing.
     repair : bool, str or iterable of str
-        Repairs allowed: all, none, or those named in `REPAIRS`.
+        Repairs allowed: all, none, or those named: ``read dates``, ``sort``, ``merge duplicates``,
+        ``regular calendar``, ``fill gaps``.
 
     Returns
     -------
@@ -58,7 +58,7 @@ def read(
     """
     table = _table(frame)
     spans = spans_of(exclude)
-    options = Options(season_of(season), _may_fill(repair))
+    options = Options(season_of(season), _allowed(repair))
     if spans and not options.fill_gaps:
         raise CheckError(
             "exclude leaves gaps, and repair does not allow filling them; drop exclude, or use repair=True."
@@ -84,8 +84,17 @@ def _nothing_usable(problems: list[str]) -> str:
 
 # ------------------------------------------------------------------------------------------------------- options
 def _table(frame: Any) -> pd.DataFrame | pd.Series:
-    if not isinstance(frame, pd.DataFrame | pd.Series) and hasattr(frame, "to_pandas"):
-        frame = frame.to_pandas()
+    if not isinstance(frame, pd.DataFrame | pd.Series) and callable(getattr(frame, "to_pandas", None)):
+        kind = type(frame).__name__
+        try:
+            frame = frame.to_pandas()
+        except Exception as error:
+            raise CheckError(
+                f"to_pandas of the {kind} failed with {type(error).__name__}, {short(str(error))}; convert it to a "
+                "DataFrame first."
+            ) from error
+    if callable(getattr(frame, "collect", None)) and not hasattr(frame, "iloc"):
+        raise CheckError(f"found {type(frame).__name__!r}, which is not computed yet; pass `frame.collect()`.")
     if not isinstance(frame, pd.DataFrame | pd.Series):
         raise CheckError(
             f"found {type(frame).__name__!r} where a DataFrame or Series is needed; wrap it, for example with "
@@ -98,10 +107,14 @@ def _table(frame: Any) -> pd.DataFrame | pd.Series:
 
 
 def season_of(season: Any) -> tuple[int, ...] | None:
-    """Read seasonal periods, shortest first; None stays None, and a CheckError says what is no period."""
+    """Seasonal periods as asked for, shortest first; ``(1,)`` for none, None where they are to be inferred."""
     if season is None:
         return None
-    given = season if isinstance(season, tuple | list) else [season]
+    single = isinstance(season, str | bytes | Mapping) or not isinstance(season, Iterable)
+    try:
+        given = [season] if single else list(season)
+    except TypeError:  # an array without dimension
+        given = [season]
     try:
         whole = sorted({operator.index(one) for one in given if not isinstance(one, bool | np.bool_)})
     except TypeError:
@@ -114,17 +127,18 @@ def season_of(season: Any) -> tuple[int, ...] | None:
     return tuple(one for one in whole if one > 1) or (1,)
 
 
-def _may_fill(repair: Any) -> bool:
+def _allowed(repair: Any) -> frozenset[str]:
+    """Names of the repairs that may be made."""
     if isinstance(repair, bool | np.bool_):
-        return bool(repair)
+        return frozenset(REPAIRS if repair else ())
     try:
         names = [repair] if isinstance(repair, str) else list(repair)
     except TypeError:
         names = [repair]
-    unknown = [name for name in names if name not in REPAIRS]
+    unknown = [name for name in names if not isinstance(name, str) or name not in REPAIRS]
     if unknown:
         raise CheckError(
-            f"repair names {unknown[0]!r}, which is none of the repairs {', '.join(map(repr, REPAIRS))}; name one of "
-            "those, or give True or False."
+            f"repair names {short(unknown[0])}, which is none of the repairs {', '.join(map(repr, REPAIRS))}; name one "
+            "of those, or give True or False."
         )
-    return "fill gaps" in names
+    return frozenset(names)

@@ -39,7 +39,7 @@ def _iterable(value: Any) -> bool:
 
 
 def _is_stamp(end: Any) -> bool:
-    return isinstance(end, str | pd.Period | datetime.date | np.datetime64 | int | np.integer)
+    return end is not pd.NaT and isinstance(end, str | pd.Period | datetime.date | np.datetime64 | int | np.integer)
 
 
 def excluded(index: pd.Index, spans: tuple[Span, ...]) -> tuple[npt.NDArray[np.bool_] | None, list[bool]]:

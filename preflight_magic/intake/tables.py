@@ -4,17 +4,19 @@ from __future__ import annotations
 
 import difflib
 from collections.abc import Hashable, Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from preflight_magic.intake.calendar import Remedies, recognise
 from preflight_magic.intake.columns import FEWEST_VALUES, Column, Options, column, refused, to_series
+from preflight_magic.intake.dates import plain, readable, refusal
+from preflight_magic.intake.mend import Mended, mend
+from preflight_magic.intake.remedies import Remedies
 from preflight_magic.intake.spans import Span, excluded, refuse_empty_spans
-from preflight_magic.model import Calendar, CheckError, TimeSeries
+from preflight_magic.model import CheckError, ReadDates, TimeSeries
 from preflight_magic.stamps import counted
 
 
@@ -31,9 +33,11 @@ def wide_table(
     base = "series" if isinstance(table, pd.Series) else "frame"
     remedies = Remedies(
         base,
+        f"{base}.index",
         f"{base} = {base}[{base}.index.notna()]",
         f"{base} = {base}.sort_index()",
         f"{base} = {base}[~{base}.index.duplicated()]",
+        f"merge them with `{base} = {base}.groupby(level=0).sum()`, or mean() where they are levels",
     )
     if isinstance(table, pd.Series):
         if time is not None or value is not None:
@@ -42,12 +46,15 @@ def wide_table(
     elif time is not None:
         remedies = Remedies(
             f"frame.set_index({time!r})",
+            f"frame[{time!r}]",
             f"frame = frame.dropna(subset=[{time!r}])",
             f"frame = frame.sort_values({time!r})",
             f"frame = frame.drop_duplicates({time!r})",
+            f"merge them with `frame = frame.groupby({time!r}, as_index=False).sum()`, or mean() where they are levels",
             " and leave out time",
         )
-        table = table.set_axis(_time(table, time), axis=0).drop(columns=[time])
+        at = _position(table, time, "time")
+        table = table.drop(columns=[time]).set_axis(pd.Index(table.iloc[:, at]), axis=0)
     if value is not None:
         _position(table, value, "value")
         only = [value]
@@ -59,13 +66,22 @@ def wide_table(
             "needed; give longer series."
         )
     _refuse_plain_numbers(table, table.index, options)
-    calendar, index = recognise(table.index, remedies)
-    mask, held = excluded(index, spans)
+    mended = mend(table.index, remedies, options.repairs)
+    mask, held = excluded(mended.index, spans)
     refuse_empty_spans(spans, [held])
-    return tuple(to_series(one, calendar, index, mask, options) for one in _columns(table, labels, names))
+    columns = (_laid(one, mended, remedies) for one in _columns(table, labels, names, base))
+    return tuple(to_series(one, mended, mask, options) for one in columns)
 
 
-def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable]) -> list[Column]:
+def _laid(source: Column, mended: Mended, remedies: Remedies) -> Column:
+    """The column on the regular index."""
+    if source.numbers is None or mended.place is None:
+        return source
+    numbers, problem = mended.lay(source.numbers, remedies)
+    return replace(source, numbers=None if problem else numbers, problem=problem)
+
+
+def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable], base: str) -> list[Column]:
     """Raw material of the named columns, a repeated name once."""
     positions: dict[Hashable, list[int]] = {}
     for i, name in enumerate(labels):
@@ -83,7 +99,8 @@ def _columns(table: pd.DataFrame, labels: list[Hashable], names: list[Hashable])
         elif at[0] in place:
             found.append(Column(name, label, matrix[:, place[at[0]]]))
         else:
-            found.append(column(name, label, table.iloc[:, at[0]]))
+            code = base if base == "series" else f"frame[{name!r}]"
+            found.append(column(name, label, table.iloc[:, at[0]], code))
     return found
 
 
@@ -104,17 +121,6 @@ def _refuse_plain_numbers(table: pd.DataFrame, stamps: pd.Index, options: Option
         f"the rows are numbered from {stamps[0]}, which tells no calendar; give the season, for example season=12 for "
         "months or season=1 for none, or make the dates the index."
     )
-
-
-def _time(table: pd.DataFrame, time: Hashable) -> pd.Index:
-    stamps = table.iloc[:, _position(table, time, "time")]
-    if pd.api.types.is_object_dtype(stamps.dtype) or pd.api.types.is_string_dtype(stamps.dtype):
-        raise CheckError(
-            f"time={time!r} is a column of {'text' if isinstance(stamps.iloc[0], str) else 'objects'}, for example "
-            f"{stamps.iloc[0]!r}, not of dates; convert it with `frame[{time!r}] = pd.to_datetime(frame[{time!r}])`."
-        )
-    index: pd.Index = pd.Index(stamps)
-    return index
 
 
 def _position(table: pd.DataFrame, name: Hashable, option: str) -> int:
@@ -164,11 +170,16 @@ def long_table(
 ) -> tuple[TimeSeries, ...]:
     """Group by name without pivoting, so that groups may have different spans."""
     keys = table.iloc[:, _position(table, series, "series")]
-    stamps = table.index if time is None else _time(table, time)
     source = _value_column(table, [series, time], value)
     if source.numbers is None:
         raise CheckError(f"{source.label}: {source.problem}.")
+    remedies = _long_remedies(time, series, source.name)
+    stamps = plain(table.index if time is None else pd.Index(table.iloc[:, _position(table, time, "time")]))
     _refuse_plain_numbers(table, stamps, options)
+    dates = readable(stamps)
+    if isinstance(stamps, pd.MultiIndex) or (dates is not None and "read dates" not in options.repairs):
+        raise refusal(stamps, remedies.stamps, "frame.reset_index()")
+    stamps = stamps if dates is None else dates
     codes, uniques = pd.factorize(keys)
     nameless = np.flatnonzero(codes < 0)
     if nameless.size:
@@ -180,7 +191,7 @@ def long_table(
     order = np.argsort(codes, kind="stable")
     edges = np.concatenate([[0], np.cumsum(np.bincount(codes, minlength=len(names)))])
     stamps, numbers = stamps.take(order), source.numbers[order]
-    calendars = _Calendars(_long_remedies(time, series, source.name), spans)
+    calendars = _Calendars(remedies, spans, options.repairs, dates is not None)
     found: list[TimeSeries] = []
     held: list[list[bool]] = []
     at = {name: i for i, name in enumerate(names)}
@@ -198,17 +209,22 @@ class _Calendars:
 
     remedies: Remedies
     spans: tuple[Span, ...]
-    known: dict[bytes, tuple[Calendar, pd.Index, npt.NDArray[np.bool_] | None, list[bool]] | str] = field(
+    repairs: frozenset[str]
+    read_dates: bool
+    known: dict[tuple[Hashable, ...], tuple[Mended, npt.NDArray[np.bool_] | None, list[bool]] | str] = field(
         default_factory=dict
     )
 
-    def of(self, stamps: pd.Index) -> tuple[Calendar, pd.Index, npt.NDArray[np.bool_] | None, list[bool]] | str:
-        """Calendar, regular index, excluded stamps and which spans are held; or why there is no calendar."""
+    def of(self, stamps: pd.Index) -> tuple[Mended, npt.NDArray[np.bool_] | None, list[bool]] | str:
+        """The mended index, the excluded stamps and which spans are held; or why there is no calendar."""
         numbers = stamps.asi8 if isinstance(stamps, pd.DatetimeIndex | pd.PeriodIndex) else stamps.to_numpy()
-        key = np.asarray(numbers).tobytes()
+        key = (numbers.tobytes(),) if numbers.dtype != object else tuple(map(repr, numbers))
         if key not in self.known:
             try:
-                self.known[key] = (*(found := recognise(stamps, self.remedies)), *excluded(found[1], self.spans))
+                mended = mend(stamps, self.remedies, self.repairs)
+                if self.read_dates:
+                    mended = replace(mended, repairs=(ReadDates(), *mended.repairs))
+                self.known[key] = (mended, *excluded(mended.index, self.spans))
             except CheckError as error:
                 self.known[key] = str(error)
         return self.known[key]
@@ -225,9 +241,9 @@ def _group(
     found = calendars.of(stamps)
     if isinstance(found, str):
         return refused(source.name, source.label, found.rstrip("."))
-    calendar, index, mask, hits = found
+    mended, mask, hits = found
     held.append(hits)
-    return to_series(source, calendar, index, mask, options)
+    return to_series(_laid(source, mended, calendars.remedies), mended, mask, options)
 
 
 def _value_column(table: pd.DataFrame, taken: list[Hashable], value: Hashable | None) -> Column:
@@ -244,22 +260,27 @@ def _value_column(table: pd.DataFrame, taken: list[Hashable], value: Hashable | 
     else:
         at = _position(table, value, "value")
     name = table.columns[at]
-    return column(name, f"column {name!r}", table.iloc[:, at])
+    return column(name, f"column {name!r}", table.iloc[:, at], f"frame[{name!r}]")
 
 
 def _long_remedies(time: Hashable | None, series: Hashable, value: Hashable) -> Remedies:
+    sums = "sum()`, or mean() where they are levels"
     if time is None:
         return Remedies(
             f"frame.pivot(columns={series!r}, values={value!r})",
+            "frame.index",
             "frame = frame[frame.index.notna()]",
             "frame = frame.sort_index()",
             f"frame = frame[~frame.set_index({series!r}, append=True).index.duplicated()]",
+            f"merge them with `frame.set_index({series!r}, append=True).groupby(level=[0, 1]).{sums}",
             " and pass that wide table",
         )
     return Remedies(
         f"frame.pivot(index={time!r}, columns={series!r}, values={value!r})",
+        f"frame[{time!r}]",
         f"frame = frame.dropna(subset=[{time!r}])",
         f"frame = frame.sort_values([{series!r}, {time!r}])",
         f"frame = frame.drop_duplicates([{series!r}, {time!r}])",
+        f"merge them with `frame = frame.groupby([{series!r}, {time!r}], as_index=False).{sums}",
         " and pass that wide table",
     )

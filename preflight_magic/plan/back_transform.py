@@ -12,6 +12,7 @@ from preflight_magic.model import CheckError
 from preflight_magic.plan.apply import levels
 from preflight_magic.plan.fixed_part import fixed_part, lags_of
 from preflight_magic.plan.points import undo_points
+from preflight_magic.plan.regular import regular
 from preflight_magic.plan.timeline import as_float, join_forecast
 from preflight_magic.plan.words import called, stamp_text
 
@@ -23,7 +24,12 @@ Array = npt.NDArray[np.float64]
 
 def back_transform(plan: Plan, forecast: pd.Series, history: pd.Series, variance: object = None) -> pd.Series:
     """Undo the plan on a forecast; see `Plan.back_transform`."""
-    future, past = as_float(forecast), as_float(history)
+    with np.errstate(all="ignore"):
+        return _undone(plan, forecast, history, variance)
+
+
+def _undone(plan: Plan, forecast: pd.Series, history: pd.Series, variance: object) -> pd.Series:
+    future, past = as_float(forecast), regular(plan.repairs, as_float(history))
     spread = _variance(variance, future)
     if future.empty:
         return future

@@ -8,7 +8,14 @@ import pandas as pd
 
 from preflight_magic.model import CheckError, PerDay, Power, Repair, Step
 from preflight_magic.plan import emit_functions as shared
-from preflight_magic.plan.emit_steps import Draft, Reasons, fixed_part_lines, prepare_lines, restore_lines
+from preflight_magic.plan.emit_steps import (
+    Draft,
+    Reasons,
+    fixed_part_lines,
+    prepare_lines,
+    regular_lines,
+    restore_lines,
+)
 from preflight_magic.plan.fixed_part import lags_of
 from preflight_magic.plan.literals import comment, key_lines, literal, one_line
 from preflight_magic.plan.plan import Plan
@@ -98,7 +105,7 @@ def _shared(draft: Draft, drafts: list[Draft]) -> list[str]:
     """Sources of the shared functions that a plan needs."""
     plan = draft.plan
     parts: list[str] = []
-    if any(repair.period > 1 for repair in plan.repairs):
+    if any(repair.period > 1 for repair in draft.fills):
         parts.append(shared.FILL_GAPS)
     if draft.counted:
         unit = next(step.unit for step in plan.steps if isinstance(step, PerDay))
@@ -118,6 +125,8 @@ def _functions(draft: Draft, names: list[Hashable]) -> list[str]:
     functions = [prepare_lines(draft), restore_lines(draft)]
     if draft.fitted:
         functions.insert(0, fixed_part_lines(draft))
+    if draft.irregular:
+        functions.insert(0, regular_lines(draft))
     texts = ["\n".join(lines) for lines in functions]
     texts[0] = "\n".join([*comment(f"{shown}{more}: {draft.plan}"), texts[0]])
     return texts

@@ -11,12 +11,16 @@ from preflight_magic.model import (
     FillGaps,
     Log,
     Logit,
+    MergeDuplicates,
     PerDay,
     Power,
+    ReadDates,
+    RegularCalendar,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
     Repair,
+    Sort,
     Step,
 )
 from preflight_magic.plan.emit_points import backward, forward
@@ -51,6 +55,16 @@ class Draft:
         return columns.trend or bool(columns.shifts) or bool(columns.patterns)
 
     @property
+    def fills(self) -> tuple[FillGaps, ...]:
+        """Repairs of the values; the others are those of the index."""
+        return tuple(repair for repair in self.plan.repairs if isinstance(repair, FillGaps))
+
+    @property
+    def irregular(self) -> bool:
+        """Whether the rows have to be made regular first."""
+        return len(self.plan.repairs) > len(self.fills)
+
+    @property
     def counted(self) -> bool:
         """Whether days are counted by a function of its own; pandas counts those of a month."""
         return any(isinstance(s, PerDay) and not (self.monthly and s.unit == "days") for s in self.plan.steps)
@@ -58,7 +72,7 @@ class Draft:
     @property
     def joined(self) -> bool:
         """Whether preparing a series needs the values before it."""
-        return bool(self.plan.repairs or self.columns or lags_of(self.plan.steps) or self.counted)
+        return bool(self.fills or self.columns or lags_of(self.plan.steps) or self.counted)
 
 
 def prepare_lines(draft: Draft) -> list[str]:
@@ -66,16 +80,20 @@ def prepare_lines(draft: Draft) -> list[str]:
     plan, lags = draft.plan, lags_of(draft.plan.steps)
     text = "Transform y for a model; history, y itself by default, is what is known."
     lines = [f"def prepare{draft.suffix}(y, history=None):", f'    """{text}"""']
+    if draft.irregular:
+        lines += [f"    y = regular{draft.suffix}(y)"]
+        lines += [f"    history = y if history is None else regular{draft.suffix}(history)"] if draft.joined else []
     if draft.joined:
+        start = "history" if draft.irregular else "(y if history is None else history)"
         lines += [
-            "    history = (y if history is None else history).astype(float)",
+            f"    history = {start}.astype(float)",
             "    # What lies before y comes from the history.",
             "    x = history.reindex(history.index.union(y.index))",
             "    x.loc[y.index] = y.astype(float)",
         ]
     else:
         lines += ["    x = y.astype(float)"]
-    for repair in plan.repairs:
+    for repair in draft.fills:
         lines += [*_why(draft, repair), f"    x = {_fill('x', 'history', repair)}"]
     for step in plan.steps:
         lines += _why(draft, step)
@@ -102,6 +120,7 @@ def restore_lines(draft: Draft) -> list[str]:
     text = "median, or mean with its error variance" if bends else "the variance changes nothing"
     text = f"Undo prepare on a forecast that follows history: {text}."
     lines = [f"def restore{draft.suffix}(forecast, history, variance=None):", f'    """{text}"""']
+    lines += [f"    history = regular{draft.suffix}(history)"] if draft.irregular else []
     lines += ["    x = forecast.astype(float)"]
     if lags or draft.columns:
         lines += _chain("past", "history[history.index < forecast.index[0]].astype(float)", draft, ())
@@ -121,6 +140,36 @@ def restore_lines(draft: Draft) -> list[str]:
     for step in reversed(point_steps(plan.steps)):
         lines += backward(step, draft.counted)
     return _returned(lines, "x")
+
+
+def regular_lines(draft: Draft) -> list[str]:
+    """Source of the function that makes the rows regular."""
+    lines = [f"def regular{draft.suffix}(y):", '    """Put the rows in order, one for every stamp of the calendar."""']
+    for repair in draft.plan.repairs:
+        lines += _why(draft, repair) if not isinstance(repair, FillGaps) else []
+        match repair:
+            case ReadDates():
+                lines += ['    y = y.set_axis(pd.to_datetime(y.index, format="ISO8601"))']
+            case Sort():
+                lines += ["    y = y.sort_index()"]
+            case MergeDuplicates():
+                lines += ["    y = y.groupby(level=0).first()"]
+            case RegularCalendar(freq=freq, kind=kind):
+                lines += [f"    y = {_complete(freq, kind)}"]
+            case FillGaps():
+                pass
+            case _:
+                assert_never(repair)
+    last = lines.pop().removeprefix("    y = ")
+    return [*lines, f"    return {last}"]
+
+
+def _complete(freq: str | None, kind: str) -> str:
+    if kind == "numbers":
+        return "y.reindex(range(y.index[0], y.index[-1] + 1))"
+    if kind == "periods":
+        return f'y.reindex(pd.period_range(y.index[0], y.index[-1], freq="{freq}"))'
+    return f'y.asfreq("{freq}")'
 
 
 def fixed_part_lines(draft: Draft) -> list[str]:
@@ -218,7 +267,7 @@ def _chain(name: str, start: str, draft: Draft, lags: tuple[int, ...]) -> list[s
 
     Steps that mention the value once are written into one expression as long as it is short.
     """
-    templates = [_fill("{x}", "{x}", repair) for repair in draft.plan.repairs]
+    templates = [_fill("{x}", "{x}", repair) for repair in draft.fills]
     templates += [forward(step, draft.counted) for step in point_steps(draft.plan.steps)]
     templates += [f"{{x}}{_diff(lags)}"] if lags else []
     lines: list[str] = []

@@ -9,6 +9,8 @@ from collections.abc import Hashable
 import numpy as np
 import pandas as pd
 
+from preflight_magic.stamps import is_midnight
+
 WIDTH = 100
 
 
@@ -44,7 +46,7 @@ def stamp_literal(stamp: object) -> str:
         text = stamp.start_time.date().isoformat() if "/" in str(stamp) else str(stamp)
         return f'pd.Period("{text}", freq="{stamp.freqstr}")'
     if isinstance(stamp, pd.Timestamp):
-        plain = stamp.tz is None and stamp == stamp.normalize()
+        plain = stamp.tz is None and is_midnight(stamp)
         return f'pd.Timestamp("{stamp.date() if plain else stamp.isoformat()}")'
     return repr(int(stamp))  # type: ignore[call-overload]
 

@@ -15,16 +15,22 @@ from preflight_magic.model import (
     FillGaps,
     Log,
     Logit,
+    MergeDuplicates,
     PerDay,
     Power,
+    ReadDates,
+    RegularCalendar,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
     Repair,
+    Sort,
     Step,
 )
 from preflight_magic.plan.words import describe
 
+REPAIR_TYPES = (ReadDates, Sort, MergeDuplicates, RegularCalendar, FillGaps)
+"""In the order in which they are made."""
 STEP_TYPES = (PerDay, Log, Power, Logit, Difference, RemoveTrend, RemoveShift, RemovePattern)
 
 
@@ -58,12 +64,13 @@ def _rank(step: Step) -> tuple[int, int]:
 def validate(repairs: tuple[Repair, ...], steps: tuple[Step, ...]) -> None:
     """Raise a CheckError unless the repairs and steps can stand together in one plan."""
     for repair in repairs:
-        if not isinstance(repair, FillGaps):
-            raise CheckError(f"A plan repairs with FillGaps alone, not with {repair!r}.")
-        if not _count(repair.period, 1):
-            raise CheckError(f"FillGaps needs a whole period of at least 1, not {repair.period}; 1 means no season.")
-    if len(repairs) > 1:
-        raise CheckError("A plan fills gaps once; keep one FillGaps.")
+        _validate_repair(repair)
+    order = [REPAIR_TYPES.index(type(repair)) for repair in repairs]
+    if order != sorted(set(order)):
+        names = ", ".join(f"'{describe(repair)}'" for repair in repairs)
+        raise CheckError(
+            f"A plan makes each repair once, dates first, then order, duplicates, calendar and gaps, not {names}."
+        )
     for step in steps:
         _validate_step(step)
     bends = [step for step in steps if isinstance(step, Log | Power | Logit)]
@@ -78,8 +85,35 @@ def validate(repairs: tuple[Repair, ...], steps: tuple[Step, ...]) -> None:
         raise CheckError("A plan divides by days or by workdays, not by both; leave one PerDay out.")
 
 
+def _validate_repair(repair: Repair) -> None:
+    if type(repair) not in REPAIR_TYPES:
+        names = ", ".join(one.__name__ for one in REPAIR_TYPES)
+        raise CheckError(f"{repair!r} is not a repair of a plan; use one of {names}.")
+    match repair:
+        case FillGaps(period=period) if not _count(period, 1):
+            raise CheckError(f"FillGaps needs a whole period of at least 1, not {period!r}; 1 means no season.")
+        case RegularCalendar(freq=freq, kind=kind):
+            if kind not in ("dates", "periods", "numbers") or (freq is None) != (kind == "numbers"):
+                raise CheckError(f"RegularCalendar needs the frequency of dates or periods, not {freq!r} of {kind!r}.")
+            _validate_frequency(freq, kind)
+        case _:
+            pass
+
+
+def _validate_frequency(freq: str | None, kind: str) -> None:
+    if freq is None:
+        return
+    try:
+        if kind == "periods":
+            pd.PeriodDtype(freq)
+        else:
+            pd.tseries.frequencies.to_offset(freq)
+    except (ValueError, TypeError):
+        raise CheckError(f"RegularCalendar needs a frequency of pandas, such as 'MS', not {freq!r}.") from None
+
+
 def _count(value: object, least: int) -> bool:
-    return isinstance(value, int | np.integer) and int(value) >= least
+    return isinstance(value, int | np.integer) and not isinstance(value, bool) and int(value) >= least
 
 
 def _validate_step(step: Step) -> None:
@@ -93,9 +127,9 @@ def _validate_step(step: Step) -> None:
         case Logit(lower=lower, upper=upper) if not (math.isfinite(lower) and math.isfinite(upper) and lower < upper):
             raise CheckError(f"Logit needs a lower bound below a finite upper one, not {lower} and {upper}.")
         case Difference(lag=lag) if not _count(lag, 1):
-            raise CheckError(f"Difference needs a whole lag of at least 1, not {lag}.")
+            raise CheckError(f"Difference needs a whole lag of at least 1, not {lag!r}.")
         case RemovePattern(period=period) if not _count(period, 2):
-            raise CheckError(f"RemovePattern needs a whole period of at least 2, not {period}.")
+            raise CheckError(f"RemovePattern needs a whole period of at least 2, not {period!r}.")
         case RemoveShift(at=at) if not isinstance(at, pd.Period | pd.Timestamp | int | np.integer):
             raise CheckError(f"RemoveShift needs a period, a timestamp or an integer, not {at!r}.")
         case _:

@@ -63,7 +63,7 @@ class Plan:
         Parameters
         ----------
         series : Series, shape (n,)
-            Any numeric dtype, on a regular time index; missing values are allowed.
+            Any numeric dtype, on a regular time index or one that the repairs make regular; values may be missing.
         history : Series, optional
             What everything is estimated on, and where values before the start of `series` come from; by default
             the series itself.
@@ -71,7 +71,7 @@ class Plan:
         Returns
         -------
         Series, shape (n,)
-            float64 on the index of `series`; NaN where a value is missing or lost to differencing.
+            float64 on the index of `series`, after its repairs; NaN where a value is missing or lost to differencing.
 
         Raises
         ------

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import CheckError
+from preflight_magic.model import CheckError, FillGaps, Logit, MergeDuplicates, Power, ReadDates, RegularCalendar, Sort
 from preflight_magic.plan.literals import literal, plain
 from preflight_magic.plan.plan import Plan
 from preflight_magic.plan.points import point_steps
@@ -49,6 +49,9 @@ def prove(plan: Plan, source: str, series: pd.Series, horizon: int) -> None:
     expected = plan.apply(series)
     scale = _largest(Plan(plan.repairs, point_steps(plan.steps)).apply(series))
     _compare("prepare(y)", expected, lambda: prepare(series), scale, series)
+    messy = disordered(plan, series)
+    if messy is not None:
+        _compare("prepare(y) of an irregular index", plan.apply(messy), lambda: prepare(messy), scale, series)
     h = max(1, min(int(horizon), len(series) // 4))
     for what, wanted, run, size in _held_out(plan, prepare, restore, series, h):
         try:
@@ -57,6 +60,33 @@ def prove(plan: Plan, source: str, series: pd.Series, horizon: int) -> None:
             # The shorter history does not carry the plan (a gap at its end, too few values): nothing to compare.
             continue
         _compare(what, value, run, scale if size is None else max(size, _largest(value)), series)
+
+
+def disordered(plan: Plan, series: pd.Series) -> pd.Series | None:
+    """The series as its repairs might have found it; None where they leave the index alone.
+
+    Parameters
+    ----------
+    plan : Plan
+    series : Series, shape (n,)
+        On a regular index.
+    """
+    y = series
+    for repair in reversed(plan.repairs):
+        match repair:
+            case RegularCalendar():
+                kept = y.notna().to_numpy(copy=True)
+                kept[[0, -1]] = True
+                y = y[kept]
+            case MergeDuplicates():
+                y = pd.concat([y.iloc[:1], y])
+            case Sort():
+                y = y.iloc[::-1]
+            case ReadDates():
+                y = y.set_axis(pd.Index([stamp.isoformat() for stamp in y.index], name=y.index.name))
+            case FillGaps():
+                pass
+    return None if y is series else y
 
 
 def _held_out(
@@ -70,7 +100,7 @@ def _held_out(
         forecast = plan.apply(y, past).iloc[-h:]
     except CheckError:
         return
-    size = _largest(y)
+    size = max(_largest(y), _constant(plan))
     spread = float(np.nanvar(forecast)) if forecast.notna().any() else 0.0
     variance = pd.Series(np.linspace(0.1, 1.0, h) * (spread or 0.01), index=forecast.index)
     for given in (None, variance, float(variance.iloc[-1])):
@@ -122,6 +152,20 @@ def _largest(values: pd.Series) -> float:
     numbers = np.abs(values.to_numpy(dtype="float64", na_value=np.nan))
     numbers = numbers[np.isfinite(numbers)]
     return float(numbers.max()) if len(numbers) else 0.0
+
+
+def _constant(plan: Plan) -> float:
+    """Largest number that undoing a point step adds to a value: the value is rounded as that number is."""
+    sizes = [0.0]
+    for step in point_steps(plan.steps):
+        match step:
+            case Logit(lower=lower, upper=upper):
+                sizes += [abs(lower), abs(upper)]
+            case Power(offset=offset):
+                sizes.append(abs(offset))
+            case _:
+                pass
+    return max(sizes)
 
 
 def _fault(series: pd.Series, what: str) -> EmitError:

@@ -1,17 +1,18 @@
-"""Repairs: what makes the values of a series complete. They are never undone."""
+"""Filling gaps: what makes the values of a series complete. It is never undone."""
 
 from __future__ import annotations
 
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import Repair
+from preflight_magic.model import FillGaps, Repair
 
 
 def repaired(repairs: tuple[Repair, ...], x: pd.Series, history: pd.Series) -> pd.Series:
-    """Values of `x` (float64 on a regular index that contains the history's) after the repairs."""
+    """Values of `x` (float64 on a regular index that contains the history's) without gaps, where gaps are filled."""
     for repair in repairs:
-        x = fill_gaps(x, history, repair.period)
+        if isinstance(repair, FillGaps):
+            x = fill_gaps(x, history, repair.period)
     return x
 
 

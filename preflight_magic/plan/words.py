@@ -11,19 +11,24 @@ from preflight_magic.model import (
     FillGaps,
     Log,
     Logit,
+    MergeDuplicates,
     PerDay,
     Power,
+    ReadDates,
+    RegularCalendar,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
     Repair,
+    Sort,
     Step,
 )
+from preflight_magic.stamps import is_midnight
 
 
 def stamp_text(stamp: object) -> str:
     """Stamp in its series' own frequency: ``2021-03`` for a month, a date without a time of day that is zero."""
-    if isinstance(stamp, pd.Timestamp) and stamp == stamp.normalize():
+    if isinstance(stamp, pd.Timestamp) and is_midnight(stamp):
         return str(stamp.date())
     return str(stamp)
 
@@ -31,6 +36,14 @@ def stamp_text(stamp: object) -> str:
 def describe(step: Step | Repair) -> str:
     """Short text of one step or repair, such as ``difference 12``."""
     match step:
+        case ReadDates():
+            return "read dates"
+        case Sort():
+            return "sort"
+        case MergeDuplicates():
+            return "merge duplicates"
+        case RegularCalendar():
+            return "regular calendar"
         case FillGaps(period=period):
             return "fill gaps" if period == 1 else f"fill gaps {period}"
         case PerDay(unit=unit):

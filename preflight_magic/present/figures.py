@@ -109,7 +109,8 @@ def _correlogram(sheet: Sheet, picture: Picture, height: float) -> None:
     wide = WIDTH - _LAGS - 0.1
     panel = Panel(_LAGS, _BOTTOM, wide, height - _BOTTOM - 0.3, (0.3, nlags + 0.7), (-1.0, 1.0))
     lags = np.arange(1, nlags + 1)
-    if picture.correlogram_after is None:
+    # A series that the plan leaves without any change has no correlogram.
+    if picture.correlogram_after is None or len(picture.correlogram_after) != nlags:
         sheet.fills(_bars(panel, lags, picture.correlogram_before, 0.4))
     else:
         sheet.fills(_bars(panel, lags, picture.correlogram_before, 0.84), PALE)

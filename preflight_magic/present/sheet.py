@@ -80,6 +80,9 @@ class Sheet:
     def _add(self, artist: Artist) -> None:
         self._layer += 1
         artist.set_zorder(self._layer)
+        # A person's own settings of matplotlib (hand-drawn lines, TeX, fonts) are for their pictures.
+        artist.set_sketch_params(None)
+        artist.set_path_effects([])
         self.figure.add_artist(artist)
 
     def lines(
@@ -133,7 +136,7 @@ class Sheet:
         self._add(
             Text(
                 x, y, text, fontsize=size, color=color, horizontalalignment=across, verticalalignment="baseline",
-                transform=self.figure.dpi_scale_trans, parse_math=False,
+                transform=self.figure.dpi_scale_trans, parse_math=False, usetex=False, fontfamily="DejaVu Sans",
             )
         )  # fmt: skip
 

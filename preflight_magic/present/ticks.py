@@ -31,7 +31,7 @@ def time_ticks(index: pd.Index, most: int = 7) -> tuple[list[int], list[str]]:
         stamps = index.to_timestamp() if isinstance(index, pd.PeriodIndex) else index
     except (pd.errors.OutOfBoundsDatetime, OverflowError):
         return ends
-    hours = float(np.median(np.diff(stamps.to_numpy()) / np.timedelta64(1, "s"))) / 3600
+    hours = float(np.median(np.diff(stamps.tz_localize(None).to_numpy()) / np.timedelta64(1, "s"))) / 3600
     for unit, every in _SPANS:
         if hours > 1.01 * _HOURS[unit] * (1.2 if unit == "month" else 1):
             continue

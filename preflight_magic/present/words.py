@@ -17,13 +17,17 @@ from preflight_magic.model import (
     HypothesisTest,
     Log,
     Logit,
+    MergeDuplicates,
     PerDay,
     Power,
+    ReadDates,
+    RegularCalendar,
     RemovePattern,
     RemoveShift,
     RemoveTrend,
     Repair,
     Root,
+    Sort,
     Step,
     Verdict,
 )
@@ -79,7 +83,9 @@ def number(value: float, digits: int = 3) -> str:
     sign = MINUS if value < 0 else ""
     if not 1e-4 <= size < 1e9:
         mantissa, exponent = f"{size:.{digits - 1}e}".split("e")
-        return f"{sign}{_short(mantissa, size / 10.0 ** int(exponent))}e{int(exponent)}".replace("e-", f"e{MINUS}")
+        # A power of ten below 1e-308 is no number, so the digits are read from the text.
+        short = _short(mantissa, float(f"{size:.15e}".split("e")[0]))
+        return f"{sign}{short}e{int(exponent)}".replace("e-", f"e{MINUS}")
     decimals = max(0, digits - 1 - math.floor(math.log10(float(f"{size:.{digits - 1}e}"))))
     return f"{sign}{_short(f'{size:,.{decimals}f}', size)}"
 
@@ -162,6 +168,14 @@ def verdict_text(verdict: Verdict) -> str:
 def meaning(step: Step | Repair, noun: str = "step") -> str:
     """What a step or repair does, in a few words."""
     match step:
+        case ReadDates():
+            return "stamps read as dates"
+        case Sort():
+            return "rows put in the order of their stamps"
+        case MergeDuplicates():
+            return "rows with the same stamp and the same value made one"
+        case RegularCalendar():
+            return f"a row for every {noun}, without a value where there was none"
         case FillGaps(period=period):
             pattern = "" if period == 1 else f", after taking out the mean pattern of {count_of(period, noun)}"
             return f"missing values on a straight line{pattern}"

@@ -2,7 +2,17 @@
 
 from __future__ import annotations
 
-from preflight_magic.model import Evidence, Judgement, TimeSeries
+from preflight_magic.model import (
+    Evidence,
+    FillGaps,
+    Judgement,
+    MergeDuplicates,
+    ReadDates,
+    RegularCalendar,
+    Repair,
+    Sort,
+    TimeSeries,
+)
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context, Rung
 from preflight_magic.stamps import stamp_text
@@ -12,6 +22,14 @@ METHOD = (
     "the one that was asked for, or else that of the calendar: 12 for months, 4 for quarters, 52 for weeks, 7 for "
     "days, 5 for business days, 24 and 168 for hours, as far as the series is long enough to show it."
 )
+
+
+_DONE: dict[type[Repair], str] = {
+    ReadDates: "the stamps were read as dates",
+    Sort: "the rows were sorted",
+    MergeDuplicates: "repeated rows were made one",
+    RegularCalendar: "missing stamps were put in",
+}
 
 
 def examine(series: TimeSeries, context: Context) -> Evidence:
@@ -38,15 +56,20 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
         "n": len(index),
         "season": series.season,
         "season_asked": context.settings.season is not None,
-        "repairs": tuple(
-            f"fill gaps along the mean pattern of {repair.period}" if repair.period > 1 else "fill gaps"
-            for repair in series.repairs
-        ),
+        "repairs": tuple(_text(repair) for repair in series.repairs),
         "notes": series.notes,
     }
     if len(index):
         measures |= {"start": stamp_text(index[0], kind), "end": stamp_text(index[-1], kind)}
     return Evidence(measures)
+
+
+def _text(repair: Repair) -> str:
+    match repair:
+        case FillGaps(period=period):
+            return f"fill gaps along the mean pattern of {period}" if period > 1 else "fill gaps"
+        case _:
+            return _DONE[type(repair)]
 
 
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
@@ -72,7 +95,13 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         reason = f"The seasonal period is the one {whence}."
         if len(season) > 1:
             reason = f"The seasonal periods are those {whence}."
-    return Judgement("clear", headline, f"The index is sorted, unique and regular. {_sentence(reason)}")
+    repairs = found["repairs"]
+    assert isinstance(repairs, tuple)
+    done = [told for told in repairs if told in _DONE.values()]
+    regular = "The index is sorted, unique and regular."
+    if done:
+        regular = f"The index had to be made regular: {', '.join(done)}."
+    return Judgement("clear", headline, f"{regular} {_sentence(reason)}")
 
 
 def _sentence(text: str) -> str:

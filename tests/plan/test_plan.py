@@ -126,8 +126,8 @@ def test_leaving_out_what_is_not_there(step, words):
         ((), (Logit(1.0, 1.0),), "lower bound below"),
         ((), ("log",), "is not a step"),
         ((FillGaps(0),), (), "period of at least 1"),
-        ((FillGaps(1), FillGaps(12)), (), "fills gaps once"),
-        ((Log(),), (), "repairs with FillGaps alone"),
+        ((FillGaps(1), FillGaps(12)), (), "each repair once"),
+        ((Log(),), (), "is not a repair"),
     ],
 )
 def test_what_cannot_stand_together(repairs, steps, words):

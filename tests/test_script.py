@@ -104,6 +104,15 @@ def test_quarters(folder, capsys, text, kind):
     assert calendar.kind == kind
 
 
+@pytest.mark.parametrize(("mark", "noun"), [(";", "semicolons"), ("\t", "tabs")])
+def test_other_marks_between_columns_are_named(folder, capsys, mark, noun):
+    table().to_csv("marks.csv", sep=mark, decimal=",", index_label="month")
+    status, _, err = run(capsys, "marks.csv")
+    assert status == WRONG
+    assert f"'marks.csv' has {noun} between its columns" in err
+    assert f"sep={mark!r}" in err
+
+
 def test_numbered_rows_and_their_spans(folder, capsys):
     table().reset_index(drop=True).rename_axis("row").to_csv("n.csv")
     assert run(capsys, "n.csv", "--only", "walk", "--exclude", "3..5", "--save", "a.json")[0] == SAME

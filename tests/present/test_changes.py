@@ -22,6 +22,13 @@ def test_plans_that_stand_are_only_counted() -> None:
     assert changes_text(table.iloc[:1]) == "Against the earlier report: the plan stands."
 
 
+def test_what_was_and_is_infeasible_is_only_counted() -> None:
+    table = changes(("flag", "stands", "", "text."), ("walk", "stands", "log", "The data now lean."))
+    table["verdict_now"] = ["infeasible", "transform"]
+    assert "flag" not in changes_text(table)
+    assert "walk" in changes_text(table)
+
+
 def test_others_are_told() -> None:
     table = changes(("calm", "stands", "log", ""), ("jump", "changed", "difference 1", "since 2020-03."),
                     ("lean", "stands", "as given", "The data now lean."))  # fmt: skip

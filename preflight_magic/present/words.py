@@ -30,7 +30,7 @@ from preflight_magic.model import (
     Step,
     Verdict,
 )
-from preflight_magic.plan.words import stamp_text
+from preflight_magic.stamps import stamp_text
 
 MINUS = "\u2212"
 NONE = "\u2013"

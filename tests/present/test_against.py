@@ -6,7 +6,7 @@ import pandas as pd
 import pytest
 
 from preflight_magic.against import COLUMNS
-from preflight_magic.present.changes import MOST_ROWS, changes_html, changes_text
+from preflight_magic.present.against import MOST_ROWS, changes_html, changes_text
 
 
 def changes(*rows: tuple[object, str, str, str]) -> pd.DataFrame:

@@ -92,7 +92,7 @@ def _run(given: argparse.Namespace) -> int:
 
 def _text(report: Report) -> str:
     from preflight_magic.present.changes import changes_text
-    from preflight_magic.present.make_cards import overview
+    from preflight_magic.present.make_overview import overview
     from preflight_magic.present.text import overview_text
 
     shown = overview_text(overview(report))

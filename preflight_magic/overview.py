@@ -47,7 +47,7 @@ def row_of(report: SeriesReport) -> dict[str, object]:
     seasonal = sum(lag == period and lag > 1 for lag in lags)
     pattern = any(isinstance(step, RemovePattern) for step in steps)
     power = next((step.exponent for step in steps if isinstance(step, Power)), 0.0 if Log() in steps else 1.0)
-    trend = RemoveTrend() in steps
+    trend, span = RemoveTrend() in steps, report.span
     if len(lags) == 1:
         finding = report.findings.get("shift and trend")
         shares = finding.measures.get("trend_shares") if finding else None
@@ -63,7 +63,7 @@ def row_of(report: SeriesReport) -> dict[str, object]:
         "D": seasonal,
         "d": len(lags) - seasonal,
         "period": period,
-        "n": report.span.n - report.span.missing,
-        "missing": report.span.missing,
+        "n": span.n - span.missing,
+        "missing": span.missing,
         "note": note_of(report.findings),
     }

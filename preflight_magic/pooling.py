@@ -167,8 +167,6 @@ def _refusal(pool: object, error: Exception) -> str:
         return f"pool is a {kind} that has lost a worker and takes no more work; make a new one."
     if isinstance(error, RuntimeError) and "shutdown" in str(error):
         return f"pool is a {kind} that is already shut down; make a new one, and check before it is closed."
-    if not callable(getattr(pool, "submit", None)):
-        return f"pool is of type {kind}, not an executor of concurrent.futures; give for example ProcessPoolExecutor()."
     said = " ".join(str(error).split())
     return f"pool is a {kind} that takes no work ({type(error).__name__}: {said}); make a new one, or leave pool out."
 

@@ -15,8 +15,8 @@ from preflight_magic.stamps import stamp_text
 if TYPE_CHECKING:
     from preflight_magic.series_report import SeriesReport
 
-_FURTHEST = 1_000_000
-"""Steps ahead beyond which a forecast is refused: it would fill the memory, and say nothing."""
+_FURTHEST = 10_000
+"""Steps ahead beyond which a forecast is refused: it takes memory by their square, and says nothing."""
 _ONE_DEVIATION = 0.6827
 """Probability of an interval of one standard deviation on each side."""
 _AGREEMENT = 0.25

@@ -2,15 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import replace
 from functools import cached_property
+from typing import Any
 
 import pandas as pd
 
+from preflight_magic.changes import with_season, without_span
 from preflight_magic.generated import code_of
 from preflight_magic.ladder import climb
-from preflight_magic.model import CheckError, Step
+from preflight_magic.model import CheckError, Step, TimeSeries
 from preflight_magic.plan.plan import Plan
+from preflight_magic.policy import Settings
 from preflight_magic.proof_result import Proof
 from preflight_magic.reference import reference_forecast
 from preflight_magic.root_intervals import root_intervals
@@ -146,6 +150,19 @@ class SeriesReport(SeriesFacts):
         SeriesReport
         """
         return self._again(lambda plan: Plan(plan.repairs, tuple(steps)), chosen)
+
+    def with_season(self, season: int | Sequence[int]) -> SeriesReport:
+        """Check the series anew with other seasonal periods, in steps; 1 for none. The plan is the one that follows."""
+        source = with_season(self._source, season)
+        return self._anew(source, replace(self._settings, season=source.season))
+
+    def without_span(self, start: Any, end: Any) -> SeriesReport:
+        """Check the series anew with the values from start to end, both included, treated as missing."""
+        exclude = (*self._settings.exclude, (start, end))
+        return self._anew(without_span(self._source, start, end), replace(self._settings, exclude=exclude))
+
+    def _anew(self, source: TimeSeries, settings: Settings) -> SeriesReport:
+        return SeriesReport(source, settings, climb(source, settings))
 
     def _again(self, change: Callable[[Plan], Plan], chosen: Chosen = "person") -> SeriesReport:
         if self.problem is not None:

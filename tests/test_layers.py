@@ -16,13 +16,13 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
-REPORT = {"answer", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
+REPORT = {"answer", "changes", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
 REPORT |= {"reference", "reference_mixture", "reference_parts", "root_intervals", "together", "together_words"}
 REPORT |= {"proof", "proof_result", "proof_words"}
 REPORT |= {"record", "against", "group", "standing", "series_facts"}
 REPORT |= {"packing", "pooling", "overview_file", "triage", "estimate"}
 SHARED = {"kernels.plan_likelihood", "kernels.restricted_likelihood"}
-SHELL = {"command_line", "completion", "magic", "named"}
+SHELL = {"command_line", "completion", "cell_value", "magic", "named"}
 
 # Part: what it may import from the package, and from outside the standard library. Imports inside functions and those
 # for annotations alone count too. An entry allows the module and everything below it.
@@ -45,6 +45,7 @@ LAYERS: dict[str, tuple[set[str], set[str]]] = {
     "command_line": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "named": (NOUNS | SHELL | {"report", "batch", "intake", "policy", "record"}, {"IPython"}),
     "completion": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
+    "cell_value": (NOUNS | SHELL | {"report", "batch", "intake", "policy"}, {"IPython"}),
     "__main__": (NOUNS | {"report", "batch", "intake", "policy", "record", "against", "present"}, {"pandas"}),
     "": (CHECKS | SHELL | {"demo"} | REPORT, set()),
 }

@@ -276,7 +276,7 @@ def test_pool_that_has_lost_a_worker():
 
 
 def test_pool_that_is_none():
-    with pytest.raises(pf.CheckError, match="pool is of type int, not an executor"):
+    with pytest.raises(pf.CheckError, match="pool is 4, not an executor"):
         pf.check(table(2), pool=4, cache=False, progress=False)
 
 

@@ -280,3 +280,20 @@ def test_stamps_at_the_ends_of_time_are_refused_at_once(index, told):
     with pytest.raises(pf.CheckError, match=told) as caught:
         check(on(index).groupby(level=0).transform("first"))
     assert len(str(caught.value)) < 500
+
+
+@pytest.mark.parametrize("what", MENDED)
+def test_repairs_go_through_a_record(what, tmp_path):
+    given, _, _ = MENDED[what]
+    report = check(given, **season(given))
+    report.save(tmp_path / "report.json")
+    loaded = pf.load(tmp_path / "report.json")
+    assert loaded["berths"].plan == report["berths"].plan
+    assert loaded.attach(given.to_frame())["berths"].plan == report["berths"].plan
+
+
+@pytest.mark.parametrize("freq", ["nonsense", "MS\n", 'MS"); boom(); ("', "", 5, None, "MS" * 20])
+@pytest.mark.parametrize("kind", ["dates", "periods"])
+def test_a_calendar_needs_a_frequency_that_can_be_written_into_code(freq, kind):
+    with pytest.raises(pf.CheckError, match="RegularCalendar needs"):
+        pf.Plan((pf.RegularCalendar(freq, kind),))

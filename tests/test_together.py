@@ -14,7 +14,7 @@ from traitlets.config import Config
 import preflight_magic as pf
 from preflight_magic.magic import check_series
 from preflight_magic.model import Finding
-from preflight_magic.present import make_cards
+from preflight_magic.present import make_overview
 from preflight_magic.present.html import overview_html
 from preflight_magic.present.text import overview_text
 
@@ -126,7 +126,7 @@ def test_missing_values_and_other_spans() -> None:
 
 def test_it_is_shown_in_text_and_html() -> None:
     report = pf.check(frame()[["tickets", "fuel"]], season=1, target="tickets", progress=False)
-    card = make_cards.overview(report)
+    card = make_overview.overview(report)
     assert "May the other series explain 'tickets' as they are?" in " ".join(overview_text(card).split())
     assert "spurious regression threatens" in overview_html(card)
     assert list(report.overview.columns)[-1] == "note"

@@ -27,6 +27,8 @@ _T3 = float(np.log(2.0 / (np.pi * np.sqrt(3.0))))
 _ORDERS = len(FIRST_ORDERS) + len(FURTHER_ORDERS)
 _HOPELESS = 12.0
 """Log evidence behind the best plan so far from which the larger ARMA orders of a plan are not tried."""
+_SHORT, _LONG_ENOUGH = 30, 48
+"""Values up to which, and from which on, a series is taken for a short one in the prior of a difference."""
 _NEGLIGIBLE = 7.0
 """Log evidence behind the leading order from which an order adds less than a thousandth."""
 
@@ -46,6 +48,9 @@ class PlanPrior:
     difference, second, wandering, both : float
         Log odds against a first difference, a second one on top of it, a seasonal difference alone where there is a
         season, and a seasonal with an ordinary one.
+    short : float
+        What is taken off the log odds against a first difference in a series of at most 30 values; less in longer
+        ones, and nothing from 48 on.
     slope : float
         Scale of the prior of the slope a step, in units of the spread of the first differences.
     outlier_bound : float
@@ -60,14 +65,16 @@ class PlanPrior:
     second: float
     wandering: float
     both: float
+    short: float
     slope: float
     outlier_bound: float
 
-    def of_differences(self, d: int, D: int) -> float:
-        """Log odds against d ordinary and D seasonal differences."""
+    def of_differences(self, d: int, D: int, count: int) -> float:
+        """Log odds against d ordinary and D seasonal differences of a series of so many values."""
         if D:
             return self.both if d else self.wandering
-        return self.difference * (d > 0) + self.second * (d > 1)
+        shortness = min(max((_LONG_ENOUGH - count) / (_LONG_ENOUGH - _SHORT), 0.0), 1.0)
+        return (self.difference - self.short * shortness) * (d > 0) + self.second * (d > 1)
 
 
 @dataclass(frozen=True)
@@ -105,11 +112,15 @@ class Candidate:
 
 @dataclass(frozen=True)
 class Subject:
-    """What all plans of one series share: the series in levels, the prior, and the spread of its first differences."""
+    """What all plans of one series share.
+
+    The series in levels, the prior, the spread of its first differences, and how many of its values are missing.
+    """
 
     levels: Levels
     prior: PlanPrior
     spread: float
+    gaps: int
 
 
 @dataclass(frozen=True)
@@ -187,7 +198,7 @@ def assess(
     leading = max(fits, key=lambda one: one.evidence)
     prior = subject.prior
     evidence = float(logsumexp([one.evidence for one in fits]) - np.log(_ORDERS))
-    evidence -= prior.of_differences(d, D)
+    evidence -= prior.of_differences(d, D, n - subject.gaps)
     free_trend = trend and d + D < 2
     trend_t = shift_t = float("nan")
     if free_trend or dated:

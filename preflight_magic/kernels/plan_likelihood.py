@@ -147,7 +147,9 @@ def _best_plans(x: Array, period: int, prior: PlanPrior) -> _Found | None:
     seen = np.isfinite(x)
     filled = np.where(seen, x, np.interp(np.arange(n), np.flatnonzero(seen), x[seen]))
     levels = Levels(filled, period if pattern else 1, True, pattern, missing_columns(x))
-    assessed, dates = _assessed(Subject(levels, prior, _spread_of_changes(filled, levels.period)), x)
+    assessed, dates = _assessed(
+        Subject(levels, prior, _spread_of_changes(filled, levels.period), int(n - seen.sum())), x
+    )
     return _Found(tuple(assessed), dates, presence) if assessed else None
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Iterable
 from typing import assert_never
 
@@ -104,6 +105,9 @@ def _validate_frequency(freq: str | None, kind: str) -> None:
     if freq is None:
         return
     try:
+        # It is written into code, so nothing but letters, digits and a dash may be in it.
+        if not re.fullmatch(r"[0-9A-Za-z-]{1,20}", freq):
+            raise ValueError
         if kind == "periods":
             pd.PeriodDtype(freq)
         else:

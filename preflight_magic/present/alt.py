@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -11,7 +12,7 @@ import pandas as pd
 from preflight_magic.present import words
 
 if TYPE_CHECKING:
-    from preflight_magic.present.cards import OverviewRow, Picture, RootsPicture
+    from preflight_magic.present.cards import HalvesPicture, OverviewRow, Picture, PlanRow, ProofCard, RootsPicture
 
 
 def before_after_alt(picture: Picture) -> str:
@@ -67,11 +68,44 @@ def roots_alt(picture: RootsPicture) -> str:
     return " ".join(parts)
 
 
-def spark_alt(row: OverviewRow) -> str:
-    """Range of a small picture."""
-    values = row.values[np.isfinite(row.values)]
+def plans_alt(rows: Sequence[PlanRow]) -> str:
+    """Odds against the plans that come next to the best."""
+    told = [f"{row.text}, {row.odds}{' (shown)' if row.shown else ''}" for row in rows[:4]]
+    more = f"; and {len(rows) - 4} more" if len(rows) > 4 else ""
+    return f"Odds of the best plan against each of {len(rows)} plans: {'; '.join(told)}{more}."
+
+
+def halves_alt(picture: HalvesPicture) -> str:
+    """Each moment in the first and in the second half, and how far apart they lie."""
+    told = [
+        f"{name} {words.number(first)} and {words.number(second)}, {words.number(z, 2)} standard errors apart"
+        for name, first, second, z in picture.moments
+    ]
+    since = words.stamp(picture.second_from, picture.noun)
+    return f"First half and second half (from {since}) of the transformed series: {'; '.join(told)}."
+
+
+def proof_alt(proof: ProofCard) -> str:
+    """Error of each forecast, and its range over the origins."""
+    told = []
+    for row in proof.rows[:6]:
+        seen = [one for one in row.at_origins if math.isfinite(one)]
+        spread = f" ({words.number(min(seen))} to {words.number(max(seen))})" if seen else ""
+        told.append(f"{row.forecast} {words.number(row.error)}{spread}")
+    return f"Mean absolute scaled errors, {proof.origins}: {'; '.join(told)}."
+
+
+def spark_alts(row: OverviewRow) -> tuple[str, str]:
+    """Ranges of both small pictures of a row; the second is empty where there is none."""
+    before = _spark_alt(row.values)
+    after = "" if row.after is None else f"after the plan: {_spark_alt(row.after)}"
+    return (f"{row.span}: {before}" if before != "no picture" else before), after
+
+
+def _spark_alt(values: np.ndarray) -> str:
+    values = values[np.isfinite(values)]
     if len(values) < 2:
         return "no picture"
     low, high = words.number(float(values.min())), words.number(float(values.max()))
     first, last = words.number(float(values[0])), words.number(float(values[-1]))
-    return f"{row.span}: from {first} to {last}, between {low} and {high}"
+    return f"from {first} to {last}, between {low} and {high}"

@@ -53,11 +53,30 @@ class RungCard:
 
 @dataclass(frozen=True)
 class PlanRow:
-    """A candidate plan and the odds of the best plan against it."""
+    """A candidate plan and the odds of the best plan against it, in words and as natural logarithm."""
 
     text: str
     odds: str
+    below: float
     shown: bool
+
+
+@dataclass(frozen=True)
+class Change:
+    """What is different from the recommendation: what, what it was, what it is."""
+
+    what: str
+    before: str
+    after: str
+
+
+@dataclass(frozen=True)
+class CodeForm:
+    """Code in one form: pandas, or arguments of a model; without source `problem` says why."""
+
+    title: str
+    source: str
+    problem: str | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -86,8 +105,40 @@ class RootsPicture:
 
 
 @dataclass(frozen=True, eq=False)
+class HalvesPicture:
+    """Numbers of the picture of both halves; `moments` are name, first half, second half, and z of the difference."""
+
+    after: pd.Series
+    second_from: object
+    moments: tuple[tuple[str, float, float, float], ...]
+    noun: str
+
+
+@dataclass(frozen=True)
+class ProofLine:
+    """One way to forecast; `error` and `at_origins` are mean absolute scaled errors, NaN where there is none."""
+
+    forecast: str
+    error: float
+    ratio: str
+    coverage: str
+    p: str
+    at_origins: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class ProofCard:
+    """Forecasts from the past, the plan first; `origins` tells in words where they start and how far they reach."""
+
+    rows: tuple[ProofLine, ...]
+    sentences: tuple[str, ...]
+    origins: str
+    problem: str | None
+
+
+@dataclass(frozen=True, eq=False)
 class Card:
-    """Everything that is shown of one series."""
+    """Everything that is shown of one series; `yours` tells season and spans that a person chose."""
 
     name: Hashable
     verdict: Verdict
@@ -96,36 +147,44 @@ class Card:
     problem: str | None
     repairs: tuple[StepMark, ...] = ()
     steps: tuple[StepMark, ...] = ()
-    switched: bool = False
+    yours: str = ""
+    changes: tuple[Change, ...] = ()
     picture: Picture | None = None
     roots: RootsPicture | None = None
+    halves: HalvesPicture | None = None
+    proof: ProofCard | None = None
     rungs: tuple[RungCard, ...] = ()
     plans: tuple[PlanRow, ...] = ()
-    code: str | None = None
-    code_problem: str | None = None
+    codes: tuple[CodeForm, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
 class OverviewRow:
-    """One series in a line; `values` are those of its small picture, `rungs` question, verdict and headline."""
+    """One series in a line; `values` and `after` are those of its small pictures, `after` None without steps.
 
+    `position` is its place in the report, `rungs` holds question, verdict and headline.
+    """
+
+    position: int
     name: Hashable
     verdict: Verdict
     plan: str
     note: str
     values: np.ndarray
+    after: np.ndarray | None
     span: str
     rungs: tuple[tuple[str, Verdict, str], ...]
 
 
 @dataclass(frozen=True, eq=False)
 class OverviewCard:
-    """All series of a report, or the first of very many; `left_out` counts the others, `counts` all of them.
+    """Some or all series of a report.
 
-    `together` says whether the others may explain a target; empty without one.
+    `counts` counts the verdicts of all, `part` says which are shown and how; `together` says whether the others may
+    explain a target, and is empty without one.
     """
 
     counts: tuple[tuple[Verdict, int], ...]
     rows: tuple[OverviewRow, ...]
-    left_out: int = 0
+    part: str
     together: str = ""

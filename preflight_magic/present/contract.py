@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable, Mapping, Sequence
-from typing import TYPE_CHECKING, Protocol, runtime_checkable
+from collections.abc import Hashable, Iterable, Mapping, Sequence
+from typing import TYPE_CHECKING, Any, Protocol, runtime_checkable
 
 if TYPE_CHECKING:
     import numpy as np
@@ -22,6 +22,58 @@ class PlanView(Protocol):
     @property
     def steps(self) -> tuple[Step, ...]:
         """Transforms that can be undone."""
+
+
+class ProofRowView(Protocol):
+    """Errors of one way to forecast from past origins."""
+
+    @property
+    def forecast(self) -> str:
+        """Its name; the plan comes first."""
+
+    @property
+    def mase(self) -> float:
+        """Mean absolute scaled error, over origins and steps."""
+
+    @property
+    def coverage(self) -> float:
+        """Share of the values inside the 90 % interval."""
+
+    @property
+    def ratio(self) -> float:
+        """Error over that of the plan."""
+
+    @property
+    def p_value(self) -> float:
+        """Of a test against the plan; NaN where there is none."""
+
+
+class ProofView(Protocol):
+    """Forecasts of a series from past origins."""
+
+    @property
+    def horizon(self) -> int:
+        """Steps ahead."""
+
+    @property
+    def origins(self) -> Sequence[object]:
+        """Last stamp of each training part."""
+
+    @property
+    def rows(self) -> Sequence[ProofRowView]:
+        """The plan first."""
+
+    @property
+    def by_origin(self) -> Mapping[str, Sequence[float]]:
+        """Forecast -> error at each origin."""
+
+    @property
+    def sentences(self) -> Sequence[str]:
+        """What follows."""
+
+    @property
+    def problem(self) -> str | None:
+        """Why nothing could be computed, or None."""
 
 
 class SeriesView(Protocol):
@@ -64,6 +116,10 @@ class SeriesView(Protocol):
         """A step of the calendar: ``month``."""
 
     @property
+    def season(self) -> tuple[int, ...]:
+        """Seasonal periods considered, shortest first; (1,) for none."""
+
+    @property
     def alternatives(self) -> tuple[tuple[str, float, tuple[Step, ...]], ...]:
         """Candidate plans as (text, natural log of the odds of the best against it, steps)."""
 
@@ -75,17 +131,24 @@ class SeriesView(Protocol):
     def problem(self) -> str | None:
         """Why the series cannot be checked, or None."""
 
+    @property
+    def proof(self) -> ProofView:
+        """Forecasts from the past, computed when first asked for: this takes seconds."""
+
     def correlograms(self, nlags: int) -> tuple[np.ndarray, np.ndarray, float]:
         """Autocorrelations as given and transformed at lags 1 ... nlags, and half the width of the 95 % band."""
 
     def code(self, form: str = "pandas") -> str:
         """Python source of the plan."""
 
-    def leave_out(self, step: Step) -> SeriesView:
-        """The series examined again without this step."""
+    def with_plan(self, steps: Iterable[Step]) -> SeriesView:
+        """The series examined again with these steps; the recommendation stays what it was."""
 
-    def put_in(self, step: Step) -> SeriesView:
-        """The series examined again with this step, in canonical order."""
+    def with_season(self, season: int | Sequence[int]) -> SeriesView:
+        """The series checked anew with other seasonal periods, with the plan that is recommended then."""
+
+    def without_span(self, start: Any, end: Any) -> SeriesView:
+        """The series checked anew without the values from start to end, both included."""
 
 
 @runtime_checkable

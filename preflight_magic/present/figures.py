@@ -1,8 +1,7 @@
-"""The first picture of a card, and the small pictures of an overview."""
+"""The first picture of a card: the series before and after its plan, and the correlogram of both."""
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,7 +11,6 @@ from preflight_magic.present import words
 from preflight_magic.present.sheet import (
     DASHED,
     DOTTED,
-    DPI,
     FAINT,
     HAIR,
     INK,
@@ -21,7 +19,6 @@ from preflight_magic.present.sheet import (
     WASH,
     Panel,
     Sheet,
-    encode,
     runs,
 )
 from preflight_magic.present.ticks import lag_ticks, time_ticks, value_ticks
@@ -59,7 +56,7 @@ def before_after(picture: Picture) -> bytes:
         sheet.base(given, ticks, None)
         after = picture.after.reindex(index)
         middle = float(picture.after.mean())
-        below = _series(sheet, after, (_BOTTOM, 0.96), _cut(f"after: {picture.plan}", 64), middle)
+        below = _series(sheet, after, (_BOTTOM, 0.96), cut(f"after: {picture.plan}", 64), middle)
         sheet.base(below, ticks, labels)
     for at in picture.shifts:
         _mark_shift(sheet, given, index, at)
@@ -68,7 +65,8 @@ def before_after(picture: Picture) -> bytes:
     return sheet.png()
 
 
-def _cut(text: str, most: int) -> str:
+def cut(text: str, most: int) -> str:
+    """Text of at most `most` characters."""
     return text if len(text) <= most else text[: most - 1].rstrip(" ,") + "\u2026"
 
 
@@ -146,50 +144,3 @@ def _bars(panel: Panel, lags: np.ndarray, heights: np.ndarray, width: float) -> 
         for a, b, z, h in zip(left, right, zero, heights, strict=True)
         if np.isfinite(h)
     ]
-
-
-def sparklines(many: Sequence[np.ndarray], width: int = 180, height: int = 42) -> list[bytes]:
-    """Small pictures of series, drawn together on one sheet and cut apart, so that each costs about a millisecond.
-
-    Parameters
-    ----------
-    many : sequence of arrays
-        Values, NaN where one is missing.
-    width, height : int
-        Size in dots.
-
-    Returns
-    -------
-    list of bytes
-        PNG of each, background transparent.
-    """
-    pieces: list[bytes] = []
-    for start in range(0, len(many), 100):
-        some = many[start : start + 100]
-        sheet = Sheet(width / DPI, len(some) * height / DPI)
-        lines = [line for row, values in enumerate(some) for line in _spark(values, len(some) - 1 - row, width, height)]
-        sheet.lines([line / DPI for line in lines], 1.0)
-        dots = sheet.dots()
-        pieces += [encode(dots[row * height : (row + 1) * height]) for row in range(len(some))]
-    return pieces
-
-
-def _spark(values: np.ndarray, row: int, width: int, height: int) -> list[np.ndarray]:
-    values = _thin(values, width) if len(values) > 4 * width else values
-    seen = np.isfinite(values)
-    if seen.sum() < 2:
-        return []
-    low, high = float(values[seen].min()), float(values[seen].max())
-    scaled = (values - low) / (high - low) if high > low else np.where(seen, 0.5, np.nan)
-    y = row * height + 4 + scaled * (height - 8)
-    x = np.linspace(2, width - 2, len(values))
-    return [np.column_stack([x[a:b], y[a:b]]) for a, b in runs(seen) if b - a > 1]
-
-
-def _thin(values: np.ndarray, width: int) -> np.ndarray:
-    """Least and greatest of each of `width` pieces: more points than dots cannot be told apart."""
-    kept: list[float] = []
-    for piece in np.array_split(values, width):
-        seen = piece[np.isfinite(piece)]
-        kept += [float(seen.min()), float(seen.max())] if len(seen) else [np.nan, np.nan]
-    return np.array(kept)

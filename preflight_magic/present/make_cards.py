@@ -5,18 +5,28 @@ from __future__ import annotations
 import math
 from collections import Counter
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Literal, cast
 
 import numpy as np
 import pandas as pd
 
-from preflight_magic.model import Difference, Finding, HypothesisTest, RemovePattern, RemoveShift, Root, Step
+from preflight_magic.model import (
+    CheckError,
+    Difference,
+    Finding,
+    HypothesisTest,
+    RemovePattern,
+    RemoveShift,
+    Root,
+    Step,
+)
 from preflight_magic.plan.words import describe
 from preflight_magic.present import words
 from preflight_magic.present.cards import (
     Card,
-    OverviewCard,
-    OverviewRow,
+    CodeForm,
+    HalvesPicture,
     Picture,
     PlanRow,
     RootsPicture,
@@ -24,26 +34,29 @@ from preflight_magic.present.cards import (
     StepMark,
     TestRow,
 )
+from preflight_magic.present.make_changes import changes
 from preflight_magic.present.measures import measure_rows
 
 if TYPE_CHECKING:
-    from preflight_magic.present.contract import ReportView, SeriesView
+    from preflight_magic.present.contract import SeriesView
 
-OVERVIEW_ROWS = 60
+FORMS = {"pandas": "Code for pandas", "model": "Code for a model, which gets the plan as its arguments"}
+"""Forms of the code that are shown, and the words above each."""
 
 
 # ------------------------------------------------------------------------------------------------ one series
-def card(view: SeriesView, recommended: SeriesView | None = None) -> Card:
-    """Card of one series.
+def card(view: SeriesView, recommended: SeriesView | None = None, asked: str = "") -> Card:
+    """Card of one series, without its code: that is not needed for the first picture.
 
     Parameters
     ----------
     view : SeriesView
         With the plan that is shown.
     recommended : SeriesView, optional
-        The same series with the recommended plan, to say which findings changed.
+        The same series with the recommended plan, to say what changed.
+    asked : str
+        Season and spans that a person chose, as whole sentences.
     """
-    code, code_problem = _code(view)
     return Card(
         name=view.name,
         verdict=view.verdict,
@@ -52,13 +65,13 @@ def card(view: SeriesView, recommended: SeriesView | None = None) -> Card:
         problem=None if view.problem is None else words.sentence(view.problem),
         repairs=tuple(StepMark(describe(r), words.meaning(r, view.noun)) for r in view.plan.repairs),
         steps=step_marks(view),
-        switched=view.plan.steps != view.recommended.steps,
+        yours=asked,
+        changes=() if recommended is None else changes(view, recommended),
         picture=_picture(view),
         roots=_roots(view),
+        halves=_halves(view),
         rungs=_rungs(view, recommended),
         plans=_plans(view),
-        code=code,
-        code_problem=code_problem,
     )
 
 
@@ -94,13 +107,20 @@ def _mark(view: SeriesView, step: Step, state: Literal["kept", "left out", "put 
     return StepMark(describe(step), words.meaning(step, view.noun), state)
 
 
-def _code(view: SeriesView) -> tuple[str | None, str | None]:
-    if view.problem is not None:
-        return None, None
+def with_code(made: Card, view: SeriesView) -> Card:
+    """The card with the code of its plan in every form."""
+    forms = () if view.problem is not None else tuple(_code(view, form, title) for form, title in FORMS.items())
+    return replace(made, codes=forms)
+
+
+def _code(view: SeriesView, form: str, title: str) -> CodeForm:
     try:
-        return view.code(), None
+        return CodeForm(title, view.code(form))
+    except CheckError as error:  # a plan that this form cannot hold
+        return CodeForm(title, "", words.sentence(str(error)))
     except Exception as error:  # a fault of the generated code must be seen in the card, not hide the card
-        return None, words.plain(f"The code could not be proved, which is a fault of this program: {error}")
+        told = f"The code could not be proved, which is a fault of this program: {error}"
+        return CodeForm(title, "", words.plain(told))
 
 
 def _picture(view: SeriesView) -> Picture | None:
@@ -109,7 +129,7 @@ def _picture(view: SeriesView) -> Picture | None:
         return None
     shifts = tuple(step.at for step in view.plan.steps if isinstance(step, RemoveShift))
     changed = bool(view.plan.steps) and len(view.transformed) > 1
-    period = season_of(view)
+    period = _season_of(view)
     nlags = min(max(24, 2 * period + 1), observed // 2, len(view.transformed) - 1)
     if view.problem is not None or nlags < 1:
         empty = np.empty(0)
@@ -128,7 +148,7 @@ def _picture(view: SeriesView) -> Picture | None:
     )
 
 
-def season_of(view: SeriesView) -> int:
+def _season_of(view: SeriesView) -> int:
     """Seasonal period for the ticks of a correlogram: of a step, else the shortest of the first rung, else 1."""
     for step in (*view.plan.steps, *view.recommended.steps):
         if isinstance(step, RemovePattern):
@@ -149,6 +169,15 @@ def _roots(view: SeriesView) -> RootsPicture | None:
     keys = ("psi_sum", "variance_implied", "variance_sample", "half_life")
     notes = measure_rows({key: finding.measures[key] for key in keys if key in finding.measures}, view.noun)
     return RootsPicture(roots, words.plain(str(finding.measures["order"])), view.noun, tuple(notes))
+
+
+def _halves(view: SeriesView) -> HalvesPicture | None:
+    finding = view.findings.get("halves")
+    moments = finding.measures.get("moments", ()) if finding is not None else ()
+    if finding is None or not isinstance(moments, tuple) or not moments or len(view.transformed) < 2:
+        return None
+    told = tuple((str(one.name), float(one.first), float(one.second), float(one.z)) for one in moments)
+    return HalvesPicture(view.transformed, finding.measures.get("second_from"), told, view.noun)
 
 
 def _rungs(view: SeriesView, recommended: SeriesView | None) -> tuple[RungCard, ...]:
@@ -194,39 +223,6 @@ def _test(test: HypothesisTest) -> TestRow:
 def _plans(view: SeriesView) -> tuple[PlanRow, ...]:
     ordered = sorted(view.alternatives, key=lambda item: item[1])
     return tuple(
-        PlanRow(words.plain(text), words.odds(below), tuple(steps) == tuple(view.plan.steps))
+        PlanRow(words.plain(text), words.odds(below), below, tuple(steps) == tuple(view.plan.steps))
         for text, below, steps in ordered
     )
-
-
-# ------------------------------------------------------------------------------------------------- overview
-def overview(report: ReportView, limit: int | None = OVERVIEW_ROWS) -> OverviewCard:
-    """Overview of a report: its first `limit` series, or all."""
-    frame, names = report.overview, list(report.names)
-    shown = names if limit is None else names[:limit]
-    verdicts = [str(v) for v in frame["verdict"]]
-    counts = tuple((v, verdicts.count(v)) for v in words.SHAPES if v in verdicts)
-    rows = []
-    for position, name in enumerate(shown):
-        line, view = frame.iloc[position], report[name]
-        note = line["note"]
-        rows.append(
-            OverviewRow(
-                name=name,
-                verdict=view.verdict,
-                plan=words.plain(str(view.plan)) if view.problem is None else words.NONE,
-                note=words.plain(view.problem or ("" if pd.isna(note) else str(note))),
-                values=view.series.to_numpy(dtype=float),
-                span=span_text(view.series, view.noun),
-                rungs=tuple((f.question, f.verdict, words.plain(f.headline)) for f in view.findings.values()),
-            )
-        )
-    return OverviewCard(counts, tuple(rows), len(names) - len(shown), _together(report))
-
-
-def _together(report: ReportView) -> str:
-    """Finding about several series, as verdict, headline and reason; empty where there is none."""
-    finding = getattr(report, "together", None)
-    if finding is None:
-        return ""
-    return words.plain(f"{finding.question} {finding.verdict}: {finding.headline}. {finding.reason}")

@@ -6,18 +6,18 @@ from typing import TYPE_CHECKING
 
 from preflight_magic.present import words
 from preflight_magic.present.markup import Markup, el, join
+from preflight_magic.present.more_html import REMEMBER
 
 if TYPE_CHECKING:
     from preflight_magic.present.cards import Card, RungCard, TestRow
-
-_REMEMBER = "(window.pfmOpen=window.pfmOpen||{})[this.id]=this.open"
 
 
 def ladder(card: Card, key: str) -> Markup | None:
     """All rungs in order, closed."""
     if not card.rungs:
         return None
-    return join([el("h4", "The ladder, question by question"), [_rung(rung, key) for rung in card.rungs]])
+    rungs = el("div", [_rung(rung, key) for rung in card.rungs], class_="pfm-ladder")
+    return join([el("h4", "The ladder, question by question"), rungs])
 
 
 def _rung(rung: RungCard, key: str) -> Markup:
@@ -35,7 +35,7 @@ def _rung(rung: RungCard, key: str) -> Markup:
         el("div", _inside(rung), class_="pfm-inside"),
         class_="pfm-rung" if rung.verdict == "clear" else "pfm-rung pfm-speaks",
         id=f"pfm-{key}-rung-{rung.position}",
-        ontoggle=_REMEMBER,
+        ontoggle=REMEMBER,
     )
 
 

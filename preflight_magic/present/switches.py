@@ -1,13 +1,14 @@
-"""Which plan a person wants: the switches of a card as plain state, without widgets."""
+"""The switches of a card: the steps that a person can turn on and off."""
 
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from preflight_magic.model import Log, Logit, Power, Step
+from preflight_magic.model import Step
+from preflight_magic.plan.order import canonical
 from preflight_magic.plan.words import describe
 from preflight_magic.present import words
 
@@ -28,48 +29,28 @@ class Switch:
     recommended: bool
 
 
-def switches(view: SeriesView) -> tuple[Switch, ...]:
-    """Steps of the recommendation, of the plan shown, and of the plans that are nearly as good."""
+def switches(view: SeriesView, more: Iterable[Step] = ()) -> tuple[Switch, ...]:
+    """Steps of the recommendation, of the plan shown, of the plans that are nearly as good, and of those asked for.
+
+    In canonical order, which is the order in which they are applied.
+    """
     recommended = Counter(view.recommended.steps)
-    offered = recommended | Counter(view.plan.steps)
+    offered = recommended | Counter(view.plan.steps) | Counter(more)
     for _, below, steps in view.alternatives:
         if below <= CLOSE:
             offered |= Counter(steps)
     made: list[Switch] = []
-    for step in [*recommended.elements(), *(offered - recommended).elements()]:
+    for step in canonical(offered.elements()):
         used = sum(one.step == step for one in made)
         made.append(Switch(step, describe(step), words.meaning(step, view.noun), used < recommended[step]))
     return tuple(made)
 
 
-def states(view: SeriesView, offered: Sequence[Switch]) -> tuple[bool, ...]:
-    """Which of the switches are on in the plan that is shown."""
-    left = Counter(view.plan.steps)
+def states(steps: Iterable[Step], offered: Sequence[Switch]) -> tuple[bool, ...]:
+    """Which of the switches are on when these are the steps of the plan."""
+    left = Counter(steps)
     on = []
     for switch in offered:
         on.append(left[switch.step] > 0)
         left[switch.step] -= 1
     return tuple(on)
-
-
-def walk(view: SeriesView, offered: Sequence[Switch], wanted: Sequence[bool]) -> SeriesView:
-    """The series examined with the wanted steps: first what is left out, then what is put in."""
-    have = states(view, offered)
-    for switch, is_on, should in zip(offered, have, wanted, strict=True):
-        if is_on and not should:
-            view = view.leave_out(switch.step)
-    for switch, is_on, should in zip(offered, have, wanted, strict=True):
-        if should and not is_on:
-            view = view.put_in(switch.step)
-    return view
-
-
-def settle(offered: Sequence[Switch], wanted: Sequence[bool], turned: int) -> tuple[bool, ...]:
-    """Wanted states with at most one of log, power and logit on: the one turned on last wins."""
-    bends = Log | Power | Logit
-    if not (wanted[turned] and isinstance(offered[turned].step, bends)):
-        return tuple(wanted)
-    return tuple(
-        on and (i == turned or not isinstance(switch.step, bends))
-        for i, (switch, on) in enumerate(zip(offered, wanted, strict=True))
-    )

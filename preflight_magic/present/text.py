@@ -77,18 +77,24 @@ def card_text(card: Card, width: int | None = None) -> str:
     if not card.problem:
         lines += wrap(f"Plan: {chain(card.repairs, card.steps)}", width, "", "      ")
     lines += wrap(f"{card.span}.", width)
-    if card.switched:
-        lines += wrap("You have switched steps; this is not the recommended plan.", width)
+    if card.yours:
+        lines += wrap(card.yours, width)
+    if card.changes:
+        lines.append("What changed, recommended \u2192 yours:")
+    for change in card.changes:
+        lines += wrap(f"{change.what}: {change.before}{ARROW}{change.after}", width, "  ", "    ")
+    if card.proof is not None:
+        told = [card.proof.problem] if card.proof.problem else [*card.proof.sentences, f"{card.proof.origins}."]
+        lines += ["", *wrap(f"Forecasts from the past: {' '.join(told)}", width)]
     for rung in card.rungs:
         lines += _rung(rung, width)
     if card.plans:
         rows = [(row.text + (" (shown)" if row.shown else ""), row.odds) for row in card.plans]
         lines += ["", *wrap("Plans that were compared, and the odds of the best against each:", width)]
         lines += columns(rows, [width - 30, 26], "  ")
-    if card.code_problem:
-        lines += ["", *wrap(card.code_problem, width)]
-    elif card.code is not None:
-        lines += ["", *wrap("The pandas code: .code() of this series.", width)]
+    if not card.problem:
+        told = [form.problem for form in card.codes if form.problem]
+        lines += ["", *wrap(" ".join([*told, "The pandas code: .code() of this series."]), width)]
     return "\n".join([*lines, *wrap(words.CAUTION, width)])
 
 
@@ -126,7 +132,7 @@ def _tests(tests: Sequence[TestRow], width: int, inside: str) -> list[str]:
     lines = columns([("test", "statistic", "p-value", "null hypothesis")], widths, inside)
     series = ""
     for test in tests:
-        if test.series != series:
+        if test.series and test.series != series:
             series = test.series
             lines += wrap(f"Series: {series}", width, inside)
         lines += columns([(test.test, test.statistic, test.p, test.null)], widths, inside)
@@ -148,8 +154,7 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     counts = ", ".join(f"{count:,} {words.verdict_text(verdict)}" for verdict, count in card.counts)
     summary = f"{sum(count for _, count in card.counts):,} series: {counts}"
     lines = [*wrap(summary, width), *columns(rows, [name, 14, rest])]
-    if card.left_out:
-        lines += wrap(f"and {card.left_out:,} more; report.overview holds them all", width)
+    lines += wrap(card.part, width)
     if card.together:
         lines += ["", *wrap(card.together, width)]
     return "\n".join(lines)

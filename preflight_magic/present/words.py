@@ -279,7 +279,7 @@ def root_text(root: Root, noun: str) -> str:
 # ------------------------------------------------------------------------------------------------- text width
 def width_of(text: str) -> int:
     """Columns that a text takes in a terminal: two for wide characters, none for combining ones."""
-    return sum(_columns(c) for c in text)
+    return len(text) if text.isascii() else sum(_columns(c) for c in text)
 
 
 def _columns(character: str) -> int:

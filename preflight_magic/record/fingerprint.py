@@ -32,7 +32,7 @@ def span_of(values: pd.Series) -> Span:
     if not len(values):
         return Span(None, None, 0, 0)
     first, last = (stamp_of(values.index[i]) for i in (0, -1))
-    return Span(first, last, len(values), int(values.isna().sum()))
+    return Span(first, last, len(values), int(np.isnan(values.to_numpy(dtype=np.float64)).sum()))
 
 
 def stamp_of(label: object) -> Stamp:

@@ -89,6 +89,8 @@ class LoadedSeries(SeriesReport):
     leave_out: Any = _refused("leave_out")
     put_in: Any = _refused("put_in")
     with_plan: Any = _refused("with_plan")
+    with_season: Any = _refused("with_season")
+    without_span: Any = _refused("without_span")
     odds_against: Any = _refused("odds_against")
 
     def _ipython_display_(self) -> None:

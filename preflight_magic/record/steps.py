@@ -9,13 +9,13 @@ from typing import Any, Literal, get_args, get_origin, get_type_hints
 
 import pandas as pd
 
-from preflight_magic.model import CheckError, FillGaps, Repair, Step
+from preflight_magic.model import CheckError, Repair, Step
 from preflight_magic.plan.plan import Plan
 from preflight_magic.record.node import Node
 from preflight_magic.record.tags import encode
 
 _STEPS: dict[str, type] = {one.__name__: one for one in get_args(Step)}
-_REPAIRS: dict[str, type] = {FillGaps.__name__: FillGaps}
+_REPAIRS: dict[str, type] = {one.__name__: one for one in get_args(Repair)}
 
 
 def plan_object(plan: Plan) -> dict[str, Any]:
@@ -84,6 +84,8 @@ def _field(node: Node, hint: Any) -> object:
         return node.whole(1)
     if hint is float:
         return node.number()
+    if hint == (str | None):
+        return node.text_or_none()
     found = node.plain()
     if isinstance(found, bool) or not isinstance(found, pd.Period | pd.Timestamp | int):
         raise node.refuse("is no stamp of a time index")

@@ -89,8 +89,10 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     if not _varies(values, series, context.steps):
         return Evidence(problem=f"nothing varies in the {len(values)} values left after the plan.")
     lags = [step.lag for step in context.steps if isinstance(step, Difference)]
-    # a pattern longer than the shortest season is removed, never differenced: what is left repeats at the shortest
-    season = min(seasonal_lag(context.steps), series.season[0])
+    season = seasonal_lag(context.steps)
+    if season in series.season:
+        # a pattern longer than the shortest season is removed, never differenced: what is left repeats at the shortest
+        season = series.season[0]
     columns = likelihood_columns(context.steps, series.values.index, len(values), context.nuisance)
     mean, nuisance, fixed = columns.mean, columns.nuisance, columns.fixed
     fit = search(values, season, mean=mean, seasonal=season > 1, nuisance=nuisance, fixed=fixed)

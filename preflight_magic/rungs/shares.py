@@ -121,6 +121,7 @@ def prior_of(thresholds: Thresholds) -> PlanPrior:
         second=thresholds.second_difference_odds,
         wandering=thresholds.wandering_odds,
         both=thresholds.both_differences_odds,
+        short=thresholds.short_series_odds,
         slope=thresholds.slope_scale,
         outlier_bound=thresholds.outlier_bound,
     )

@@ -1,4 +1,4 @@
-"""One server and one browser for all walks; skipped with the command that would enable them, except in CI."""
+"""One server of each kind and one browser for all walks; skipped with what would enable them, except in CI."""
 
 from __future__ import annotations
 
@@ -28,6 +28,13 @@ def enabled() -> None:
 @pytest.fixture(scope="session")
 def lab(enabled: None, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Lab]:
     with server(tmp_path_factory.mktemp("lab")) as running:
+        yield running
+
+
+@pytest.fixture(scope="session")
+def notebook_server(enabled: None, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Lab]:
+    """Notebook 7, which shows one notebook without the frame of JupyterLab."""
+    with server(tmp_path_factory.mktemp("notebook"), "notebook") as running:
         yield running
 
 

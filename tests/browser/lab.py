@@ -1,4 +1,4 @@
-"""A JupyterLab server of one's own and a notebook in a real browser."""
+"""A JupyterLab or Notebook 7 server of one's own and a notebook in a real browser."""
 
 from __future__ import annotations
 
@@ -15,10 +15,12 @@ from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from importlib.util import find_spec
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Literal
 
 if TYPE_CHECKING:
     from playwright.sync_api import Browser, Locator, Page
+
+Program = Literal["jupyterlab", "notebook"]
 
 ROOT = Path(__file__).resolve().parents[2]
 FLAGS = [
@@ -50,7 +52,7 @@ _SETTINGS = {
 
 def missing() -> str | None:
     """The one command that would make these tests run here, or None where they can."""
-    if find_spec("playwright") is None or find_spec("jupyterlab") is None:
+    if any(find_spec(name) is None for name in ("playwright", "jupyterlab", "notebook", "axe_playwright_python")):
         return 'pip install "preflight-magic[test]"'
     return None if chromium() else "apt-get install chromium"
 
@@ -68,8 +70,8 @@ def free_port() -> int:
 
 
 @contextmanager
-def server(home: Path) -> Iterator[Lab]:
-    """JupyterLab with folders of its own under `home`, stopped at the end."""
+def server(home: Path, program: Program = "jupyterlab") -> Iterator[Lab]:
+    """JupyterLab or Notebook 7 with folders of its own under `home`, stopped at the end."""
     notebooks = home / "notebooks"
     notebooks.mkdir()
     environment = dict(os.environ)
@@ -85,16 +87,17 @@ def server(home: Path) -> Iterator[Lab]:
         path.parent.mkdir(parents=True, exist_ok=True)
         path.write_text(json.dumps(content))
     port = free_port()
+    application = "LabApp" if program == "jupyterlab" else "JupyterNotebookApp"
     command = [
-        *(sys.executable, "-m", "jupyterlab", "--no-browser", "--allow-root", "--ServerApp.ip=127.0.0.1"),
+        *(sys.executable, "-m", program, "--no-browser", "--allow-root", "--ServerApp.ip=127.0.0.1"),
         *(f"--ServerApp.port={port}", "--ServerApp.port_retries=0", f"--ServerApp.root_dir={notebooks}"),
-        *("--IdentityProvider.token=", "--ServerApp.password=", "--LabApp.expose_app_in_browser=True"),
+        *("--IdentityProvider.token=", "--ServerApp.password=", f"--{application}.expose_app_in_browser=True"),
     ]
     with (home / "server.log").open("w") as log:
         process = subprocess.Popen(command, env=environment, cwd=home, stdout=log, stderr=subprocess.STDOUT)
         try:
             _wait_for(f"http://127.0.0.1:{port}/api/status", process, home / "server.log")
-            yield Lab(f"http://127.0.0.1:{port}", notebooks, environment)
+            yield Lab(f"http://127.0.0.1:{port}", notebooks, environment, program)
         finally:
             process.terminate()
             try:
@@ -114,14 +117,14 @@ def _wait_for(url: str, process: subprocess.Popen[bytes], log: Path, seconds: fl
                 return
         except (urllib.error.URLError, ConnectionError, TimeoutError):
             time.sleep(0.2)
-    raise RuntimeError(f"JupyterLab did not start:\n{log.read_text()[-3000:]}")
+    raise RuntimeError(f"The server did not start:\n{log.read_text()[-3000:]}")
 
 
 class Lab:
     """A running server, the folder of its notebooks and the environment it runs in."""
 
-    def __init__(self, url: str, folder: Path, environment: dict[str, str]) -> None:
-        self.url, self.folder, self.environment = url, folder, environment
+    def __init__(self, url: str, folder: Path, environment: dict[str, str], program: Program) -> None:
+        self.url, self.folder, self.environment, self.program = url, folder, environment, program
         self._count = 0
 
     def write(self, cells: Sequence[str]) -> str:
@@ -151,7 +154,8 @@ class Lab:
         page = context.new_page()
         page.set_default_timeout(90_000)  # of a machine that is busy with other work
         try:
-            page.goto(f"{self.url}/lab/tree/{name}?reset")
+            place = f"lab/tree/{name}?reset" if self.program == "jupyterlab" else f"notebooks/{name}"
+            page.goto(f"{self.url}/{place}")
             opened = Notebook(page, name)
             opened.ready(dark)
             yield opened
@@ -172,7 +176,7 @@ class Notebook:
         self.page.wait_for_selector(".jp-NotebookPanel .jp-Cell .cm-content", timeout=60_000)
         self.page.wait_for_function("() => window.jupyterapp?.shell?.currentWidget?.sessionContext", timeout=60_000)
         self.page.evaluate(_READY)
-        self.page.evaluate("() => window.jupyterapp.shell.collapseLeft()")
+        self.page.evaluate("() => window.jupyterapp.shell.collapseLeft?.()")
         # Always said, since the server remembers what the last page chose.
         self.command("apputils:change-theme", {"theme": f"JupyterLab {'Dark' if dark else 'Light'}"})
         self.page.wait_for_selector(f'body[data-jp-theme-light="{"false" if dark else "true"}"]', state="attached")

@@ -13,7 +13,7 @@ import pytest
 from tests.browser.lab import Lab, Notebook
 
 if TYPE_CHECKING:
-    from playwright.sync_api import Browser
+    from playwright.sync_api import Browser, Locator
 
 pytestmark = [pytest.mark.browser, pytest.mark.slow]
 
@@ -31,9 +31,21 @@ past, ahead = y[:-6], prepare(y, history=y[:-6])[-6:]
 print("forward", same, "back", np.allclose(restore(ahead, past), y[-6:]), str(plan))"""
 
 
+_ALL_NEW = "old => [...document.querySelectorAll('.pfm-body img.pfm-picture')].every(image => !old.includes(image.src))"
+_ROWS = "n => document.querySelectorAll('table.pfm-overview tbody tr').length === n"
+_TOP_ROW = "name => document.querySelector('table.pfm-overview th[scope=row]').innerText === name"
+
+
+def choose(field: Locator, words: str) -> None:
+    """Choose an option by its first words; the widget writes them with spaces that do not break."""
+    field.wait_for()
+    options = [told.replace("\u00a0", " ") for told in field.locator("option").all_inner_texts()]
+    field.select_option(index=next(i for i, told in enumerate(options) if told.startswith(words)))
+
+
 @pytest.fixture
 def opened(lab: Lab, browser: Browser) -> Iterator[Notebook]:
-    with lab.notebook(browser, [LOAD, CHECK, "", COMPARE]) as notebook:
+    with lab.notebook(browser, [LOAD, CHECK, "", COMPARE, ""]) as notebook:
         faults: list[str] = []
         notebook.page.on("pageerror", lambda error: faults.append(str(error)))
         notebook.run(0)
@@ -53,19 +65,24 @@ def test_from_check_to_code_that_gives_the_numbers_of_the_plan(opened: Notebook)
     rung.locator("summary").first.click()
     assert rung.locator("p").first.is_visible()
 
-    pictures, code = output.locator(".pfm-body img"), output.locator("pre.pfm-code")
+    pictures, code = output.locator(".pfm-body img.pfm-picture"), output.locator("pre.pfm-code").first
     before, source = [pictures.nth(i).get_attribute("src") for i in range(pictures.count())], code.inner_text()
+    assert len(before) == 4
     output.locator(".pfm-switch", has_text="difference 12").locator("input").click()
-    page.wait_for_function("old => document.querySelector('.pfm-body img').src !== old", arg=before[0])
+    page.wait_for_function(
+        _ALL_NEW,
+        arg=before,
+    )
     after = [pictures.nth(i).get_attribute("src") for i in range(pictures.count())]
     assert len(after) == len(before)
     assert all(new != old for new, old in zip(after, before, strict=True))
     assert "x.diff(12)" in source
     assert "x.diff(12)" not in code.inner_text()
     assert "(left out)" in output.locator(".pfm-plan").inner_text()
+    assert "verdict on residuals" in output.locator(".pfm-changes").inner_text()
     page.wait_for_function("() => document.querySelectorAll('details.pfm-rung[open]').length === 1")
 
-    button = output.locator("button.pfm-copy")
+    button = output.locator("button.pfm-copy").first
     button.click()
     page.wait_for_function("() => document.querySelector('button.pfm-copy').textContent === 'Copied'")
 
@@ -76,6 +93,29 @@ def test_from_check_to_code_that_gives_the_numbers_of_the_plan(opened: Notebook)
     opened.run(3)
     told = opened.output(3).inner_text()
     assert told.split() == ["forward", "True", "back", "True", "log,", "difference", "1"]
+
+    output.locator("button.pfm-copy").nth(1).click()
+    model = opened.cell(4).locator(".cm-content")
+    model.click()
+    page.keyboard.press("Control+V")
+    assert "SARIMAX" in model.inner_text()
+    page.keyboard.press("Control+End")
+    page.keyboard.insert_text("\n\nprint(len(forecast(monthly['passengers'].astype(float), steps=12)))")
+    opened.run(4)
+    assert opened.output(4).inner_text().strip() == "12"
+
+
+def test_forecasts_from_the_past_on_request(opened: Notebook, pictures: Path) -> None:
+    page, output = opened.page, opened.output(1)
+    output.locator(".pfm-prove").click()
+    output.locator("table.pfm-errors").wait_for()
+    assert output.locator("table.pfm-errors tbody th").first.inner_text() == "the plan"
+    assert "origins from" in (output.locator("img.pfm-proof").get_attribute("alt") or "")
+    output.locator(".pfm-switch input").first.click()
+    page.wait_for_function("() => !document.querySelector('table.pfm-errors')")
+    output.locator(".pfm-prove").click()
+    output.locator(".pfm-changes", has_text="hold-out error").wait_for()
+    opened.picture_of(pictures / "proof.png")
 
 
 def test_back_to_the_recommendation_and_fast_clicks(opened: Notebook) -> None:
@@ -110,10 +150,79 @@ def test_keyboard_reaches_every_control(opened: Notebook) -> None:
 
 def test_selecting_another_series(opened: Notebook) -> None:
     output = opened.output(1)
-    output.locator(".pfm-selector select").select_option(label="freight")
+    assert output.locator(".pfm-closed:visible").count() == 0, "names are buttons where they can open a card"
+    output.locator("button.pfm-open", has_text="freight").click()
     opened.page.wait_for_function("() => document.querySelector('h3.pfm-name').textContent === 'freight'")
     assert output.locator("h3.pfm-name").count() == 1
     assert "shift" in output.locator(".pfm-plan").inner_text()
+    choose(output.locator(".pfm-selector select"), "fuel_price")
+    opened.page.wait_for_function("() => document.querySelector('h3.pfm-name').textContent === 'fuel_price'")
+
+
+def test_other_plan_step_season_and_span(opened: Notebook) -> None:
+    page, output = opened.page, opened.output(1)
+    plan, back = output.locator(".pfm-plan"), output.locator("button.pfm-back")
+    recommended = plan.inner_text()
+
+    def until(words: str) -> None:
+        page.wait_for_function("w => document.querySelector('.pfm-head').textContent.includes(w)", arg=words)
+
+    output.locator(".pfm-more-changes").click()
+    choose(output.locator(".pfm-take select"), "log, difference 12 (")
+    until("(left out)")
+    choose(output.locator(".pfm-put-in select"), "remove trend: a straight line subtracted")
+    until("remove trend (put in)")
+    assert output.locator(".pfm-switch", has_text="remove trend").locator("input").is_checked()
+    season = output.locator(".pfm-season input")
+    season.fill("1")
+    season.press("Enter")
+    until("You chose the season: none, where the check took 12.")
+    span = output.locator(".pfm-span input")
+    span.fill("2018-03..2018-05")
+    span.press("Enter")
+    until("You left out 2018-03 to 2018-05.")
+    span.fill("2031-01..2031-02")
+    span.press("Enter")
+    page.wait_for_function("() => document.querySelector('.pfm-message').textContent.includes('no row lies in it')")
+    back.click()
+    page.wait_for_function("old => document.querySelector('.pfm-plan').innerText === old", arg=recommended)
+    assert season.input_value() == "12"
+
+
+MANY = """%%checkseries
+import numpy as np, pandas as pd
+rng = np.random.default_rng(4)
+berths = rng.normal(size=(60, 40))
+berths[:, 10:20] = berths[:, 10:20].cumsum(axis=0)
+berths[:, 39] = 7.0
+names = [f"berth {i}" for i in range(40)]
+pd.DataFrame(berths, index=pd.period_range("2020-01", periods=60, freq="M"), columns=names)"""
+
+
+def test_many_series_are_paged_sorted_and_found(lab: Lab, browser: Browser, pictures: Path) -> None:
+    with lab.notebook(browser, [LOAD, MANY]) as notebook:
+        notebook.run(0)
+        notebook.run(1)
+        page, output = notebook.page, notebook.output(1)
+        output.locator(".pfm-body img").first.wait_for()
+        rows, part = output.locator("table.pfm-overview tbody tr"), output.locator(".pfm-many > p").last
+        assert rows.count() == 25
+        assert "1 to 25 of 40" in part.inner_text()
+        notebook.picture_of(pictures / "many.png")
+        output.locator(".pfm-later").click()
+        page.wait_for_function(_ROWS, arg=15)
+        choose(output.locator(".pfm-order select"), "by name")
+        page.wait_for_function(_TOP_ROW, arg="berth 0")
+        assert rows.nth(2).locator("th").inner_text() == "berth 2"
+        choose(output.locator(".pfm-filter select"), "\u25a0 infeasible (1)")
+        page.wait_for_function(_ROWS, arg=1)
+        assert "one value only" in rows.first.inner_text()
+        choose(output.locator(".pfm-filter select"), "every verdict")
+        page.wait_for_function(_ROWS, arg=25)
+        output.locator(".pfm-find input").fill("berth 17")
+        page.wait_for_function(_ROWS, arg=1)
+        rows.first.locator("button.pfm-open").click()
+        page.wait_for_function("() => document.querySelector('h3.pfm-name').textContent === 'berth 17'")
 
 
 def test_running_again_leaves_no_widgets_behind(lab: Lab, browser: Browser) -> None:
@@ -133,7 +242,7 @@ def test_saved_notebook_reads_without_a_kernel_and_without_trust(
 ) -> None:
     box = opened.output(1).locator(".pfm-switch input").nth(1)
     box.click()
-    opened.page.wait_for_function("() => document.querySelector('.pfm-plan').textContent.includes('(left out)')")
+    opened.page.wait_for_function("() => !document.querySelector('pre.pfm-code').textContent.includes('diff(12)')")
     opened.command("docmanager:save")
     opened.page.wait_for_timeout(1000)
     content = lab.read(opened.name)
@@ -197,7 +306,10 @@ def test_look(lab: Lab, browser: Browser, pictures: Path, width: int, dark: bool
         notebook.picture_of(pictures / f"closed-{width}-{folder}.png")
         for place in (4, 5):
             output.locator("details.pfm-rung > summary").nth(place).click()
-        output.locator("details.pfm-more > summary").click()
+        for summary in output.locator("details.pfm-more > summary").all():
+            summary.click()
+        output.locator(".pfm-more-changes").click()
+        output.locator(".pfm-take select").wait_for()
         notebook.picture_of(pictures / f"open-{width}-{folder}.png")
         contrasts = output.evaluate(_CONTRAST)
         assert len(contrasts) > 60

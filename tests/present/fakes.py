@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable, Mapping
+from collections.abc import Hashable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -10,6 +10,17 @@ import pandas as pd
 
 from preflight_magic.model import Difference, Finding, HypothesisTest, Log, Repair, Root, Step, Verdict
 from preflight_magic.plan.plan import Plan
+
+
+@dataclass(frozen=True)
+class Moment:
+    """A moment of both halves, and how many standard errors they lie apart."""
+
+    name: str
+    first: float
+    second: float
+    z: float
+
 
 QUESTIONS = {
     "time index": "Is the time index regular, and how long is a season?",
@@ -70,9 +81,48 @@ def findings(steps: tuple[Step, ...]) -> dict[str, Finding]:
                 "order": "ARMA(1,1)(0,1) at 12",
                 "half_life": 1.45,
             }
+        if name == "halves":
+            measures = {
+                "moments": (Moment("mean", 0.012, 0.009, -0.41), Moment("variance", 0.0021, 0.0052, 3.4)),
+                "second_from": pd.Period("2019-11", "M"),
+            }
         shown = tests() if name in ("unit root", "season") else ()
+        if name == "residuals":
+            p = 0.43 if Difference(12) in steps else 0.0004
+            shown = tuple(
+                HypothesisTest("Ljung-Box", f"no correlation up to lag {lags}", 9.1, p, "exact", 107, lags, "c")
+                for lags in (12, 24)
+            )
+            if p < 0.05:
+                verdict, headline = "inconclusive", "correlation left"
         made[name] = Finding(name, question, verdict, headline, reason, shown, measures, proposed)
     return made
+
+
+@dataclass(frozen=True)
+class FakeProofRow:
+    """Errors of one way to forecast."""
+
+    forecast: str
+    mase: float
+    ratio: float
+    coverage: float = 0.91
+    p_value: float = np.nan
+
+
+@dataclass(frozen=True)
+class FakeProof:
+    """Forecasts from four origins."""
+
+    rows: tuple[FakeProofRow, ...]
+    sentences: tuple[str, ...] = ("Without the log the error is 12 % larger.",)
+    horizon: int = 12
+    origins: tuple[pd.Period, ...] = tuple(pd.period_range("2021-04", periods=4, freq="6M"))
+    problem: str | None = None
+
+    @property
+    def by_origin(self) -> dict[str, tuple[float, ...]]:
+        return {row.forecast: (row.mase - 0.1, row.mase, np.nan, row.mase + 0.2) for row in self.rows}
 
 
 @dataclass
@@ -86,6 +136,7 @@ class FakeSeries:
     verdict: Verdict = "transform"
     answer: str = "Take logs and difference at lags 12 and 1 before modelling."
     noun: str = "month"
+    season: tuple[int, ...] = (12,)
     problem: str | None = None
     alternatives: tuple[tuple[str, float, tuple[Step, ...]], ...] = (
         ("log, difference 12, difference 1", 0.0, (Log(), Difference(12), Difference(1))),
@@ -93,7 +144,7 @@ class FakeSeries:
         ("log, remove pattern 12, difference 1", 8.25, (Log(),)),
     )
     source: str = "import numpy as np\n\n\ndef prepare(y, history=None):\n    return np.log(y)  # <b>log</b>\n"
-    calls: list[tuple[str, Step]] = field(default_factory=list)
+    calls: list[tuple[str, object]] = field(default_factory=list)
     failing: dict[str, Exception] = field(default_factory=dict)
 
     @property
@@ -114,6 +165,13 @@ class FakeSeries:
         return dict.fromkeys(QUESTIONS, told)
 
     @property
+    def proof(self) -> FakeProof:
+        self._called("proof", self.plan.steps)
+        error = 0.8 if Difference(12) in self.plan.steps else 1.3
+        rows = (FakeProofRow("the plan", error, 1.0), FakeProofRow("seasonal naive", 1.1, 1.1 / error, 0.86, 0.0004))
+        return FakeProof(rows)
+
+    @property
     def repairs(self) -> tuple[Repair, ...]:
         return self.plan.repairs
 
@@ -126,16 +184,31 @@ class FakeSeries:
         return f"{self.source}# plan: {self.plan}\n"
 
     def leave_out(self, step: Step) -> FakeSeries:
-        return self._switched("leave_out", step, self.plan.without(step))
+        return replace(self, plan=self.plan.without(step))
 
     def put_in(self, step: Step) -> FakeSeries:
-        return self._switched("put_in", step, self.plan.with_step(step))
+        return replace(self, plan=self.plan.with_step(step))
 
-    def _switched(self, call: str, step: Step, plan: Plan) -> FakeSeries:
-        self.calls.append((call, step))
+    def with_plan(self, steps: Iterable[Step]) -> FakeSeries:
+        plan = Plan(self.plan.repairs, tuple(steps))
+        self._called("with_plan", plan.steps)
+        return replace(self, plan=plan, answer=f"Examined with {plan}.")
+
+    def with_season(self, season: tuple[int, ...]) -> FakeSeries:
+        self._called("with_season", season)
+        plan = Plan((), tuple(step for step in self.plan.steps if step != Difference(12)))
+        return replace(self, season=season, plan=plan, recommended=plan, answer=f"Examined with season {season}.")
+
+    def without_span(self, start: object, end: object) -> FakeSeries:
+        self._called("without_span", (start, end))
+        shown = self.series.copy()
+        shown.loc[start:end] = np.nan  # type: ignore[misc]
+        return replace(self, series=shown, answer="Examined without a span.")
+
+    def _called(self, call: str, asked: object) -> None:
+        self.calls.append((call, asked))
         if call in self.failing:
             raise self.failing[call]
-        return replace(self, plan=plan, answer=f"Examined with {plan}.")
 
 
 def _acf(series: pd.Series, nlags: int) -> np.ndarray:
@@ -158,7 +231,7 @@ class FakeReport:
 
     @property
     def overview(self) -> pd.DataFrame:
-        rows = [{"verdict": v.verdict, "plan": str(v.plan), "note": pd.NA} for v in self._many.values()]
+        rows = [{"verdict": v.verdict, "plan": str(v.plan), "note": v.problem or pd.NA} for v in self._many.values()]
         return pd.DataFrame(rows, index=pd.Index(list(self._many), tupleize_cols=False, name="name"))
 
     def __getitem__(self, name: Hashable) -> FakeSeries:

@@ -5,9 +5,10 @@ from html.parser import HTMLParser
 
 import pytest
 
-from preflight_magic.model import Finding
+from preflight_magic.model import Difference, Finding
 from preflight_magic.plan.plan import Plan
 from preflight_magic.present import html, make_cards
+from preflight_magic.present.cards import Card
 from preflight_magic.present.markup import Markup, el, join
 from tests.present.fakes import FakeReport, FakeSeries
 
@@ -55,8 +56,12 @@ def read(markup: str) -> Reader:
     return reader
 
 
+def whole(view: FakeSeries) -> Card:
+    return make_cards.with_code(make_cards.card(view), view)
+
+
 def shown(view: FakeSeries) -> Reader:
-    return read(html.card_html(make_cards.card(view)))
+    return read(html.card_html(whole(view)))
 
 
 @pytest.mark.parametrize("name", HOSTILE)
@@ -90,7 +95,7 @@ class HostileSeries(FakeSeries):
 def test_every_sentence_is_escaped() -> None:
     bad = "<script>alert(1)</script>"
     view = HostileSeries(answer=bad, noun=bad, alternatives=((bad, 0.0, ()),), source=bad)
-    markup = html.card_html(make_cards.card(view))
+    markup = html.card_html(whole(view))
     assert "<script" not in markup
     assert bad in "".join(read(markup).text)
 
@@ -104,7 +109,9 @@ def test_no_script_no_inline_svg_no_network() -> None:
 
 def test_pictures_have_alt_text_and_hold_themselves() -> None:
     images = [attributes for tag, attributes in shown(FakeSeries()).seen if tag == "img"]
-    assert len(images) == 2
+    dot = images.pop()
+    assert dot["alt"] == "", "what only starts the buttons is no picture"
+    assert len(images) == 4
     for image in images:
         assert (image["src"] or "").startswith("data:image/png;base64,iVBOR")
         assert re.search(r"\d", image["alt"] or "")
@@ -130,21 +137,33 @@ def test_code_can_be_selected_and_copied() -> None:
     button = next(attributes for tag, attributes in reader.seen if tag == "button")
     handler = button["onclick"] or ""
     assert 0 < handler.index("execCommand") < handler.index("navigator.clipboard")
-    assert "hidden" in button, "a dead button is not shown; the first picture shows it where handlers run"
-    assert ".hidden=false" in (next(a for t, a in reader.seen if t == "img")["onload"] or "")
+    assert "hidden" in button, "a dead button is not shown; a dot that loads shows it where handlers run"
+    assert ".hidden=false" in ([a for t, a in reader.seen if t == "img"][-1]["onload"] or "")
+    assert button["aria-label"] == "Copy: Code for pandas"
 
 
 def test_ids_differ_between_series_of_a_page() -> None:
     reader = read(html.page(FakeReport(*(FakeSeries(name=i) for i in range(3)))).replace("<!DOCTYPE html>", ""))
     ids = [attributes["id"] for _, attributes in reader.seen if "id" in attributes]
-    assert len(ids) == len(set(ids)) == 3 * 12
+    assert len(ids) == len(set(ids)) == 3 * 14
 
 
 def test_steps_left_out_are_struck_and_told_in_words() -> None:
     view = FakeSeries()
     text = "".join(shown(view.leave_out(view.plan.steps[1])).text)
     assert "difference 12 (left out)" in text
-    assert "not the recommended plan" in text
+
+
+def test_what_changed_stands_under_the_first_picture() -> None:
+    view = FakeSeries()
+    card = make_cards.card(view.leave_out(Difference(12)), view, "You left out 2020-03 to 2020-06.")
+    reader = read(html.first(card))
+    assert [tag for tag, _ in reader.seen if tag in ("img", "table")] == ["img", "table"]
+    text = "".join(reader.text)
+    assert "verdict on residuals" in text
+    assert "◐ inconclusive: correlation left" in text
+    assert "You left out 2020-03 to 2020-06." in html.head(card)
+    assert "what changed" not in html.first(make_cards.card(view))
 
 
 def test_infeasible_series_shows_its_reason() -> None:
@@ -156,7 +175,7 @@ def test_infeasible_series_shows_its_reason() -> None:
 
 def test_compared_plans_stand_open_where_a_person_decides() -> None:
     def is_open(view: FakeSeries) -> bool:
-        more = next(a for t, a in shown(view).seen if t == "details" and a["class"] == "pfm-more")
+        more = next(a for t, a in shown(view).seen if t == "details" and (a.get("id") or "").endswith("-plans"))
         return "open" in more
 
     assert is_open(FakeSeries(verdict="inconclusive"))

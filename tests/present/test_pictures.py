@@ -15,11 +15,17 @@ import pytest
 
 from preflight_magic.model import Difference, Log, RemoveShift, Root
 from preflight_magic.plan.plan import Plan
-from preflight_magic.present import make_cards
-from preflight_magic.present.alt import before_after_alt, roots_alt, spark_alt
+from preflight_magic.present import make_cards, make_overview
+from preflight_magic.present.alt import before_after_alt, halves_alt, plans_alt, proof_alt, roots_alt, spark_alts
 from preflight_magic.present.cards import Picture, RootsPicture
-from preflight_magic.present.figures import before_after, sparklines
+from preflight_magic.present.figures import before_after
+from preflight_magic.present.halves_figure import halves_picture
+from preflight_magic.present.make_proof import hold_out, proof_card
+from preflight_magic.present.plans_figure import plans_strip
+from preflight_magic.present.proof_figure import errors_strip
+from preflight_magic.present.proof_html import proof_html
 from preflight_magic.present.roots_figure import roots_strip
+from preflight_magic.present.sparks import spark
 from tests.present.fakes import FakeReport, FakeSeries, roots, values
 
 
@@ -128,24 +134,67 @@ def test_alt_texts_tell_the_numbers(picture: Picture, strip: RootsPicture) -> No
 def test_small_pictures() -> None:
     rng = np.random.default_rng(5)
     many = [values().to_numpy(), np.full(9, 2.0), np.array([np.nan, 1.0]), rng.normal(size=9000)]
-    made = sparklines(many)
+    made = [spark(one) for one in many]
     assert [size(png) for png in made] == [(180, 42)] * 4
     inked = [(dots(png) > 0).sum() for png in made]
     assert inked[0] > 200
     assert inked[1] > 100
     assert inked[2] == 0
-    assert len(sparklines([np.arange(9.0)] * 205)) == 205
-    row = make_cards.overview(FakeReport(FakeSeries())).rows[0]
-    assert spark_alt(row).startswith("120 months, 2014-05 to 2024-04, 2 missing: from ")
+    row = make_overview.overview(FakeReport(FakeSeries())).rows[0]
+    before, after = spark_alts(row)
+    assert before.startswith("120 months, 2014-05 to 2024-04, 2 missing: from ")
+    assert after.startswith("after the plan: from ")
+    assert spark_alts(replace(row, after=None)) == (before, "")
 
 
-def test_small_pictures_do_not_run_into_each_other() -> None:
-    rising, falling = np.arange(50.0), -np.arange(50.0)
-    together, apart = sparklines([rising, falling, rising]), sparklines([falling])
-    first, second, third = (dots(png).astype(int) for png in together)
-    assert np.abs(first - third).max() <= 4, "but for rounding, where a picture stood does not matter"
-    assert np.abs(second - dots(apart[0])).max() <= 4
-    assert np.abs(first - second).max() > 100
+def test_small_picture_rises_where_the_series_does() -> None:
+    inked = dots(spark(np.arange(50.0))) > 60
+    rows = [int(np.flatnonzero(inked[:, x]).mean()) for x in (5, 90, 175)]
+    assert rows[0] > rows[1] > rows[2]
+    gap = np.r_[np.arange(20.0), np.full(10, np.nan), np.arange(20.0)]
+    assert not (dots(spark(gap)) > 0)[:, 80:100].any()
+
+
+def test_plans_are_drawn_by_their_odds() -> None:
+    rows = make_cards.card(FakeSeries()).plans
+    png = plans_strip(rows)
+    assert size(png)[0] == 1065
+    assert size(plans_strip(rows * 5))[1] == size(plans_strip(rows * 9))[1], "no more than eight are drawn"
+    assert plans_alt(rows) == (
+        "Odds of the best plan against each of 3 plans: log, difference 12, difference 1, best (shown); "
+        "log, difference 12, 4.1 to 1; log, remove pattern 12, difference 1, over 1,000 to 1."
+    )
+
+
+def test_errors_from_the_past_are_drawn_and_told() -> None:
+    proof = proof_card(FakeSeries())
+    assert proof.origins == "4 origins from 2021-04 to 2022-10, 12 months ahead"
+    assert [(row.ratio, row.coverage, row.p) for row in proof.rows] == [
+        ("1", "91\u00a0%", "–"),
+        ("1.38", "86\u00a0%", "< 0.001"),
+    ]
+    assert size(errors_strip(proof))[0] == 1065
+    unknown = replace(proof.rows[0], error=np.nan, at_origins=())
+    assert size(errors_strip(replace(proof, rows=(unknown,))))[0] == 1065
+    assert proof_alt(proof) == (
+        "Mean absolute scaled errors, 4 origins from 2021-04 to 2022-10, 12 months ahead: "
+        "the plan 0.8 (0.7 to 1); seasonal naive 1.1 (1 to 1.3)."
+    )
+    failed = replace(proof, rows=(), problem="Too short.")
+    assert "Too short." in proof_html(failed)
+    assert hold_out(proof, failed) == ()
+
+
+def test_halves_are_drawn_and_told() -> None:
+    halves = make_cards.card(FakeSeries()).halves
+    assert halves is not None
+    assert size(halves_picture(halves)) == (1065, 288)
+    far = replace(halves, moments=(("mean", 1.0, 2.0, 40.0), ("variance", 1.0, 1.0, np.nan)))
+    assert size(halves_picture(far)) == (1065, 288)
+    assert halves_alt(halves) == (
+        "First half and second half (from 2019-11) of the transformed series: mean 0.012 and 0.009, "
+        "−0.41 standard errors apart; variance 0.0021 and 0.0052, 3.4 standard errors apart."
+    )
 
 
 def test_first_picture_is_fast(picture: Picture) -> None:

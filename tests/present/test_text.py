@@ -3,7 +3,7 @@
 import pytest
 
 from preflight_magic.plan.plan import Plan
-from preflight_magic.present import make_cards, text, words
+from preflight_magic.present import make_cards, make_overview, text, words
 from tests.present.fakes import FakeReport, FakeSeries
 
 NAMES = ["passengers", "漢字" * 60, "🚢" * 90, "x" * 200, ("a\nb", "c"), "<script>"]
@@ -14,7 +14,7 @@ NAMES = ["passengers", "漢字" * 60, "🚢" * 90, "x" * 200, ("a\nb", "c"), "<s
 def test_width_is_respected(name: object, width: int) -> None:
     view = FakeSeries(name=name, answer="An answer with averyveryvery" + "long" * 30 + " word in it.")
     lines = text.card_text(make_cards.card(view), width).split("\n")
-    lines += text.overview_text(make_cards.overview(FakeReport(FakeSeries(), view)), width).split("\n")
+    lines += text.overview_text(make_overview.overview(FakeReport(FakeSeries(), view)), width).split("\n")
     assert max(words.width_of(line) for line in lines) <= width
     assert not any(line != line.rstrip() for line in lines)
 
@@ -34,6 +34,8 @@ def test_text_tells_switched_steps_and_problems() -> None:
     view = FakeSeries()
     told = text.card_text(make_cards.card(view.leave_out(view.plan.steps[0]), view), 80)
     assert "log (left out)" in told
+    told = " ".join(told.split())
+    assert "plan: log, difference 12, difference 1 → difference 12, difference 1 odds" in told
     assert "With the recommended plan: ◆ transform: Take logs." in told
     infeasible = FakeSeries(problem="No values.", verdict="infeasible", plan=Plan(), recommended=Plan())
     told = text.card_text(make_cards.card(infeasible), 80)
@@ -42,7 +44,9 @@ def test_text_tells_switched_steps_and_problems() -> None:
 
 
 def test_overview_lines_up() -> None:
-    lines = text.overview_text(make_cards.overview(FakeReport(FakeSeries(), FakeSeries(name="fuel"))), 80).split("\n")
+    lines = text.overview_text(make_overview.overview(FakeReport(FakeSeries(), FakeSeries(name="fuel"))), 80).split(
+        "\n"
+    )
     assert lines[0] == "2 series: 2 ◆ transform"
     assert lines[1].index("verdict") == lines[2].index("◆") == lines[3].index("◆")
 

@@ -12,7 +12,7 @@ import pandas as pd
 import pytest
 
 import preflight_magic as pf
-from preflight_magic.present import html, make_cards, text
+from preflight_magic.present import html, make_cards, make_overview, text
 from preflight_magic.record.loaded import LoadedReport, LoadedSeries
 from tests.small_table import BAD, small_table
 
@@ -373,7 +373,7 @@ def used(loaded: LoadedReport) -> None:
     shown = loaded._shown()
     page = html.page(shown)
     assert "<script>alert(1)" not in page
-    text.overview_text(make_cards.overview(shown))
+    text.overview_text(make_overview.overview(shown))
     for one in shown:
         text.card_text(make_cards.card(one))
     for one in loaded:

@@ -37,7 +37,7 @@ def made(test: str, p: float, bound: str = "exact") -> HypothesisTest:
     return HypothesisTest(test, "", 1.0, p, bound, 100, 0, "ct")  # type: ignore[arg-type]
 
 
-SEASON = {"asked": 12, "period": 12, "presence_p": 1e-9}
+SEASON = {"asked": 12, "period": 12, "presence_p": 1e-9, "presence_standardised": 1e-9}
 SPLIT = {"fixed": {"fixed": 0.9, "difference": 0.1}, "difference": {"difference": 0.9, "fixed": 0.1}}
 
 

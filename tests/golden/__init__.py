@@ -1,0 +1,1 @@
+"""What cards looked like when a person last read them."""

@@ -11,7 +11,7 @@ import pandas as pd
 
 from preflight_magic.kernels.false_discovery import adjusted
 from preflight_magic.ladder import DECIDING
-from preflight_magic.model import CheckError, Difference, Finding, HypothesisTest
+from preflight_magic.model import CheckError, Difference, Finding, HypothesisTest, RemoveShift
 
 if TYPE_CHECKING:
     from preflight_magic.plan.plan import Plan
@@ -96,6 +96,11 @@ def _reasons(one: SeriesReport, before: SeriesReport | None) -> Iterator[Reason]
     doubts = [name for name in unclear if name in DECIDING]
     if doubts:
         yield "inconclusive", f"Too even to call: {', '.join(doubts)}{_runner_up(one, doubts)}."
+    values = one.findings.get("values")
+    alone = values.measures.get("outliers_at") if values else None
+    if isinstance(alone, tuple) and alone:
+        more = f" and {len(alone) - 3} more" if len(alone) > 3 else ""
+        yield "noted", f"Values that stand alone: {', '.join(alone[:3])}{more}."
     for name, finding in unclear.items():
         if name not in DECIDING and not (name in TESTED and _tested(finding)):
             yield "noted", f"{name}: {finding.headline}."
@@ -150,7 +155,9 @@ def _level_test(one: SeriesReport, name: str) -> float:
 
 
 def _stationary(one: SeriesReport) -> float:
-    return nan if Difference(1) in one.plan.steps else _level_test(one, "KPSS")
+    """KPSS, unless the plan explains why it rejects: it sees the series with its jump."""
+    explained = any(step == Difference(1) or isinstance(step, RemoveShift) for step in one.plan.steps)
+    return nan if explained else _level_test(one, "KPSS")
 
 
 def _unit_root(one: SeriesReport) -> float:

@@ -53,6 +53,11 @@ def table(document: str, heading: str) -> list[list[str]]:
     return rows
 
 
+def _anchor(heading: str) -> str:
+    """How a link names a heading."""
+    return re.sub(r"[^\w\- ]", "", heading.lower()).replace(" ", "-")
+
+
 def code_words(text: str) -> list[str]:
     return re.findall(r"`([^`\n]+)`", text)
 
@@ -159,14 +164,18 @@ def test_links_lead_somewhere(document: str) -> None:
         assert target.exists(), link
         if anchor:
             headings = re.findall(r"^#+ (.+)$", target.read_text(encoding="utf-8"), flags=re.MULTILINE)
-            assert anchor in [re.sub(r"[^\w\- ]", "", one.lower()).replace(" ", "-") for one in headings], link
+            assert anchor in [_anchor(one) for one in headings], link
 
 
-def test_links_of_the_notebook_lead_somewhere() -> None:
-    folder = ROOT / "demo_notebooks"
-    links = re.findall(r"\]\(([^)\s]+)\)", (folder / "first_check.ipynb").read_text(encoding="utf-8"))
+@pytest.mark.parametrize("path", sorted((ROOT / "demo_notebooks").glob("*.ipynb")), ids=lambda path: path.stem)
+def test_links_of_the_notebooks_lead_somewhere(path: Path) -> None:
+    links = re.findall(r"\]\(([^)\s]+)\)", path.read_text(encoding="utf-8"))
     assert links
-    assert all((folder / link).exists() for link in links)
+    for link in links:
+        name, _, anchor = link.partition("#")
+        assert (path.parent / name).exists(), link
+        headings = re.findall(r"^#+ (.+)$", README, flags=re.MULTILINE)
+        assert not anchor or (name == "../README.md" and anchor in [_anchor(one) for one in headings]), link
 
 
 @pytest.mark.parametrize("document", DOCUMENTS)

@@ -9,7 +9,7 @@ import pytest
 
 import preflight_magic as pf
 from preflight_magic.kernels.halves import Moment
-from preflight_magic.model import Difference, Finding, HypothesisTest, Log, RemoveTrend
+from preflight_magic.model import Difference, Finding, HypothesisTest, Log, RemoveShift, RemoveTrend
 from preflight_magic.plan.plan import Plan
 from preflight_magic.triage import attention
 from tests.small_table import BAD, small_table
@@ -142,6 +142,19 @@ def test_tests_that_contradict_the_plan():
     assert found.loc["changes", "reason"].startswith(
         "ADF rejects a unit root, and the plan takes an ordinary difference"
     )
+
+
+def test_a_shift_explains_why_stationarity_is_rejected():
+    rejects = {"unit root": [made_test("KPSS", 1e-9)]}
+    found = attention([one("jump", plan=(RemoveShift(40),), tests=rejects), one("walk", tests=rejects)])
+    assert list(found.index) == ["walk"]
+
+
+def test_values_that_stand_alone_are_noted():
+    stamps = ("2020-03", "2020-05", "2021-01", "2021-02", "2021-03")
+    found = attention([one("freight", measures={"values": {"outliers_at": stamps}}), one("fuel")])
+    assert list(found.why) == ["noted"]
+    assert found.loc["freight", "reason"] == "Values that stand alone: 2020-03, 2020-05, 2021-01 and 2 more."
 
 
 def test_a_bound_from_below_rejects_nothing():

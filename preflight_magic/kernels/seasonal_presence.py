@@ -99,6 +99,39 @@ def longer_presence(values: Array, period: int, longer: int) -> Presence:
     return Presence(statistic, float(fdtrc(numerator, denominator, max(statistic, 0.0))), numerator, denominator)
 
 
+def cycle_presence(values: Array, period: int, length: float) -> Presence:
+    """F test of a long smooth cycle, such as the year of daily values, beyond the pattern of a short one.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        NaN where missing.
+    period : int
+        Of the short pattern; 1 for none.
+    length : float
+        Steps of the long cycle, not necessarily whole.
+
+    Returns
+    -------
+    Presence
+        The null is that the first two pairs of waves of the cycle are not needed. A unit root passes for a long cycle
+        more often than the p-value says, as it does for a line in the regression of Dickey and Fuller.
+    """
+    lags = (1, 2, 3, period, period + 1) if period > 3 else (1, 2, 3)
+    design, response, rank = lagged_design(values, period, lags)
+    if rank < 0:
+        return Presence(float("nan"), float("nan"), 4, 0)
+    rows = np.flatnonzero(np.isfinite(values))
+    angle = 2.0 * np.pi * rows[rows >= max(lags)] / length
+    waves = np.column_stack([turn(k * angle) for k in (1, 2) for turn in (np.cos, np.sin)])
+    degrees = len(response) - rank - 4
+    full, without = residual_sum(np.column_stack([design, waves]), response), residual_sum(design, response)
+    if degrees < 3 or full <= 1e-20 * max(without, 1e-300):
+        return Presence(float("nan"), float("nan"), 4, 0)
+    statistic = ((without - full) / 4) / (full / degrees)
+    return Presence(statistic, float(fdtrc(4, degrees, max(statistic, 0.0))), 4, degrees)
+
+
 def without_pattern(values: Array, period: int) -> Array:
     """A series less its mean pattern about a line, the level kept; shape (n,), NaN where missing."""
     seen = np.flatnonzero(np.isfinite(values))

@@ -21,6 +21,8 @@ LABELS: Mapping[str, str] = {
     "asked": "season asked about",
     "presence_p": "p-value of a season",
     "presence_standardised": "p-value of a season, standardised to 100 values",
+    "year": "steps a year",
+    "year_standardised": "p-value of a yearly cycle, standardised to 100 values",
     "shift_f": "largest F of a level shift",
     "shift_t": "t of the level shift",
     "trend_t": "t of the trend",

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Hashable, Mapping
+from dataclasses import replace
 from typing import cast
 
 import numpy as np
@@ -11,6 +12,7 @@ from numpy.typing import NDArray
 
 from preflight_magic.kernels.plan_likelihood import Candidate, Comparison
 from preflight_magic.kernels.seasonal_evidence import seasonal_evidence
+from preflight_magic.kernels.seasonal_presence import cycle_presence
 from preflight_magic.kernels.seasonal_strength import average_strength, fill_along_pattern
 from preflight_magic.model import Difference, Evidence, HypothesisTest, Judgement, RemovePattern, TimeSeries
 from preflight_magic.policy import Thresholds
@@ -21,6 +23,7 @@ METHOD = (
     "First whether there is a season at all: an F test of the pattern beside a line and three lags, at a strict level "
     "that grows stricter with the length of the series. Where there are several periods, the cycles of the shortest "
     "may differ within a longer one (the hours of a day within the week): then the longer pattern is removed. "
+    "For days, two pairs of yearly waves are tested beside that and told, not removed. "
     "Then whether the pattern is fixed: a seasonal difference of a fixed pattern leaves a seasonal moving average with "
     "a root at one, so both plans are models of the same data and their likelihoods are compared. HEGY (null: a unit "
     "root at every seasonal frequency) and Canova-Hansen (null: a fixed pattern) are shown beside it; HEGY is weak in "
@@ -28,6 +31,8 @@ METHOD = (
     "strength of the pattern, which a fixed one has as well as a wandering one."
 )
 
+_YEAR = {"daily": 365.25, "business daily": 260.9}
+"""Steps a year of calendars whose own season is the week."""
 _WORDS: Mapping[Hashable, str] = {"fixed": "a fixed pattern", "difference": "a wandering one"}
 
 
@@ -46,16 +51,17 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     Returns
     -------
     Evidence
-        Measures `period`, `asked` (the period considered), `presence_p`, `presence_standardised` (to 100
-        values), `season_shares`; where they can be computed
-        `seasonal_strength` (by moving averages), `hegy_by_cycle` and `canova_hansen_by_cycle` (p-values by the length
-        of the cycle in steps). The F test of the pattern, HEGY and Canova-Hansen, where there is a period.
+        Measures `period`, `asked` (the period considered), `presence_p`, `presence_standardised` (to 100 values),
+        `season_shares`; where they can be computed `seasonal_strength` (by moving averages), `hegy_by_cycle` and
+        `canova_hansen_by_cycle` (p-values by the length of the cycle in steps), and for days `year` (steps) and
+        `year_standardised` (p-value). The F test of the pattern, HEGY and Canova-Hansen, where there is a period.
     """
     comparison = context.comparison
     if comparison is None:
         return Evidence(problem="no plan could be computed.")
     asked = series.season[0]
     measures: dict[str, object] = {"asked": asked, "period": comparison.period, "presence_p": math.nan}
+    measures |= _yearly(series, comparison)
     tests: tuple[HypothesisTest, ...] = ()
     presence = comparison.presence
     if presence is not None and math.isfinite(presence.p_value):
@@ -90,6 +96,17 @@ def examine(series: TimeSeries, context: Context) -> Evidence:
     return Evidence(measures, tests)
 
 
+def _yearly(series: TimeSeries, comparison: Comparison) -> dict[str, object]:
+    """The test of a yearly cycle, where the steps are days and two years are there."""
+    length = _YEAR.get(series.calendar.kind if series.calendar else "")
+    if length is None or len(series.values) < 2.0 * length or series.season[-1] >= int(length):
+        return {}
+    values = series.values.to_numpy(dtype=float, copy=True)
+    values[list(comparison.outliers)] = np.nan
+    found = cycle_presence(np.log(values) if comparison.log else values, comparison.period, length)
+    return {"year": length, "year_standardised": found.standardised} if math.isfinite(found.p_value) else {}
+
+
 def _subject(series: TimeSeries, comparison: Comparison) -> tuple[NDArray[np.float64], str]:
     """What the tests look at: the series after a log; gaps, and isolated outliers, along the mean pattern."""
     values = series.values.to_numpy(dtype=float, copy=True)
@@ -102,7 +119,19 @@ def _subject(series: TimeSeries, comparison: Comparison) -> tuple[NDArray[np.flo
 
 
 def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
-    """Difference at the seasonal lag, remove the pattern, or leave it."""
+    """Difference at the seasonal lag, remove the pattern, or leave it; a yearly cycle of days is told."""
+    found = _short_season(evidence, thresholds)
+    year = cast(float, evidence.measures.get("year_standardised", math.nan))
+    if not year < thresholds.season_p:
+        return found
+    reason = (
+        f" Beyond it there is a yearly cycle of {evidence.measures['year']:g} steps, which no step of a plan removes: "
+        "give the model two or three pairs of yearly waves, and trust the plan without them for horizons of weeks only."
+    )
+    return replace(found, headline=f"{found.headline}, and a yearly cycle", reason=found.reason + reason)
+
+
+def _short_season(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     if evidence.problem is not None:
         return Judgement("inconclusive", "not examined", capital(evidence.problem))
     found = evidence.measures

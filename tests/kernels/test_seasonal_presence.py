@@ -8,7 +8,13 @@ from scipy.signal import lfilter
 from statsmodels.regression.linear_model import OLS
 
 from preflight_magic.kernels.power_transform import lagged_design, residual_sum
-from preflight_magic.kernels.seasonal_presence import Presence, longer_presence, season_presence, without_pattern
+from preflight_magic.kernels.seasonal_presence import (
+    Presence,
+    cycle_presence,
+    longer_presence,
+    season_presence,
+    without_pattern,
+)
 
 
 def noise(n, ar=(), seed=0):
@@ -141,3 +147,20 @@ def test_mean_pattern_about_a_line_is_taken_out():
     seen = np.isfinite(left)
     # one place is seen once: there the line and the pattern cannot be told apart, and no value is far off
     assert left[seen] == pytest.approx(5.0 + 0.1 * t[seen], abs=1e-8)
+
+
+@pytest.mark.parametrize("ar", [0.5, 0.95, 1.0])
+def test_no_long_cycle_is_seen_in_what_has_none(ar):
+    walks = (np.random.default_rng(seed).standard_normal(1000) for seed in range(40))
+    series = [np.cumsum(one) if ar == 1.0 else lfilter([1.0], [1.0, -ar], one) for one in walks]
+    # half a per cent is wanted; 2 of 40 would be ten times that
+    assert sum(cycle_presence(one, 7, 365.25).standardised < 0.005 for one in series) <= 1
+
+
+def test_a_long_cycle_is_seen():
+    t = np.arange(1000)
+    for seed in range(5):
+        values = np.sin(2 * np.pi * t / 365.25) + lfilter(
+            [1.0], [1.0, -0.5], np.random.default_rng(seed).standard_normal(1000)
+        )
+        assert cycle_presence(values, 7, 365.25).standardised < 0.005

@@ -8,6 +8,7 @@ import numpy as np
 import pandas as pd
 import pytest
 
+import preflight_magic as pf
 from preflight_magic.model import Difference, Evidence, RemovePattern, TimeSeries
 from preflight_magic.policy import Thresholds
 from preflight_magic.rungs.contract import Context
@@ -59,3 +60,29 @@ def test_without_a_comparison():
     found = RUNG.judge(RUNG.examine(TimeSeries("x", pd.Series(np.arange(9.0)), None), Context()), BOUNDS)
     assert (found.verdict, found.steps) == ("inconclusive", ())
     assert_reads_well(found.reason)
+
+
+def days(yearly, seed=0):
+    rng = np.random.default_rng(seed)
+    t = np.arange(3 * 365)
+    values = 200.0 + yearly * np.sin(2 * np.pi * t / 365.25) + 8.0 * (t % 7 >= 5) + 3.0 * rng.standard_normal(len(t))
+    return pd.Series(values, pd.date_range("2022-01-03", periods=len(t), freq="D"), name="passengers")
+
+
+def test_a_yearly_cycle_of_days_is_told_beside_the_week():
+    found = pf.check(days(30.0), progress=False)["passengers"].findings["season"]
+    assert found.headline.endswith(", and a yearly cycle")
+    assert "yearly cycle of 365.25 steps" in found.reason
+    # a step of the week alone: which one, the year decides too, since a difference takes most of its cycle away
+    assert found.steps in ((RemovePattern(7),), (Difference(7),))
+    assert_reads_well(found.reason)
+
+
+def test_days_without_a_yearly_cycle_have_none():
+    found = pf.check(days(0.0), progress=False)["passengers"].findings["season"]
+    assert found.headline == "a fixed pattern"
+    assert found.measures["year_standardised"] > 0.005
+
+
+def test_two_years_are_needed_to_speak_of_a_yearly_cycle():
+    assert "year" not in pf.check(days(30.0)[:700], progress=False)["passengers"].findings["season"].measures

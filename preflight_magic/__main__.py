@@ -91,7 +91,7 @@ def _run(given: argparse.Namespace) -> int:
 
 
 def _text(report: Report) -> str:
-    from preflight_magic.present.changes import changes_text
+    from preflight_magic.present.against import changes_text
     from preflight_magic.present.make_overview import overview
     from preflight_magic.present.text import overview_text
 
@@ -112,9 +112,11 @@ def _spans(spans: Sequence[tuple[str, str]], frame: pd.DataFrame) -> list[tuple[
 
 
 def _sentence(error: Exception) -> str:
+    from preflight_magic.intake.remedies import as_options
+
     if isinstance(error, OSError) and error.filename is not None:
         return f"'{error.filename}': {(error.strerror or 'it cannot be used').lower()}; check the path."
-    return " ".join(str(error).split())
+    return as_options(" ".join(str(error).split()))
 
 
 # ---------------------------------------------------------------------------------------------------- options

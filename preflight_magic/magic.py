@@ -21,6 +21,7 @@ from preflight_magic.command_line import (
     unquoted,
 )
 from preflight_magic.completion import IDENTIFIER, matcher
+from preflight_magic.intake.remedies import as_options
 from preflight_magic.model import CheckError
 from preflight_magic.named import earlier_of, executor_of, one_line
 
@@ -144,7 +145,7 @@ def check_series(shell: Shell, line: str, cell: str | None = None) -> Any:
         if earlier is not None:
             report = report.keeping(earlier)
     except CheckError as error:
-        raise UsageError(one_line(error)) from None
+        raise UsageError(as_options(one_line(error))) from None
     except KeyboardInterrupt as stop:
         # What is finished is shown and kept; the interrupt still ends the cell, and "run all" with it.
         finished = getattr(stop, "report", ())

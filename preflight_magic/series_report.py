@@ -9,13 +9,13 @@ from typing import Any
 
 import pandas as pd
 
-from preflight_magic.changes import with_season, without_span
 from preflight_magic.generated import code_of
 from preflight_magic.ladder import climb
 from preflight_magic.model import CheckError, Step, TimeSeries
 from preflight_magic.plan.plan import Plan
 from preflight_magic.policy import Settings
 from preflight_magic.proof_result import Proof
+from preflight_magic.read_again import with_season, without_span
 from preflight_magic.reference import reference_forecast
 from preflight_magic.root_intervals import root_intervals
 from preflight_magic.series_facts import Chosen, SeriesFacts

@@ -8,18 +8,19 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 
-from preflight_magic.model import CalendarKind, Stamp
+from preflight_magic.model import CalendarKind
 
 MIDNIGHT = time()
 _FORMATS: dict[str, str] = {"yearly": "%Y", "quarterly": "%Y-%m", "monthly": "%Y-%m"}
 
 
-def stamp_text(stamp: Stamp, kind: CalendarKind | None = None) -> str:
+def stamp_text(stamp: object, kind: CalendarKind | None = None) -> str:
     """Write a stamp as briefly as its calendar allows: ``2019-04`` in a monthly index.
 
     Parameters
     ----------
     stamp : pandas.Period, pandas.Timestamp or int
+        Or whatever else stands in an index.
     kind : CalendarKind, optional
         What the index counts; None where that is not known, then the date, and the time unless it is midnight.
     """
@@ -31,6 +32,8 @@ def stamp_text(stamp: Stamp, kind: CalendarKind | None = None) -> str:
         return format(stamp, _FORMATS[kind])
     if is_midnight(stamp) and kind not in ("hourly", "minutely"):
         return f"{stamp:%Y-%m-%d}"
+    if stamp.microsecond or stamp.nanosecond:
+        return str(stamp)
     return f"{stamp:%Y-%m-%d %H:%M:%S}" if stamp.second else f"{stamp:%Y-%m-%d %H:%M}"
 
 

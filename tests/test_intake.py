@@ -195,6 +195,17 @@ def test_sparse_numbers():
             ["1", "2", "3"] * 20,
             "text, for example '1'; convert it with `frame['freight'] = pd.to_numeric(",
         ),
+        (
+            ["20.50 €", "1,021 €"] * 30,
+            "convert it with `frame['freight'] = pd.to_numeric(frame['freight'].str.replace(",
+        ),
+        (
+            ["EUR 20.50", "EUR 7"] * 30,
+            "convert it with `frame['freight'] = pd.to_numeric(frame['freight'].str.replace(",
+        ),
+        (["4,50 €", "5,20 €"] * 30, "drop the column, or pass it as `series`"),
+        (["berth 1", "berth 2"] * 30, "drop the column, or pass it as `series`"),
+        (["20 h", "3 d"] * 30, "drop the column, or pass it as `series`"),
         (pd.Categorical(["a", "b"] * 30), "column 'freight': categories, for example 'a'"),
         (pd.date_range("2020-01-01", periods=60), "column 'freight': dates, not numbers"),
         (pd.period_range("2020-01-01", periods=60, freq="D"), "column 'freight': periods, not numbers"),

@@ -16,7 +16,7 @@ HEAVY = {"statsmodels", "matplotlib", "ipywidgets"}
 
 NOUNS = {"model", "stamps"}
 CHECKS = NOUNS | {"policy", "intake", "kernels", "rungs", "ladder", "plan", "present"}
-REPORT = {"answer", "changes", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
+REPORT = {"answer", "read_again", "overview", "generated", "saving", "series_report", "report", "progress", "batch"}
 REPORT |= {"reference", "reference_mixture", "reference_parts", "root_intervals", "together", "together_words"}
 REPORT |= {"proof", "proof_result", "proof_words"}
 REPORT |= {"record", "against", "group", "standing", "series_facts"}

@@ -104,6 +104,22 @@ def test_quarters(folder, capsys, text, kind):
     assert calendar.kind == kind
 
 
+@pytest.mark.parametrize(("mark", "noun"), [(";", "semicolons"), ("\t", "tabs")])
+def test_other_marks_between_columns_are_named(folder, capsys, mark, noun):
+    table().to_csv("marks.csv", sep=mark, decimal=",", index_label="month")
+    status, _, err = run(capsys, "marks.csv")
+    assert status == WRONG
+    assert f"'marks.csv' has {noun} between its columns" in err
+    assert f"sep={mark!r}" in err
+
+
+def test_remedies_are_written_as_options(folder, capsys):
+    assert main(["now.csv", "--season=-3"]) == WRONG
+    err = capsys.readouterr().err
+    assert "--season 12 for months, or --season 1 for none" in err
+    assert "season=" not in err
+
+
 def test_numbered_rows_and_their_spans(folder, capsys):
     table().reset_index(drop=True).rename_axis("row").to_csv("n.csv")
     assert run(capsys, "n.csv", "--only", "walk", "--exclude", "3..5", "--save", "a.json")[0] == SAME
@@ -128,7 +144,7 @@ def write(name: str, data: bytes) -> None:
         (("now.csv", "--significance", "5"), "significance is 5.0"),
         (("now.csv", "--time", "tide"), "has no column 'tide'; it has 'month'"),
         (("now.csv", "--only", "tide"), "only names 'tide'"),
-        (("now.csv", "--series", "tide"), "series='tide'"),
+        (("now.csv", "--series", "tide"), "--series tide"),
         (("now.csv", "--odds", "0"), ""),
         (("now.txt",), "neither .csv nor .parquet"),
         (("empty.csv",), "cannot be read as CSV"),

@@ -18,7 +18,9 @@ from preflight_magic.stamps import counted, stamp_text
         (pd.Timestamp("2019-04-30"), "hourly", "2019-04-30 00:00"),
         (pd.Timestamp("2019-04-30 13:30", tz="Europe/Berlin"), None, "2019-04-30 13:30"),
         (pd.Timestamp("2019-04-30 13:30:05"), None, "2019-04-30 13:30:05"),
+        (pd.Timestamp("2019-04-30 13:30:05.25"), None, "2019-04-30 13:30:05.250000"),
         (17, "counter", "17"),
+        ("north", None, "north"),
     ],
 )
 def test_a_stamp_is_as_brief_as_its_calendar(stamp, kind, text):

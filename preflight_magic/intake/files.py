@@ -65,12 +65,26 @@ def read_table(path: Path, *, time: str | None = None, long: bool = False) -> pd
 
 def _read_csv(path: Path) -> pd.DataFrame:
     try:
+        _refuse_other_separators(path)
         frame: pd.DataFrame = pd.read_csv(path, low_memory=False, **_EXACT)
+    except CheckError:
+        raise
     except (ValueError, pd.errors.ParserError) as error:
         raise CheckError(f"'{path.name}' cannot be read as CSV ({_first_line(error)}); save it again as CSV.") from None
     if frame.shape[1] < 2:
         raise CheckError(f"'{path.name}' has {frame.shape[1]} column; a column of dates and one of values are needed.")
     return frame
+
+
+def _refuse_other_separators(path: Path) -> None:
+    """Say what stands between the columns, where it is no comma: numbers with a decimal comma would be torn apart."""
+    first = str(next(iter(pd.read_csv(path, nrows=0).columns), ""))
+    for mark, noun in ((";", "semicolons"), ("\t", "tabs")):
+        if mark in first:
+            raise CheckError(
+                f"'{path.name}' has {noun} between its columns; save it with commas and decimal points, as from "
+                f"pd.read_csv({path.name!r}, sep={mark!r}, decimal=',')."
+            )
 
 
 def _read_parquet(path: Path) -> pd.DataFrame:
@@ -108,7 +122,7 @@ def _stamps(column: pd.Series, path: Path) -> pd.Index:
     bad = next(value for value in text if _not_a_date(value))
     raise CheckError(
         f"column {column.name!r} of '{path.name}' holds {bad[:40]!r}, which is no date written as 2024-12-31; write "
-        "the dates so, or name their column with --time."
+        "the dates so, or name another column with --time."
     )
 
 

@@ -1,13 +1,19 @@
-"""Code that mends an index, in terms of what the person passed."""
+"""What a person is told to do, in terms of what they passed: code that mends an index, options as they type them."""
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from typing import Literal
 
 import pandas as pd
 
 from preflight_magic.model import Calendar, CheckError
+
+_PASSED = re.compile(
+    r"""`[^`]*`|'[^']*'|"[^"]*"|\b(season|horizon|time|series|value|significance|target)=('[^']*'|"[^"]*"|-?\w[\w.]*)"""
+)
+"""Code and names in quotes, which stay as they are, or a parameter of the check with its value."""
 
 Kind = Literal["dates", "periods", "numbers"]
 
@@ -39,6 +45,18 @@ class Remedies:
     def mend(self, code: str) -> str:
         """Write an expression that continues `base`, with what else to change."""
         return f"`{self.base}{code}`{self.also}"
+
+
+def as_options(sentence: str) -> str:
+    """Sentence in which parameters of the check are written as options: ``--season 12`` for ``season=12``."""
+
+    def option(found: re.Match[str]) -> str:
+        name, value = found.groups()
+        if name is None:
+            return found[0]
+        return f"--{name} {value if ' ' in value else value.strip(chr(39) + chr(34))}"
+
+    return _PASSED.sub(option, sentence)
 
 
 class LacksStampsError(CheckError):

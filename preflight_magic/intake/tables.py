@@ -118,8 +118,8 @@ def _refuse_plain_numbers(table: pd.DataFrame, stamps: pd.Index, options: Option
             f"the rows are numbered from {stamps[0]}, and column {dated[0]!r} holds the dates; pass time={dated[0]!r}."
         )
     raise CheckError(
-        f"the rows are numbered from {stamps[0]}, which tells no calendar; give the season, for example season=12 for "
-        "months or season=1 for none, or make the dates the index."
+        f"the rows are numbered from {stamps[0]}, which tells no calendar; give the season, for example 12 for months "
+        "or 1 for none, or make the dates the index."
     )
 
 

@@ -14,7 +14,8 @@ from preflight_magic.plan.fixed_part import fixed_part, lags_of
 from preflight_magic.plan.points import undo_points
 from preflight_magic.plan.regular import regular
 from preflight_magic.plan.timeline import as_float, join_forecast
-from preflight_magic.plan.words import called, stamp_text
+from preflight_magic.plan.words import called
+from preflight_magic.stamps import stamp_text
 
 if TYPE_CHECKING:
     from preflight_magic.plan.plan import Plan

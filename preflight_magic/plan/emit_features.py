@@ -74,11 +74,14 @@ def _features_lines(plan: Plan, index: pd.Index, period: int) -> list[str]:
         "    newest = x.shift(steps)",
         "    X = pd.DataFrame(index=index)",
     ]
+    cycle = seasonal or next((step.period for step in plan.steps if isinstance(step, RemovePattern)), period)
+    if cycle > 1:
+        lines += [f"    seasons = -(-steps // {cycle}) * {cycle}  # steps, rounded up to whole seasons"]
     if seasonal:
         lines += comment(
             f"Difference {seasonal}: the target is the change from the newest known value of the same season.", 4
         )
-        lines += [f"    base = x.shift(-(-steps // {seasonal}) * {seasonal})"]
+        lines += ["    base = x.shift(seasons)"]
     elif lags:
         lines += [
             *comment("Difference 1: the target is the change from the newest known value.", 4),
@@ -95,9 +98,8 @@ def _features_lines(plan: Plan, index: pd.Index, period: int) -> list[str]:
         f"    for lag in range({LAGS + 1}):",
         f'        X[f"{name}_{{lag}}_earlier"] = newest{change}.shift(lag)',
     ]
-    cycle = seasonal or next((step.period for step in plan.steps if isinstance(step, RemovePattern)), period)
     if cycle > 1:
-        lines += [f'    X["{name}_last_season"] = x{change}.shift(-(-steps // {cycle}) * {cycle})']
+        lines += [f'    X["{name}_last_season"] = x{change}.shift(seasons)']
         lines += [f'    X["season"] = np.arange(len(index)) % {cycle}  # position in the cycle, known at any time']
     if any(isinstance(step, RemoveTrend) for step in plan.steps):
         lines += comment("Trees do not go on beyond the times they saw: give them the trend removed instead.", 4)

@@ -9,7 +9,8 @@ import numpy.typing as npt
 import pandas as pd
 
 from preflight_magic.model import CheckError, Difference, RemovePattern, RemoveShift, RemoveTrend, Stamp, Step
-from preflight_magic.plan.words import called, stamp_text
+from preflight_magic.plan.words import called
+from preflight_magic.stamps import stamp_text
 
 Array = npt.NDArray[np.float64]
 

@@ -10,8 +10,8 @@ import numpy.typing as npt
 import pandas as pd
 
 from preflight_magic.model import CheckError, Log, Logit, PerDay, Power, Step
-from preflight_magic.plan.words import called, describe, stamp_text
-from preflight_magic.stamps import days_of
+from preflight_magic.plan.words import called, describe
+from preflight_magic.stamps import days_of, stamp_text
 
 Array = npt.NDArray[np.float64]
 PointStep = PerDay | Log | Power | Logit

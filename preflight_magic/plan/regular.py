@@ -15,7 +15,8 @@ from preflight_magic.model import (
     Repair,
     Sort,
 )
-from preflight_magic.plan.words import called, stamp_text
+from preflight_magic.plan.words import called
+from preflight_magic.stamps import stamp_text
 
 
 def regular(repairs: tuple[Repair, ...], y: pd.Series) -> pd.Series:

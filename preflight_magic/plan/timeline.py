@@ -6,7 +6,8 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.model import CheckError
-from preflight_magic.plan.words import called, stamp_text
+from preflight_magic.plan.words import called
+from preflight_magic.stamps import stamp_text
 
 
 def as_float(series: pd.Series) -> pd.Series:

@@ -1,4 +1,4 @@
-"""How stamps, steps and series are named in short texts and in sentences."""
+"""How steps and series are named in short texts and in sentences."""
 
 from __future__ import annotations
 
@@ -23,14 +23,7 @@ from preflight_magic.model import (
     Sort,
     Step,
 )
-from preflight_magic.stamps import is_midnight
-
-
-def stamp_text(stamp: object) -> str:
-    """Stamp in its series' own frequency: ``2021-03`` for a month, a date without a time of day that is zero."""
-    if isinstance(stamp, pd.Timestamp) and is_midnight(stamp):
-        return str(stamp.date())
-    return str(stamp)
+from preflight_magic.stamps import stamp_text
 
 
 def describe(step: Step | Repair) -> str:

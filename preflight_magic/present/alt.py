@@ -10,6 +10,7 @@ import numpy as np
 import pandas as pd
 
 from preflight_magic.present import words
+from preflight_magic.present.measures import root_text
 
 if TYPE_CHECKING:
     from preflight_magic.present.cards import HalvesPicture, OverviewRow, Picture, PlanRow, ProofCard, RootsPicture
@@ -63,7 +64,7 @@ def roots_alt(picture: RootsPicture) -> str:
             parts.append(f"No {part} roots.")
             continue
         largest = max(roots, key=lambda root: root.modulus)
-        told = words.root_text(largest, picture.noun).removeprefix(f"{part} ")
+        told = root_text(largest, picture.noun).removeprefix(f"{part} ")
         parts.append(f"{words.count_of(len(roots), f'{part} root')}, largest modulus {told}.")
     return " ".join(parts)
 

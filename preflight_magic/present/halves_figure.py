@@ -69,4 +69,4 @@ def _distances(sheet: Sheet, picture: HalvesPicture) -> None:
             sheet.marks(panel.points(float(np.clip(z, -_REACH, _REACH)), level), "o", 5.0)
     sheet.base(panel, [-4, -2, 0, 2, 4], ["\u22124", "\u22122", "0", "2", "4"])
     sheet.words(4.55, panel.top + 0.12, "second half less first", TITLE)
-    sheet.words(panel.left, 0.06, "in standard errors", color=FAINT)
+    sheet.words(panel.left, 0.06, "standard errors; dashed: two", color=FAINT)

@@ -34,7 +34,7 @@ from preflight_magic.present.cards import (
     StepMark,
     TestRow,
 )
-from preflight_magic.present.make_changes import changes
+from preflight_magic.present.make_switched import changes
 from preflight_magic.present.measures import measure_rows
 
 if TYPE_CHECKING:

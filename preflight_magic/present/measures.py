@@ -20,7 +20,7 @@ LABELS: Mapping[str, str] = {
     "season_asked": "season given by the person",
     "asked": "season asked about",
     "presence_p": "p-value of a season",
-    "presence_standardised": "the same, standardised to 100 values",
+    "presence_standardised": "p-value of a season, standardised to 100 values",
     "year": "steps a year",
     "year_standardised": "p-value of a yearly cycle, standardised to 100 values",
     "shift_f": "largest F of a level shift",
@@ -38,7 +38,17 @@ LABELS: Mapping[str, str] = {
     "variance_implied": "variance the model implies",
     "variance_sample": "variance of the sample",
     "half_life": "half-life",
-    "log_gain": "fall of \u22122 log-likelihood with the log",
+    "log_gain": "fall of \u22122 log likelihood with the log",
+    "per_days": "fall of \u22122 log likelihood, values per day",
+    "per_workdays": "fall of \u22122 log likelihood, values per workday",
+    "unit": "better of the two",
+    "pattern": "seasonal pattern beside it",
+    "ma_at_one": "fall of log likelihood with the MA root at one",
+    "seasonal_ma_at_one": "fall of log likelihood with the seasonal MA root at one",
+    "share_more": "evidence for more differences than taken",
+    "share_less": "evidence for fewer differences than taken",
+    "share_fixed": "evidence for a fixed season or none",
+    "share_wandering": "evidence for a wandering season",
     "smallest": "smallest value",
     "box_cox": "Box-Cox exponent",
     "box_cox_lower": "its lower bound",
@@ -54,6 +64,12 @@ LABELS: Mapping[str, str] = {
 }
 """Labels of measures that cannot be read from their key."""
 
+_ANSWERS: Mapping[str, Mapping[str, str]] = {
+    "season_shares": {"difference": "wandering", "fixed": "fixed pattern"},
+    "trend_shares": {"second": "second difference"},
+}
+"""Names of answers that cannot be read without their question."""
+
 _HIDDEN = frozenset({"shift_text"})
 _TOLD = (
     str, bool, int, float, np.bool_, np.number, pd.Period, pd.Timestamp, dt.date, Mapping, np.ndarray, pd.Series,
@@ -67,7 +83,7 @@ def measure_rows(measures: Mapping[str, object], noun: str) -> Iterator[tuple[st
     Parameters
     ----------
     measures : Mapping
-        Of a finding. Keys that end in ``_p`` are p-values, those that end in ``share`` or ``shares`` are shares.
+        Of a finding. Keys that end in ``_p`` are p-values, those with ``share`` or ``shares`` are shares.
     noun : str
         A step of the calendar.
     """
@@ -89,12 +105,16 @@ def label(key: str) -> str:
 
 def _value(key: str, value: object, noun: str) -> str:
     number = isinstance(value, float | int | np.number) and not isinstance(value, bool)
-    if key.endswith("_p") and number:
+    if key.endswith(("_p", "_standardised")) and number:
         return words.p_value(float(cast(float, value)))
     if key.endswith("share") and number:
         return share(float(cast(float, value)))
+    if key.startswith("share_") and number:
+        return rough_share(float(cast(float, value)))
     if key.endswith("shares") and isinstance(value, Mapping):
-        return ", ".join(f"{words.plain(str(name))}: {rough_share(float(part))}" for name, part in value.items())
+        answers = _ANSWERS.get(key, {})
+        told = ((words.plain(answers.get(str(name), str(name))), float(part)) for name, part in value.items())
+        return ", ".join(f"{name}: {rough_share(part)}" for name, part in told)
     if key == "half_life" and number:
         return f"{words.number(float(cast(float, value)))} {words.plural(noun, float(cast(float, value)))}"
     return words.value_text(value, noun)
@@ -122,7 +142,14 @@ def root_rows(roots: Sequence[Root], noun: str) -> Iterator[tuple[str, str]]:
         groups.setdefault((root.part, place), []).append(root)
     for (part, _), group in groups.items():
         if len(group) == 1:
-            yield f"{part} root", words.root_text(group[0], noun).removeprefix(f"{part} ")
+            yield f"{part} root", root_text(group[0], noun).removeprefix(f"{part} ")
         else:
-            one = words.root_text(group[0], noun).removeprefix(f"{part} ").split(",")[0]
+            one = root_text(group[0], noun).removeprefix(f"{part} ").split(",")[0]
             yield f"{part} seasonal roots", f"{one}, {len(group)} roots at the seasonal frequencies"
+
+
+def root_text(root: Root, noun: str) -> str:
+    """One inverse root: part, modulus with its uncertainty, and cycle."""
+    spread = "" if math.isnan(root.standard_error) else f" \u00b1 {words.number(2 * root.standard_error, 2)}"
+    cycle = "no cycle" if math.isinf(root.period) else f"a cycle of {words.number(root.period)} {words.plural(noun)}"
+    return f"{root.part} {words.number(root.modulus)}{spread}, {cycle}"

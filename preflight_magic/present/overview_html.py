@@ -66,7 +66,7 @@ def _row(row: OverviewRow, place: int, linked: bool, key: str | None) -> Markup:
         handler = _OPEN.format(key=key, row=place)
         button = el("button", name, type="button", class_="pfm-open", hidden=True, onclick=handler)
         shown = [el("span", name, class_="pfm-closed"), button]
-    said = [el("li", question, " ", verdict(value), ". ", headline) for question, value, headline in row.rungs]
+    said = [el("li", question, " ", verdict(value), ": ", headline) for question, value, headline in row.rungs]
     plan = el("details", el("summary", row.plan), el("ul", said)) if said else row.plan
     before, after = spark_alts(row)
     small = el("td", picture(spark(row.after), after, SPARK_WIDTH, "pfm-spark")) if row.after is not None else el("td")

@@ -147,9 +147,10 @@ def overview_text(card: OverviewCard, width: int | None = None) -> str:
     longest = max([6, *(words.width_of(words.name_text(row.name)) for row in card.rows)])
     name = min(longest, max(8, width // 3))
     rest = width - name - 14 - 4
-    rows = [("series", "verdict", "plan")]
+    rows = [("series", "verdict", "plan and notes" if any(row.note for row in card.rows) else "plan")]
     for row in card.rows:
-        told = row.plan if not row.note else f"{row.plan}; {row.note}" if row.plan != words.NONE else row.note
+        note = words.kept_together(row.note)
+        told = row.plan if not note else f"{row.plan}; {note}" if row.plan != words.NONE else note
         rows.append((words.fit(words.name_text(row.name), name).rstrip(), words.verdict_text(row.verdict), told))
     counts = ", ".join(f"{count:,} {words.verdict_text(verdict)}" for verdict, count in card.counts)
     summary = f"{sum(count for _, count in card.counts):,} series: {counts}"

@@ -7,8 +7,8 @@ import math
 import numpy as np
 import pandas as pd
 
-from preflight_magic.plan.words import stamp_text
 from preflight_magic.present import words
+from preflight_magic.stamps import stamp_text
 
 _MONTHS = ["Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"]
 _HOURS = {"hour": 1.0, "day": 24.0, "month": 28 * 24.0, "year": 365 * 24.0}

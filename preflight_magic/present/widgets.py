@@ -52,7 +52,7 @@ def show(view: ReportView | SeriesView) -> Controller | None:
 
 def show_changes(changes: pd.DataFrame) -> None:
     """Show what changed since an earlier report: a table in a notebook, as text in a terminal."""
-    from preflight_magic.present.changes import changes_html, changes_text
+    from preflight_magic.present.against import changes_html, changes_text
 
     if in_notebook():
         show_bundle({"text/html": changes_html(changes), "text/plain": changes_text(changes)})

@@ -26,12 +26,11 @@ from preflight_magic.model import (
     RemoveShift,
     RemoveTrend,
     Repair,
-    Root,
     Sort,
     Step,
     Verdict,
 )
-from preflight_magic.plan.words import stamp_text
+from preflight_magic.stamps import stamp_text
 
 MINUS = "\u2212"
 NONE = "\u2013"
@@ -223,13 +222,15 @@ def test_details(test: HypothesisTest) -> str:
 
 
 def sentence(text: str) -> str:
-    """Text on one line that begins with a capital, unless its first word is a symbol of one letter.
-
-    A percent sign stays with its number.
-    """
-    text = plain(text).replace(" %", f"{NO_BREAK}%")
+    """Text on one line that begins with a capital, unless its first word is a symbol of one letter."""
+    text = kept_together(plain(text))
     symbol = len(text.split(" ", 1)[0]) == 1 and text[:1] != "a"
     return text if symbol else text[:1].upper() + text[1:]
+
+
+def kept_together(text: str) -> str:
+    """Text that does not break between a number and its percent sign."""
+    return text.replace(" %", f"{NO_BREAK}%")
 
 
 def label_text(key: str) -> str:
@@ -267,13 +268,6 @@ def _many(values: list[object], noun: str, limit: int = 8) -> str:
         return NONE
     shown = ", ".join(value_text(v, noun) for v in values[:limit])
     return shown if len(values) <= limit else f"{shown} and {len(values) - limit:,} more"
-
-
-def root_text(root: Root, noun: str) -> str:
-    """One inverse root: part, modulus with its uncertainty, and cycle."""
-    spread = "" if math.isnan(root.standard_error) else f" \u00b1 {number(2 * root.standard_error, 2)}"
-    cycle = "no cycle" if math.isinf(root.period) else f"a cycle of {number(root.period)} {plural(noun)}"
-    return f"{root.part} {number(root.modulus)}{spread}, {cycle}"
 
 
 # ------------------------------------------------------------------------------------------------- text width

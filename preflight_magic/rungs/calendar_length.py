@@ -87,8 +87,8 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         )
         return Judgement("transform", f"the totals follow their {unit}", reason, (PerDay(unit),))
     told = f"{'lower' if gain >= 0.0 else 'raise'} -2 log likelihood by {abs(gain):.1f}"
-    reason = f"Values per {day} {told}, Jacobian and penalties included; they need more than {margin:g}."
-    return Judgement("clear", "the values do not follow their days", reason)
+    told += f", Jacobian and penalties included; a fall of more than {margin:g} would speak for them."
+    return Judgement("clear", "the values do not follow their days", f"Values per {day} {told}")
 
 
 def _beside(found: Mapping[str, object], other: str) -> str:

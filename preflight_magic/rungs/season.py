@@ -160,7 +160,9 @@ def _short_season(evidence: Evidence, thresholds: Thresholds) -> Judgement:
     split = cast("Mapping[Hashable, float]", found["season_shares"])
     kind = next(iter(split))
     even = split[kind] < thresholds.even_share
-    reason = f"There is a season of {period} ({p_text}). {told(split, _WORDS)}"
+    split_text = told(split, _WORDS)
+    # One sentence: the code quotes the first as the reason of its step.
+    reason = f"There is a season of {period} ({p_text}); {split_text[:1].lower()}{split_text[1:]}"
     if even:
         reason += " That is too even to call: both plans are worth a forecast."
     reason += _beside(evidence.tests, kind == "difference", thresholds.significance)

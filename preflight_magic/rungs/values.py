@@ -214,7 +214,9 @@ def judge(evidence: Evidence, thresholds: Thresholds) -> Judgement:
         return Judgement(
             "infeasible", "one value only", "All observed values are the same, so there is nothing to decide."
         )
-    missing = f"{found['missing']} missing ({found['missing_share']:.1%})" if found["missing"] else "none missing"
+    missing = (
+        f"{found['missing']} missing ({100 * found['missing_share']:.1f} %)" if found["missing"] else "none missing"
+    )
     demand = _demand(found, thresholds)
     kinds, roads = other_kinds(found)
     notes, sentences = [], [_reason(found, demand)]

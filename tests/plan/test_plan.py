@@ -35,7 +35,7 @@ from preflight_magic.plan.plan import Plan, canonical, describe
         ((RemoveShift(pd.Period("2021-03", freq="M")),), "remove shift from 2021-03"),
         ((RemoveShift(pd.Timestamp("2021-03-01")),), "remove shift from 2021-03-01"),
         ((RemoveShift(pd.Timestamp("2021-03-01", tz="Europe/Oslo")),), "remove shift from 2021-03-01"),
-        ((RemoveShift(pd.Timestamp("2021-03-01 06:00")),), "remove shift from 2021-03-01 06:00:00"),
+        ((RemoveShift(pd.Timestamp("2021-03-01 06:00")),), "remove shift from 2021-03-01 06:00"),
         ((RemoveShift(17),), "remove shift from 17"),
         ((RemovePattern(12),), "remove pattern 12"),
     ],

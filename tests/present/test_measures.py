@@ -18,8 +18,15 @@ from preflight_magic.present.measures import measure_rows
         (
             "trend_shares",
             {"no trend": 0.9976, "trend": 0.002, "second": 0.0},
-            ("evidence for a trend", "no trend: over 99 %, trend: under 1 %, second: under 1 %"),
+            ("evidence for a trend", "no trend: over 99 %, trend: under 1 %, second difference: under 1 %"),
         ),
+        (
+            "season_shares",
+            {"difference": 0.999, "fixed": 0.001},
+            ("evidence by kind of season", "wandering: over 99 %, fixed pattern: under 1 %"),
+        ),
+        ("share_less", 1.86e-11, ("evidence for fewer differences than taken", "under 1 %")),
+        ("presence_standardised", 1.85e-96, ("p-value of a season, standardised to 100 values", "< 0.001")),
         ("d_shares", {1: 0.74, 0: 0.26}, ("evidence by number of differences", "1: 74 %, 0: 26 %")),
         ("half_life", 1.0, ("half-life", "1 month")),
         ("shift_at", pd.Period("2019-04", "M"), ("shift at", "2019-04")),

@@ -8,6 +8,7 @@ import pytest
 
 from preflight_magic.model import Difference, FillGaps, HypothesisTest, Log, PerDay, Power, RemoveShift, Root
 from preflight_magic.present import words
+from preflight_magic.present.measures import root_text
 
 
 @pytest.mark.parametrize(
@@ -157,8 +158,8 @@ def test_sentences_begin_with_a_capital_but_symbols_do_not() -> None:
 
 
 def test_root() -> None:
-    assert words.root_text(Root("AR", 0.62, math.inf, 0.11), "month") == "AR 0.62 ± 0.22, no cycle"
-    assert words.root_text(Root("MA", 0.8, 5.3, math.nan), "month") == "MA 0.8, a cycle of 5.3 months"
+    assert root_text(Root("AR", 0.62, math.inf, 0.11), "month") == "AR 0.62 ± 0.22, no cycle"
+    assert root_text(Root("MA", 0.8, 5.3, math.nan), "month") == "MA 0.8, a cycle of 5.3 months"
 
 
 def test_width_counts_columns_of_a_terminal() -> None:

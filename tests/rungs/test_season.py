@@ -45,7 +45,7 @@ def evidence(asked, period, p, split=None):
         (12, 12, 1e-5, {"fixed": 0.69, "difference": 0.31}, "inconclusive", (RemovePattern(12),), "too even to call"),
         (12, 12, 1e-5, {"difference": 0.51, "fixed": 0.49}, "inconclusive", (Difference(12),), "too even to call"),
         (24, 168, 1e-9, {"fixed": 1.0}, "transform", (RemovePattern(168),), "differ within a longer season of 168"),
-        (12, 12, 1e-5, {"fixed": 1.0}, "transform", (RemovePattern(12),), "Over 99 % of the evidence"),
+        (12, 12, 1e-5, {"fixed": 1.0}, "transform", (RemovePattern(12),), "over 99 % of the evidence"),
     ],
 )
 def test_judgement(asked, period, p, split, verdict, steps, said):

@@ -39,7 +39,7 @@ GAPS = {"missing": 5, "observed": 139, "missing_share": 5 / 144, "longest_gap": 
     ("change", "verdict", "headline", "reason"),
     [
         ({}, "clear", "144 values, none missing", "All values lie between 12 and 90.5, and none stands alone."),
-        (GAPS, "clear", "144 values, 5 missing (3.5%)", "The longest gap is 3 steps from 2014-02."),
+        (GAPS, "clear", "144 values, 5 missing (3.5 %)", "The longest gap is 3 steps from 2014-02."),
         (
             {"outliers": 1, "outliers_at": ("2015-03",)},
             "clear",

@@ -64,7 +64,8 @@ def _rows(changes: pd.DataFrame) -> tuple[list[tuple[str, str, str, str]], str]:
     seen = [
         (name, row)
         for name, (_, row) in zip(changes.index.tolist(), changes.iterrows(), strict=True)
-        if row["status"] != "stands" or (isinstance(row["note"], str) and row["note"])
+        if row["status"] != "stands"
+        or (row["verdict_now"] != "infeasible" and isinstance(row["note"], str) and row["note"])
     ]
     rows = [
         (words.name_text(name, 40), str(row["status"]), _told(row["plan"]), words.sentence(_told(row["note"])))

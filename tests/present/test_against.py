@@ -6,7 +6,7 @@ import pandas as pd
 import pytest
 
 from preflight_magic.against import COLUMNS
-from preflight_magic.present.changes import MOST_ROWS, changes_html, changes_text
+from preflight_magic.present.against import MOST_ROWS, changes_html, changes_text
 
 
 def changes(*rows: tuple[object, str, str, str]) -> pd.DataFrame:
@@ -20,6 +20,13 @@ def test_plans_that_stand_are_only_counted() -> None:
     assert changes_text(table) == "Against the earlier report: all plans stand."
     assert "<table" not in changes_html(table)
     assert changes_text(table.iloc[:1]) == "Against the earlier report: the plan stands."
+
+
+def test_what_was_and_is_infeasible_is_only_counted() -> None:
+    table = changes(("flag", "stands", "", "text."), ("walk", "stands", "log", "The data now lean."))
+    table["verdict_now"] = ["infeasible", "transform"]
+    assert "flag" not in changes_text(table)
+    assert "walk" in changes_text(table)
 
 
 def test_others_are_told() -> None:

@@ -34,7 +34,10 @@ LAYERS: dict[str, tuple[set[str], set[str]]] = {
     "intake": (NOUNS | {"intake"}, {"numpy", "pandas"}),
     "plan": (NOUNS | {"plan"}, {"numpy", "pandas"}),
     # Rungs know their common contract and how shares of the evidence are told, never each other.
-    "rungs": (NOUNS | {"kernels", "policy", "rungs.contract", "rungs.shares", "rungs.kinds"}, {"numpy", "pandas"}),
+    "rungs": (
+        NOUNS | {"kernels", "policy", "rungs.contract", "rungs.shares", "rungs.kinds", "rungs.root_notes"},
+        {"numpy", "pandas"},
+    ),
     "ladder": (NOUNS | {"policy", *SHARED, "rungs", "plan"}, {"numpy", "pandas"}),
     # Pillow comes with matplotlib, which draws through it.
     "present": (NOUNS | {"plan", "present"}, {"ipywidgets", "matplotlib", "numpy", "pandas", "IPython", "PIL"}),

@@ -11,6 +11,7 @@ from scipy.special import logsumexp
 from preflight_magic.kernels.arma_parameters import Order, polynomials
 from preflight_magic.kernels.arma_search import FIRST_ORDERS, FURTHER_ORDERS, Fitted, fit
 from preflight_magic.kernels.breaks import DatedShift
+from preflight_magic.kernels.plan_prior import PlanPrior
 from preflight_magic.kernels.restricted_likelihood import (
     Array,
     Contrasts,
@@ -27,54 +28,8 @@ _T3 = float(np.log(2.0 / (np.pi * np.sqrt(3.0))))
 _ORDERS = len(FIRST_ORDERS) + len(FURTHER_ORDERS)
 _HOPELESS = 12.0
 """Log evidence behind the best plan so far from which the larger ARMA orders of a plan are not tried."""
-_SHORT, _LONG_ENOUGH = 30, 48
-"""Values up to which, and from which on, a series is taken for a short one in the prior of a difference."""
 _NEGLIGIBLE = 7.0
 """Log evidence behind the leading order from which an order adds less than a thousandth."""
-
-
-@dataclass(frozen=True)
-class PlanPrior:
-    """What is believed before the data, and the two margins outside the comparison. Natural logarithms.
-
-    Attributes
-    ----------
-    log_margin : float
-        Fall of -2 log likelihood from which a log is taken.
-    season_p : float
-        Standardised p-value below which a season is there.
-    trend, shift : float
-        Log odds against a trend, and against a shift besides the number of its dates.
-    difference, second, wandering, both : float
-        Log odds against a first difference, a second one on top of it, a seasonal difference alone where there is a
-        season, and a seasonal with an ordinary one.
-    short : float
-        What is taken off the log odds against a first difference in a series of at most 30 values; less in longer
-        ones, and nothing from 48 on.
-    slope : float
-        Scale of the prior of the slope a step, in units of the spread of the first differences.
-    outlier_bound : float
-        Absolute t-value from which one value stands alone and is left out.
-    """
-
-    log_margin: float
-    season_p: float
-    trend: float
-    shift: float
-    difference: float
-    second: float
-    wandering: float
-    both: float
-    short: float
-    slope: float
-    outlier_bound: float
-
-    def of_differences(self, d: int, D: int, count: int) -> float:
-        """Log odds against d ordinary and D seasonal differences of a series of so many values."""
-        if D:
-            return self.both if d else self.wandering
-        shortness = min(max((_LONG_ENOUGH - count) / (_LONG_ENOUGH - _SHORT), 0.0), 1.0)
-        return (self.difference - self.short * shortness) * (d > 0) + self.second * (d > 1)
 
 
 @dataclass(frozen=True)

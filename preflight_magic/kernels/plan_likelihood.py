@@ -15,7 +15,8 @@ from scipy.special import logsumexp
 from preflight_magic.kernels.arma_parameters import polynomials
 from preflight_magic.kernels.breaks import DatedShift, date_shift
 from preflight_magic.kernels.outliers import additive_outliers
-from preflight_magic.kernels.plan_evidence import Assessed, Candidate, PlanPrior, Subject, assess, base_columns, step_t
+from preflight_magic.kernels.plan_evidence import Assessed, Candidate, Subject, assess, base_columns, step_t
+from preflight_magic.kernels.plan_prior import PlanPrior
 from preflight_magic.kernels.power_transform import log_gain
 from preflight_magic.kernels.restricted_likelihood import Array, Levels, missing_columns, residuals
 from preflight_magic.kernels.seasonal_presence import Presence, longer_presence, season_presence, without_pattern

@@ -76,7 +76,7 @@ def least_squares(
         step = _downhill(shown, missed, gradient)
         promised = -float(gradient @ step)
         last = promised <= tolerance
-        if log(total) - _HOPE * promised > log(useful):
+        if promised <= 0.0 or log(total) - _HOPE * promised > log(useful):
             break
         step = np.minimum(np.maximum(step, -_LONGEST), _LONGEST)
         share, found = _shorter(residuals, point, step, total, promised, 1 if last else _MOST_TRIALS)

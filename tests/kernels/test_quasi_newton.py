@@ -90,3 +90,9 @@ def test_a_search_that_cannot_get_far_enough_is_given_up():
     assert len(calls) == 2 < whole
     assert (point == start).all()
     assert total == float(first @ first)
+
+
+def test_a_flat_place_is_left_alone():
+    point, _, total = least_squares(lambda p: np.ones(3), np.array([0.4]), np.ones(3), 1e-6, np.zeros(1))
+    assert point == pytest.approx([0.4])
+    assert total == 3.0

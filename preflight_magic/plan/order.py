@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+import warnings
 from collections.abc import Iterable
 from typing import assert_never
 
@@ -108,10 +109,13 @@ def _validate_frequency(freq: str | None, kind: str) -> None:
         # It is written into code, so nothing but letters, digits and a dash may be in it.
         if not re.fullmatch(r"[0-9A-Za-z-]{1,20}", freq):
             raise ValueError
-        if kind == "periods":
-            pd.PeriodDtype(freq)
-        else:
-            pd.tseries.frequencies.to_offset(freq)
+        with warnings.catch_warnings():
+            # what is spelt as in older releases of pandas is still understood
+            warnings.simplefilter("ignore")
+            if kind == "periods":
+                pd.PeriodDtype(freq)
+            else:
+                pd.tseries.frequencies.to_offset(freq)
     except (ValueError, TypeError):
         raise CheckError(f"RegularCalendar needs a frequency of pandas, such as 'MS', not {freq!r}.") from None
 

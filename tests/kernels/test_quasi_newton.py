@@ -21,7 +21,7 @@ def test_a_line_is_found_at_once():
     )
     design = np.column_stack([np.ones(20), x])
     found, square, *_ = np.linalg.lstsq(design, y, rcond=None)
-    assert point == pytest.approx(found, abs=1e-5)
+    assert point == pytest.approx(found, abs=1e-6)
     assert total == pytest.approx(square[0], rel=1e-6)
     assert curvature == pytest.approx(design.T @ design, rel=1e-4)
 
@@ -63,7 +63,7 @@ def test_points_without_residuals_are_stepped_around():
         return None if p[0] > 1.0 else np.array([p[0] - 0.9, 0.1])
 
     point, *_ = least_squares(residuals, np.array([-2.0]), residuals(np.array([-2.0])), 1e-12, np.zeros(1))
-    assert point == pytest.approx([0.9], abs=1e-4)
+    assert point == pytest.approx([0.9], abs=1e-5)
 
 
 def test_nothing_to_fit_is_left_alone():
